@@ -2,6 +2,7 @@
 
 import { availableParallelism } from 'node:os';
 import { fileURLToPath } from 'node:url';
+import type { Piscina } from 'piscina';
 import { NumericalError, UsageError, DataError } from '../errors.js';
 import { mapTasksSerially, type MapTasks } from '../numerics/MapTasks.js';
 import type { Batch } from './task.js';
@@ -29,11 +30,11 @@ export function defaultWorkers(): number {
  */
 export function createWorkerPool(workers: number): WorkerPool {
   if (workers <= 1) return { workers: 1, mapTasks: mapTasksSerially, close: async () => {} };
-  let starting: Promise<import('piscina').Piscina> | null = null;
-  const start = async (): Promise<import('piscina').Piscina> => {
-    const { Piscina } = await import('piscina');
+  let starting: Promise<Piscina> | null = null;
+  const start = async (): Promise<Piscina> => {
+    const piscina = await import('piscina');
     const entry = import.meta.url.endsWith('.ts') ? './taskFromSource.mjs' : './task.js';
-    return new Piscina({
+    return new piscina.Piscina({
       filename: fileURLToPath(new URL(entry, import.meta.url)),
       maxThreads: workers,
       minThreads: 0,
