@@ -46,7 +46,7 @@ const FUNCTIONS: ReadonlyMap<
   string,
   { readonly counts: readonly number[]; write(args: readonly string[]): string }
 > = new Map([
-  ...['sqrt', 'cbrt', 'exp', 'log2', 'log10', 'abs', 'sign'].map(plain),
+  ...['sqrt', 'cbrt', 'exp', 'log10', 'abs', 'sign'].map(plain),
   ...['sin', 'cos', 'tan', 'asin', 'acos', 'atan', 'sinh', 'cosh', 'tanh', 'asinh', 'acosh', 'atanh'].map(
     plain,
   ),
@@ -57,8 +57,6 @@ const FUNCTIONS: ReadonlyMap<
       write: ([x, base]) => (base ? `(Math.log(${x})/Math.log(${base}))` : `Math.log(${x})`),
     },
   ],
-  ['square', { counts: [1], write: ([x]) => `Math.pow(${x},2)` }],
-  ['cube', { counts: [1], write: ([x]) => `Math.pow(${x},3)` }],
   ['pow', { counts: [2], write: ([x, y]) => `Math.pow(${x},${y})` }],
   ['sec', { counts: [1], write: ([x]) => `(1/Math.cos(${x}))` }],
   ['csc', { counts: [1], write: ([x]) => `(1/Math.sin(${x}))` }],
