@@ -27,7 +27,7 @@ export interface Formula {
   /**
    * The derivative by a coordinate or parameter, as a formula of the same names.
    *
-   * @throws UsageError  where a function in it has no derivative rule (min, max, atan2, hypot)
+   * @throws UsageError  where a function in it has no derivative rule (sign, min, max, atan2, hypot)
    */
   differentiate(name: string): Formula;
 }

@@ -59,7 +59,7 @@ describe('derivatives', () => {
     'a*x^3 - log(1+y^2)',
     'x^a',
     'x^2*y^3',
-    'cbrt(x)+log10(x)+sign(x)',
+    'cbrt(x)+log10(x)',
     'asin(x)+acos(x)+atan(x)+sinh(x)+cosh(x)+tanh(x)+asinh(x)+acosh(1+x)+atanh(x)',
     'sec(x)+csc(x)+cot(x)+sech(x)+csch(x)+coth(x)+tan(x)+pow(x,a)+log(x,3)',
   ])('of %s agree with central differences', (text) => {
