@@ -3,8 +3,12 @@
  * hundreds of substeps per frame used here, the error of stepping is far below the scatter of any fit.
  */
 
-import type { RandomStream } from '../src/numerics/random/RandomStream.js';
 import type { FirstOrderTruth, SecondOrderTruth } from './truth.js';
+
+/** Where the steps get their standard normals from; a `RandomStream` is one. */
+export interface NormalSource {
+  normal(): number;
+}
 
 /** Advances a first-order path in one dimension and returns the new place. */
 export function advanceFirstOrder(
@@ -12,7 +16,7 @@ export function advanceFirstOrder(
   start: number,
   duration: number,
   substeps: number,
-  stream: RandomStream,
+  stream: NormalSource,
 ): number {
   const dt = duration / substeps;
   const place = [start];
@@ -44,7 +48,7 @@ export function advanceSecondOrder(
   state: MovingState,
   duration: number,
   substeps: number,
-  stream: RandomStream,
+  stream: NormalSource,
 ): void {
   const { place, velocity } = state;
   const dt = duration / substeps;
