@@ -35,13 +35,17 @@ export const fitSchema = z.strictObject({
     method: z.string().describe('how the replicates were made'),
     blocks: z.int().describe('independent blocks (tracks or stretches of tracks) behind the error'),
     confidence: z.number(),
-    multiplier: z.number().describe('half-width of a pointwise interval in standard deviations of the replicates'),
+    multiplier: z
+      .number()
+      .describe('half-width of a pointwise interval in standard deviations of the replicates'),
     simultaneous: z
       .record(z.string(), z.number())
       .describe('half-width of the simultaneous band of each column, in the same unit'),
     replicates: z
       .array(numbers)
-      .describe('coefficient vectors drawn from the uncertainty: all fields in model order, component by component'),
+      .describe(
+        'coefficient vectors drawn from the uncertainty: all fields in model order, component by component',
+      ),
   }),
   visited: z.strictObject({
     low: numbers.describe('lower corner of the grid, length'),

@@ -63,7 +63,12 @@ export const scenarioSchema = z.strictObject({
           'outside the visited region: hold the edge value; fade to the mean over `width`; hold, with a restoring force of strength `stiffness`',
         ),
       width: z.number().positive().nullable().default(null),
-      stiffness: z.number().positive().nullable().default(null).describe('1/time² (second order), 1/time (first order)'),
+      stiffness: z
+        .number()
+        .positive()
+        .nullable()
+        .default(null)
+        .describe('1/time² (second order), 1/time (first order)'),
     })
     .default({ kind: 'hold', width: null, stiffness: null }),
   visited: z
@@ -75,7 +80,10 @@ export const scenarioSchema = z.strictObject({
     .strictObject({
       kind: z.enum(['points', 'normal', 'uniform']).describe('drawn from a list, a normal law, or a box'),
       points: z.array(numbers).default([]).describe('positions (points)'),
-      velocities: z.array(numbers).default([]).describe('one velocity per point, or empty: drawn from the kinetic temperature'),
+      velocities: z
+        .array(numbers)
+        .default([])
+        .describe('one velocity per point, or empty: drawn from the kinetic temperature'),
       mean: numbers.default([]).describe('normal: mean; uniform: lower corner'),
       spread: numbers.default([]).describe('normal: standard deviation; uniform: side lengths'),
     })
@@ -90,14 +98,21 @@ export const scenarioSchema = z.strictObject({
   }),
   integration: z
     .strictObject({
-      step: z.number().positive().nullable().default(null).describe('time step; null: chosen from the coefficients'),
+      step: z
+        .number()
+        .positive()
+        .nullable()
+        .default(null)
+        .describe('time step; null: chosen from the coefficients'),
     })
     .default({ step: null }),
   ensemble: z
     .strictObject({
       draws: z
         .array(numbers)
-        .describe('coefficient vectors drawn from the uncertainty of the fit: all basis fields in model order'),
+        .describe(
+          'coefficient vectors drawn from the uncertainty of the fit: all basis fields in model order',
+        ),
     })
     .nullable()
     .default(null),

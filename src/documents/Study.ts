@@ -23,8 +23,12 @@ export const studySchema = z
     noise: shape.default('spline'),
     drift: shape.default('spline'),
     diffusion: shape.default('spline'),
-    frictionForm: form.default('scalar').describe('form of the friction: one number, one per axis, or a full matrix'),
-    noiseForm: form.default('scalar').describe('form of the noise (second order) or the diffusion (first order)'),
+    frictionForm: form
+      .default('scalar')
+      .describe('form of the friction: one number, one per axis, or a full matrix'),
+    noiseForm: form
+      .default('scalar')
+      .describe('form of the noise (second order) or the diffusion (first order)'),
     replicates: z.int().min(20).max(100_000).default(200).describe('bootstrap replicates'),
     confidence: z.number().gt(0.5).lt(1).default(0.95).describe('confidence level of every interval'),
     localizationError: z
@@ -39,17 +43,37 @@ export const studySchema = z
       .describe('fraction of the sampling interval over which a position is averaged (motion blur)'),
     seed: z.int().min(0).default(1).describe('seed of every random draw'),
     // how the table is read
-    columns: z.record(z.string(), z.string()).default({}).describe('role → column name, e.g. {"track": "ID"}'),
-    interval: z.number().positive().nullable().default(null).describe('time between frames where the column counts frames'),
+    columns: z
+      .record(z.string(), z.string())
+      .default({})
+      .describe('role → column name, e.g. {"track": "ID"}'),
+    interval: z
+      .number()
+      .positive()
+      .nullable()
+      .default(null)
+      .describe('time between frames where the column counts frames'),
     lengthScale: z.number().positive().default(1).describe('factor from table lengths to lengths'),
     timeScale: z.number().positive().default(1).describe('factor from table times to times'),
     units: z
       .strictObject({ length: z.string().nullable(), time: z.string().nullable() })
       .default({ length: null, time: null })
       .describe('labels of the length and time units'),
-    period: z.array(z.number().min(0)).nullable().default(null).describe('period of each axis, 0 = open (after scaling)'),
-    mass: z.number().positive().nullable().default(null).describe('mass, where forces should be given in mass units'),
-    skipInvalid: z.boolean().default(false).describe('skip and count non-finite positions instead of refusing them'),
+    period: z
+      .array(z.number().min(0))
+      .nullable()
+      .default(null)
+      .describe('period of each axis, 0 = open (after scaling)'),
+    mass: z
+      .number()
+      .positive()
+      .nullable()
+      .default(null)
+      .describe('mass, where forces should be given in mass units'),
+    skipInvalid: z
+      .boolean()
+      .default(false)
+      .describe('skip and count non-finite positions instead of refusing them'),
   })
   .describe('wanderlaw study');
 
