@@ -1,0 +1,147 @@
+/**
+ * The command table: what each command is for, what it takes, and where its code is. The code is loaded when the
+ * command runs, so that help appears at once.
+ */
+
+import { SPEECH_OPTIONS, TABLE_OPTIONS, type OptionName } from './options.js';
+import type { Terminal } from './Terminal.js';
+
+/** What a command gets to work with. */
+export interface Call {
+  /** The words after the command that are not options. */
+  readonly operands: readonly string[];
+  /** Values by option name in camel case; absent where the option was not given. */
+  readonly options: Readonly<Record<string, unknown>>;
+  readonly terminal: Terminal;
+}
+
+export type RunCommand = (call: Call) => Promise<void>;
+
+export interface CommandSpec {
+  readonly name: string;
+  readonly summary: string;
+  /** What it does, reads and writes, for its own help page. */
+  readonly description: string;
+  /** Operands in commander's notation, each with its meaning. */
+  readonly operands: readonly (readonly [name: string, meaning: string])[];
+  readonly options: readonly OptionName[];
+  readonly required?: readonly OptionName[];
+  readonly examples: readonly string[];
+  readonly load: () => Promise<RunCommand>;
+}
+
+const TRACKS = ['<tracks...>', 'track tables (CSV or TSV, also gzipped); - reads standard input'] as const;
+const FIT = ['<fit>', 'fit file'] as const;
+
+export const COMMANDS: readonly CommandSpec[] = [
+  {
+    name: 'survey',
+    summary: 'tell what was recorded, and whether it can carry a fit',
+    description:
+      'Counts, interval, gaps, visited region, localization error, relaxation time of the velocity, recommended order, and warnings.',
+    operands: [TRACKS],
+    options: [...TABLE_OPTIONS, 'momenta', 'output', ...SPEECH_OPTIONS],
+    examples: ['wanderlaw survey tracks.csv', 'wanderlaw survey tracks.csv --momenta momenta.csv --mass 2'],
+    load: async () => (await import('./commands/survey.js')).runSurvey,
+  },
+  {
+    name: 'fit',
+    summary: 'estimate force, friction and noise, or drift and diffusion, with their uncertainty',
+    description:
+      'Writes a fit file with -o. Without it a summary is printed (with --json the fit itself) and nothing is written.',
+    operands: [TRACKS],
+    options: [
+      'output',
+      'order',
+      'estimator',
+      'force',
+      'friction',
+      'noise',
+      'drift',
+      'diffusion',
+      'frictionForm',
+      'noiseForm',
+      'replicates',
+      'confidence',
+      'localizationError',
+      'exposure',
+      'seed',
+      'workers',
+      ...TABLE_OPTIONS,
+      ...SPEECH_OPTIONS,
+    ],
+    examples: [
+      'wanderlaw fit tracks.csv -o fit.json',
+      'wanderlaw fit tracks.csv --order second --force linear --friction spline:6 --noise constant -o fit.json',
+    ],
+    load: async () => (await import('./commands/fit.js')).runFit,
+  },
+  {
+    name: 'evaluate',
+    summary: 'print the coefficients with their intervals at given places',
+    description:
+      'CSV: the coordinates, each coefficient with _low and _high, and whether the place was visited. Needs the fit file alone.',
+    operands: [FIT],
+    options: ['at', 'simultaneous', 'output', ...SPEECH_OPTIONS],
+    required: ['at'],
+    examples: ['wanderlaw evaluate fit.json --at points.csv -o coefficients.csv'],
+    load: async () => (await import('./commands/evaluate.js')).runEvaluate,
+  },
+  {
+    name: 'resimulate',
+    summary: 'simulate the fit at the recorded design and compare with the recording',
+    description:
+      'Statistics that the fit did not use, with simulated p-values, and the coefficients that the same estimator gets back.',
+    operands: [FIT],
+    options: ['trackFiles', 'recordings', 'runSeed', 'noRefit', 'workers', 'output', ...SPEECH_OPTIONS],
+    examples: ['wanderlaw resimulate fit.json', 'wanderlaw resimulate fit.json --json -o resimulation.json'],
+    load: async () => (await import('./commands/resimulate.js')).runResimulate,
+  },
+  {
+    name: 'scenario',
+    summary: 'write a calibrated scenario that can be read, changed and run',
+    description: 'A scenario is JSON; its schema is wanderlaw/schemas/scenario.schema.json.',
+    operands: [FIT],
+    options: ['output', 'title', ...SPEECH_OPTIONS],
+    examples: ['wanderlaw scenario fit.json -o scenario.json'],
+    load: async () => (await import('./commands/scenario.js')).runScenario,
+  },
+  {
+    name: 'simulate',
+    summary: 'run a scenario; write a track table that survey and fit read',
+    description: 'Options stand in for what the scenario says of the observation.',
+    operands: [['<scenario>', 'scenario file']],
+    options: [
+      'output',
+      'trackCount',
+      'frames',
+      'frameInterval',
+      'runSeed',
+      'ensemble',
+      'workers',
+      ...SPEECH_OPTIONS,
+    ],
+    examples: ['wanderlaw simulate scenario.json -o simulated.csv --tracks 50 --seed 7'],
+    load: async () => (await import('./commands/simulate.js')).runSimulate,
+  },
+  {
+    name: 'report',
+    summary: 'write one self-contained page with the pictures',
+    description:
+      'HTML without outside parts: tracks, visited region, coefficients with bands, and the comparison.',
+    operands: [FIT],
+    options: ['output', 'resimulation', 'scenario', ...SPEECH_OPTIONS],
+    examples: ['wanderlaw report fit.json --resimulation resimulation.json -o report.html'],
+    load: async () => (await import('./commands/report.js')).runReport,
+  },
+  {
+    name: 'demo',
+    summary: 'do the whole job on a shipped data set',
+    description:
+      'Survey, fit, re-simulation, scenario and report. Data sets: felt-table (default), settling-beads, stripe-cells.',
+    operands: [['[name]', 'data set']],
+    options: ['directory', 'workers', ...SPEECH_OPTIONS],
+    examples: ['wanderlaw demo', 'wanderlaw demo settling-beads'],
+    load: async () => (await import('./commands/demo.js')).runDemo,
+  },
+];

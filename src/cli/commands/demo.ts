@@ -1,0 +1,117 @@
+/** `demo [NAME]`: survey, fit, re-simulation, scenario and report of a shipped data set. */
+
+import { mkdirSync, readdirSync } from 'node:fs';
+import { readFile } from 'node:fs/promises';
+import { join, relative } from 'node:path';
+import { completeStudy } from '../../documents/parseStudy.js';
+import type { StudyInput } from '../../documents/Study.js';
+import { UsageError } from '../../errors.js';
+import { surveyTracks } from '../../momenta/survey.js';
+import { renderReport } from '../../report/renderReport.js';
+import { formatFitSummary, formatResimulationSummary, formatSurveySummary } from '../../report/terminal.js';
+import type { Call } from '../commandTable.js';
+import { checkOutput, explainSystemError, writeWhole } from '../files.js';
+import { readRecording } from '../recordings.js';
+import { formatJson } from '../results.js';
+import { formatSuggestion } from '../suggest.js';
+import { PACKAGE_ROOT } from '../version.js';
+import { fitFiles } from './fit.js';
+import { describeResimulation, resimulateFit } from './resimulate.js';
+import { buildTitledScenario } from './scenario.js';
+
+const DEFAULT_DATA_SET = 'felt-table';
+
+/** The part of a data package that the demo reads. */
+interface DataPackage {
+  readonly title: string;
+  readonly question?: string;
+  readonly resources: readonly { readonly path: string }[];
+  readonly wanderlaw: { readonly study: StudyInput };
+}
+
+/** @throws UsageError  for an unknown data set or a directory that cannot be written */
+export async function runDemo({ operands, options, terminal }: Call): Promise<void> {
+  const name = operands[0] ?? DEFAULT_DATA_SET;
+  const dataPackage = await readDataPackage(name);
+  const shown = (options.output as string | undefined) ?? join('out', name);
+  const directory = terminal.resolve(shown);
+  makeDirectory(directory, shown);
+  const place = (file: string): string => join(directory, file);
+  const files: string[] = [];
+  const keep = async (file: string, text: string): Promise<void> => {
+    await writeWhole(place(file), text, join(shown, file));
+    files.push(join(shown, file));
+  };
+  checkOutput(place('fit.json'), join(shown, 'fit.json'));
+  const say = async (text: string): Promise<void> => {
+    if (!options.json) await terminal.print(text);
+  };
+
+  const { bold } = terminal.colors;
+  await say(`${bold(dataPackage.title)}\n${dataPackage.question ?? ''}\n\n`);
+  const study = completeStudy(dataPackage.wanderlaw.study);
+  const tracksPath = join(PACKAGE_ROOT, 'datasets', name, dataPackage.resources[0].path);
+  const paths = [relative(terminal.streams.cwd, tracksPath)];
+
+  const recording = await readRecording(paths, study, terminal);
+  const survey = surveyTracks(recording.tracks);
+  await keep('survey.json', formatJson(survey));
+  await say(`${formatSurveySummary(survey, terminal.summaryStyle)}\n`);
+
+  const fit = await fitFiles(paths, study, terminal);
+  await keep('fit.json', formatJson(fit));
+  await say(`${formatFitSummary(fit, terminal.summaryStyle)}\n`);
+
+  const resimulation = await resimulateFit(fit, place('fit.json'), terminal, {
+    refit: true,
+    workers: options.workers,
+  });
+  await keep('resimulation.json', formatJson(describeResimulation(resimulation)));
+  await say(`${formatResimulationSummary(resimulation, terminal.summaryStyle)}\n`);
+
+  const scenario = buildTitledScenario(fit, dataPackage.title);
+  await keep('scenario.json', formatJson(scenario));
+  await keep('report.html', await renderReport({ fit, resimulation, scenario }));
+
+  if (options.json) {
+    await terminal.print(
+      formatJson({
+        name,
+        files,
+        consistent: resimulation.consistent,
+        order: fit.model.order,
+        warnings: fit.warnings,
+      }),
+    );
+    return;
+  }
+  await say(`${bold('Written')}\n${files.map((file) => `  ${file}\n`).join('')}`);
+}
+
+async function readDataPackage(name: string): Promise<DataPackage> {
+  const root = join(PACKAGE_ROOT, 'datasets');
+  const names = readdirSync(root, { withFileTypes: true })
+    .filter((entry) => entry.isDirectory())
+    .map((entry) => entry.name)
+    .sort();
+  if (!names.includes(name)) {
+    throw new UsageError(
+      `"${name}" is not a shipped data set${formatSuggestion(name, names) || '; use one of'} (${names.join(', ')})`,
+      { name, choices: names },
+    );
+  }
+  return JSON.parse(await readFile(join(root, name, 'datapackage.json'), 'utf8')) as DataPackage;
+}
+
+function makeDirectory(directory: string, shown: string): void {
+  try {
+    mkdirSync(directory, { recursive: true });
+  } catch (error) {
+    throw new UsageError(
+      `${shown} cannot be made: ${explainSystemError(error)}; give another place with -o`,
+      {
+        path: directory,
+      },
+    );
+  }
+}

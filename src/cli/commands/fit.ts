@@ -1,0 +1,106 @@
+/** `fit TRACKS…`: the coefficients with their uncertainty, as a fit file. */
+
+import type { FitDocument } from '../../documents/FitDocument.js';
+import { fitSchema } from '../../documents/FitDocument.js';
+import type { Study } from '../../documents/Study.js';
+import { NumericalError } from '../../errors.js';
+import { parseShape } from '../../fields/shapes.js';
+import { fitTracks } from '../../fit.js';
+import { formatFitSummary } from '../../report/terminal.js';
+import type { Call } from '../commandTable.js';
+import { OPTIONS } from '../options.js';
+import { readRecording } from '../recordings.js';
+import { checkResultPlace, deliver, formatJson } from '../results.js';
+import { resolveStudy } from '../study.js';
+import type { Terminal } from '../Terminal.js';
+import { readVersion } from '../version.js';
+
+/** @throws UsageError, DataError, NumericalError */
+export async function runFit({ operands, options, terminal }: Call): Promise<void> {
+  const study = await resolveStudy(options, terminal);
+  checkShapes(study);
+  const inputs = typeof options.study === 'string' ? [...operands, options.study] : operands;
+  checkResultPlace(options.output, inputs, terminal);
+
+  const fit = await fitFiles(operands, study, terminal);
+  for (const warning of fit.warnings) terminal.warn(warning);
+  warnOfUnusedOptions(options, fit, terminal);
+  if (typeof options.output === 'string') await deliver(formatJson(fit), options.output, terminal);
+  if (options.json) await terminal.print(formatJson(fit));
+  else await terminal.print(formatFitSummary(fit, terminal.summaryStyle));
+  if (options.output === undefined && !options.json) {
+    terminal.note('nothing was written; -o fit.json keeps the fit');
+  }
+}
+
+/** Reads and fits tracks, and adds what only the program knows: sources, version and clock. */
+export async function fitFiles(
+  paths: readonly string[],
+  study: Study,
+  terminal: Terminal,
+): Promise<FitDocument> {
+  const started = performance.now();
+  const recording = await readRecording(paths, study, terminal);
+  const read = performance.now();
+  const progress = await terminal.startProgress('fitting');
+  const result = await fitTracks(recording.tracks, study, { onProgress: progress.update }).finally(
+    progress.stop,
+  );
+  const fitted = performance.now();
+  const { study: resolved, warnings, ...rest } = result;
+  const fit: FitDocument = {
+    format: 'wanderlaw-fit',
+    version: 1,
+    program: `wanderlaw ${readVersion()}`,
+    created: new Date().toISOString(),
+    timing: { reading: seconds(read - started), fitting: seconds(fitted - read) },
+    study: resolved,
+    sources: [...recording.sources],
+    ...rest,
+    warnings: [...recording.warnings, ...warnings],
+  };
+  checkNumbers(fit);
+  return fit;
+}
+
+function seconds(milliseconds: number): number {
+  return Math.round(milliseconds) / 1000;
+}
+
+/** A fit that its own schema refuses (a coefficient that is not finite) is never written. */
+function checkNumbers(fit: FitDocument): void {
+  const checked = fitSchema.safeParse(fit);
+  if (checked.success) return;
+  const [{ path, message }] = checked.error.issues;
+  throw new NumericalError(
+    `the fit has no usable value at ${path.join('.')} (${message}); try simpler shapes, or look at the tracks with wanderlaw survey`,
+    { at: path.join('.') },
+  );
+}
+
+/** Shapes are read before the tracks, so that a slip costs no waiting. */
+function checkShapes(study: Study): void {
+  const names =
+    study.order === 'second'
+      ? (['force', 'friction', 'noise'] as const)
+      : study.order === 'first'
+        ? (['drift', 'diffusion'] as const)
+        : (['force', 'friction', 'noise', 'drift', 'diffusion'] as const);
+  for (const name of names) parseShape(study[name], `--${name}`);
+}
+
+/** With `--order auto` it shows only now which options had no part in the fit. */
+function warnOfUnusedOptions(options: Call['options'], fit: FitDocument, terminal: Terminal): void {
+  const idle =
+    fit.model.order === 'first'
+      ? (['force', 'friction', 'noise', 'frictionForm'] as const)
+      : (['drift', 'diffusion'] as const);
+  for (const key of idle) {
+    if (options[key] === undefined) continue;
+    const flag = OPTIONS[key].flags.split(' ')[0];
+    terminal.warn({
+      code: 'unused-option',
+      message: `${flag} had no part in the fit, which is of ${fit.model.order} order; --order decides it`,
+    });
+  }
+}

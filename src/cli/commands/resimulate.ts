@@ -1,0 +1,74 @@
+/** `resimulate FIT`: the fit, simulated at the recorded design, against the recording. */
+
+import type { ResimulationResult } from '../../checks/ResimulationResult.js';
+import { resimulate } from '../../checks/resimulate.js';
+import type { FitDocument } from '../../documents/FitDocument.js';
+import { formatResimulationSummary } from '../../report/terminal.js';
+import type { Call } from '../commandTable.js';
+import { readFit } from '../documents.js';
+import { readRecordingOfFit } from '../recordings.js';
+import { checkResultPlace, deliver, formatJson } from '../results.js';
+import type { Terminal } from '../Terminal.js';
+import { readVersion } from '../version.js';
+import { withWorkers } from '../workers.js';
+
+/** Simulated recordings where --replicates does not say. */
+const REPLICATES = 99; // p-values in steps of 0.01
+
+/** @throws UsageError, DataError, NumericalError */
+export async function runResimulate({ operands, options, terminal }: Call): Promise<void> {
+  const [fitPath] = operands;
+  const overrides = options.tracks as string[] | undefined;
+  checkResultPlace(options.output, [fitPath, ...(overrides ?? [])], terminal);
+  const fit = await readFit(fitPath, terminal);
+  const result = await resimulateFit(fit, terminal.resolve(fitPath), terminal, {
+    overrides,
+    replicates: options.replicates as number | undefined,
+    seed: options.seed as number | undefined,
+    refit: options.refit !== false,
+    workers: options.workers,
+  });
+  for (const warning of result.warnings) terminal.warn(warning);
+  const text = options.json
+    ? formatJson(describeResimulation(result))
+    : formatResimulationSummary(result, terminal.summaryStyle);
+  await deliver(text, options.output, terminal);
+}
+
+export interface ResimulateChoices {
+  readonly overrides?: readonly string[];
+  readonly replicates?: number;
+  readonly seed?: number;
+  readonly refit: boolean;
+  readonly workers: unknown;
+}
+
+/** Reads the tracks of a fit again and re-simulates it. */
+export async function resimulateFit(
+  fit: FitDocument,
+  fitPath: string,
+  terminal: Terminal,
+  choices: ResimulateChoices,
+): Promise<ResimulationResult> {
+  const recording = await readRecordingOfFit(fit, fitPath, choices.overrides, terminal);
+  const progress = await terminal.startProgress('simulating');
+  return withWorkers(choices.workers, (mapTasks) =>
+    resimulate(fit, recording.tracks, {
+      replicates: choices.replicates ?? REPLICATES,
+      seed: choices.seed ?? 1,
+      refit: choices.refit,
+      mapTasks,
+      onProgress: progress.update,
+    }),
+  ).finally(progress.stop);
+}
+
+/** The result as the document that `report --resimulation` reads. */
+export function describeResimulation(result: ResimulationResult): Record<string, unknown> {
+  return {
+    format: 'wanderlaw-resimulation',
+    version: 1,
+    program: `wanderlaw ${readVersion()}`,
+    ...result,
+  };
+}

@@ -1,0 +1,31 @@
+/** `survey TRACKS…`: what was recorded, and whether it can carry a fit. */
+
+import { formatMomenta } from '../../import/formatMomenta.js';
+import { surveyTracks } from '../../momenta/survey.js';
+import { tabulateMomenta } from '../../momenta/tabulateMomenta.js';
+import { formatSurveySummary } from '../../report/terminal.js';
+import type { Call } from '../commandTable.js';
+import { writeWhole } from '../files.js';
+import { readRecording } from '../recordings.js';
+import { checkResultPlace, deliver, formatJson } from '../results.js';
+import { resolveStudy } from '../study.js';
+
+/** @throws UsageError, DataError */
+export async function runSurvey({ operands, options, terminal }: Call): Promise<void> {
+  const study = await resolveStudy(options, terminal);
+  const momenta = options.momenta as string | undefined;
+  checkResultPlace(options.output, operands, terminal);
+  checkResultPlace(momenta, operands, terminal);
+  const recording = await readRecording(operands, study, terminal);
+  const survey = surveyTracks(recording.tracks);
+  const warnings = [...recording.warnings, ...survey.warnings];
+  for (const warning of warnings) terminal.warn(warning);
+  if (momenta !== undefined) {
+    const table = tabulateMomenta(recording.tracks, survey, study.mass ?? 1);
+    await writeWhole(terminal.resolve(momenta), formatMomenta(table), momenta);
+    terminal.note(`wrote ${momenta}`);
+  }
+  const result = { ...survey, counts: recording.counts, sources: recording.sources, warnings };
+  const text = options.json ? formatJson(result) : formatSurveySummary(result, terminal.summaryStyle);
+  await deliver(text, options.output, terminal);
+}
