@@ -1,0 +1,157 @@
+/**
+ * The main road: from tracks and a study to a fit with its uncertainty.
+ */
+
+import type { FitDocument } from './documents/FitDocument.js';
+import type { Study } from './documents/Study.js';
+import { UsageError, type Warning } from './errors.js';
+import { partitionBlocks } from './estimation/blocks.js';
+import { chooseEstimator } from './estimation/choose.js';
+import type { Estimate, EstimationPlan, FieldPlan } from './estimation/Estimate.js';
+import { parseShape, resolveBasis } from './fields/shapes.js';
+import { type Survey, surveyTracks } from './momenta/survey.js';
+import { checkTrackLengths } from './tracks/usableTracks.js';
+import { countPositions, countTracks, type TrackSet } from './tracks/TrackSet.js';
+import { sampleTracks } from './tracks/sampleTracks.js';
+import { describeVisited, visitedCentres } from './tracks/visitedRegion.js';
+import { drawReplicates } from './uncertainty/bootstrap.js';
+import { warnOfSigns } from './uncertainty/signs.js';
+import { measureSpread, pointwiseMultiplier, simultaneousMultiplier } from './uncertainty/spread.js';
+
+/** What the caller supplies besides tracks and study; all of it optional. */
+export interface FitContext {
+  readonly onProgress?: (done: number, total: number, stage: string) => void;
+}
+
+/** A fit without what only the caller knows: file identity, sources and clock. */
+export type FitResult = Omit<FitDocument, 'format' | 'version' | 'program' | 'created' | 'timing' | 'sources'>;
+
+/** Replicates behind simultaneous bands: their quantile needs more draws than a standard deviation does. */
+const BAND_REPLICATES = 1000;
+
+/** Digits kept of stored replicates; their own scatter is some per cent. */
+const REPLICATE_DIGITS = 7;
+
+/**
+ * Fits a model to tracks.
+ *
+ * @param tracks  at least one track of 3 (first order) or 4 (second order) positions
+ * @param study  the resolved study; `studySchema.parse({})` gives the defaults
+ * @returns everything the fit file holds, in the units of the tracks; the same tracks, study and seed give the same
+ *          result
+ * @throws DataError  where the tracks cannot carry the fit
+ * @throws UsageError  where the study asks for something impossible
+ *
+ * @example
+ * const fit = await fitTracks(tracks, studySchema.parse({ friction: 'constant', seed: 7 }));
+ */
+export async function fitTracks(tracks: TrackSet, study: Study, context: FitContext = {}): Promise<FitResult> {
+  const progress = context.onProgress ?? (() => undefined);
+  const steps = 4;
+
+  progress(0, steps, 'surveying');
+  const survey = surveyTracks(tracks);
+  const order = study.order === 'auto' ? survey.recommendedOrder : study.order;
+  const { tracks: usable, warnings: lengthWarnings } = checkTrackLengths(tracks, order);
+  const visited = describeVisited(usable);
+
+  progress(1, steps, 'estimating');
+  const plan = planEstimation(usable, study, order, survey, visited);
+  const estimate = chooseEstimator(study.estimator)(usable, plan);
+
+  progress(2, steps, 'resampling');
+  const drawn = drawReplicates(estimate, Math.max(study.replicates, BAND_REPLICATES), study.seed);
+  const replicates = drawn.slice(0, study.replicates);
+
+  progress(3, steps, 'drawing bands');
+  const centres = visitedCentres(visited);
+  const multiplier = pointwiseMultiplier(study.confidence, plan.blocks.count, replicates.length);
+  const simultaneous: Record<string, number> = {};
+  const spreads = measureSpread(estimate.model, drawn, centres);
+  for (const spread of spreads) {
+    simultaneous[spread.name] = simultaneousMultiplier(spread, study.confidence, multiplier);
+  }
+  progress(4, steps, 'done');
+
+  const warnings: Warning[] = [
+    ...survey.warnings,
+    ...lengthWarnings,
+    ...estimate.warnings,
+    ...warnOfSigns(spreads, centres, usable.coordinates),
+  ];
+  return {
+    study: { ...study, order },
+    data: {
+      tracks: countTracks(usable),
+      positions: countPositions(usable),
+      dimensions: usable.dimensions,
+      coordinates: [...usable.coordinates],
+      samplingInterval: usable.samplingInterval,
+      units: { ...usable.units },
+      mass: study.mass,
+    },
+    model: estimate.model as FitDocument['model'],
+    localizationError: estimate.localizationError.map((axis) => intervalOfError(axis, multiplier)),
+    uncertainty: {
+      method: `one-step bootstrap over ${plan.blocks.count} ${plan.blocks.kind === 'tracks' ? 'tracks or groups of tracks' : 'stretches of tracks'}, smoothing bias included`,
+      blocks: plan.blocks.count,
+      confidence: study.confidence,
+      multiplier,
+      simultaneous,
+      replicates: replicates.map((row) => Array.from(row, (value) => Number(value.toPrecision(REPLICATE_DIGITS)))),
+    },
+    visited,
+    trackSample: sampleTracks(usable),
+    survey: JSON.parse(JSON.stringify(survey)) as FitDocument['survey'],
+    diagnostics: JSON.parse(JSON.stringify(estimate.diagnostics)) as FitDocument['diagnostics'],
+    warnings,
+  };
+}
+
+/** Resolves shapes, forms and blocks of a study over the tracks it is for. */
+export function planEstimation(
+  tracks: TrackSet,
+  study: Study,
+  order: 'first' | 'second',
+  survey: Pick<Survey, 'relaxationTime'>,
+  visited: FitDocument['visited'],
+): EstimationPlan {
+  const shapeContext = {
+    low: visited.low,
+    high: visited.high,
+    periods: tracks.periods,
+    positions: countPositions(tracks),
+  };
+  const planField = (shape: string, option: string, form: FieldPlan['form']): FieldPlan => ({
+    basis: resolveBasis(parseShape(shape, option), shapeContext, option),
+    form,
+  });
+  const second = order === 'second';
+  const noiseOption = second ? '--noise' : '--diffusion';
+  const noise = planField(second ? study.noise : study.diffusion, noiseOption, study.noiseForm);
+  if (!noise.basis) {
+    throw new UsageError(`${noiseOption} zero leaves nothing to fit the scatter with; use constant or spline`, {
+      option: noiseOption,
+    });
+  }
+  return {
+    order,
+    force: planField(second ? study.force : study.drift, second ? '--force' : '--drift', 'vector'),
+    friction: planField(second ? study.friction : 'zero', '--friction', study.frictionForm),
+    noise,
+    localizationError:
+      study.localizationError === 'auto'
+        ? null
+        : new Array<number>(tracks.dimensions).fill(study.localizationError),
+    exposure: study.exposure,
+    blocks: partitionBlocks(tracks, survey.relaxationTime ?? tracks.samplingInterval),
+  };
+}
+
+function intervalOfError(
+  axis: Estimate['localizationError'][number],
+  multiplier: number,
+): { value: number; low: number; high: number } {
+  const { value, standardError } = axis;
+  return { value, low: Math.max(0, value - multiplier * standardError), high: value + multiplier * standardError };
+}
