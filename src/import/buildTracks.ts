@@ -1,0 +1,215 @@
+/** Collected rows to the track store: grouped, sorted, duplicates dropped, scaled, unwrapped. */
+
+import { DataError } from '../errors.js';
+import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
+import type { Units } from '../units.js';
+import type { CollectedRows } from './RowCollector.js';
+import { estimateSamplingInterval, type IntervalEstimate, SAME_TIME } from './samplingInterval.js';
+import { quoteCell, tableError } from './tableError.js';
+import { unwrapInto } from './unwrapPeriodic.js';
+
+export interface BuildOptions {
+  /** Factor from the table's times or frames to times, told from the table's dominant step. */
+  readonly chooseTimeScale: (rows: CollectedRows, step: number) => number;
+  readonly lengthScale: number;
+  /** Length d, after scaling; 0 where the axis is open. */
+  readonly periods: readonly number[];
+  readonly units: Units;
+}
+
+export interface BuiltTracks {
+  readonly tracks: TrackSet;
+  readonly duplicatesDropped: number;
+  /** See IntervalEstimate. */
+  readonly regularFraction: number;
+  /** Whether tracks of different files had equal names, so that file names had to tell them apart. */
+  readonly prefixed: boolean;
+}
+
+/**
+ * Makes the track store of all rows of all files.
+ *
+ * Rows of a track at the same time (up to rounding) must say the same and are then counted once.
+ *
+ * @throws DataError  rows that contradict each other, a single time in the whole table, no track with two positions,
+ *                    positions that never change, values beyond double precision after scaling
+ *
+ * Cost     O(n) where rows come sorted, else O(n log n) for the unsorted tracks; about three copies of the table.
+ */
+export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTracks {
+  const { dimensions, tracks: collected } = rows;
+  checkTimesDiffer(rows);
+  const { order, offsets } = sortRows(rows);
+  const sortedTimes = new Float64Array(order.length);
+  for (let i = 0; i < order.length; i++) sortedTimes[i] = rows.times[order[i]];
+  const interval = estimateSamplingInterval(sortedTimes, offsets);
+  if (interval === null) throw singlePositionsError(rows);
+  const timeScale = options.chooseTimeScale(rows, interval.samplingInterval);
+
+  const kept = dropDuplicates(rows, order, offsets, sortedTimes, interval);
+  const count = kept.order.length;
+  const times = new Float64Array(count);
+  const positions = new Float64Array(count * dimensions);
+  const errors = rows.errors === null ? null : new Float64Array(count * dimensions);
+  for (let i = 0; i < count; i++) {
+    const row = kept.order[i];
+    times[i] = rows.times[row] * timeScale;
+    for (let axis = 0; axis < dimensions; axis++) {
+      positions[i * dimensions + axis] = rows.positions[row * dimensions + axis] * options.lengthScale;
+      if (errors === null || rows.errors === null) continue;
+      errors[i * dimensions + axis] = rows.errors[row * dimensions + axis] * options.lengthScale;
+    }
+  }
+  checkFinite(times, 'times', 'time');
+  checkFinite(positions, 'positions', 'length');
+  checkMotion(positions, kept.offsets, dimensions, rows);
+  unwrapInto(positions, kept.offsets, options.periods);
+
+  const prefixed = haveSharedNames(rows);
+  return {
+    tracks: {
+      dimensions,
+      coordinates: COORDINATE_NAMES.slice(0, dimensions),
+      trackNames: collected.map(({ name, file }) => (prefixed && name !== file ? `${file}:${name}` : name)),
+      trackOffsets: kept.offsets,
+      times,
+      positions,
+      localizationErrors: errors,
+      trackTypes: rows.hasTypes ? collected.map(({ type }) => type ?? '') : null,
+      samplingInterval: interval.samplingInterval * timeScale,
+      periods: options.periods,
+      units: options.units,
+    },
+    duplicatesDropped: order.length - count,
+    regularFraction: interval.regularFraction,
+    prefixed,
+  };
+}
+
+interface RowOrder {
+  /** Rows by track, and within a track by time. */
+  readonly order: Int32Array;
+  /** Length m + 1: the places in `order` where tracks begin. */
+  readonly offsets: Int32Array;
+}
+
+/** Counting sort by track; then each track by time, where it is not sorted already. */
+function sortRows(rows: CollectedRows): RowOrder {
+  const { trackOfRow, times, tracks } = rows;
+  const offsets = new Int32Array(tracks.length + 1);
+  for (let row = 0; row < trackOfRow.length; row++) offsets[trackOfRow[row] + 1]++;
+  for (let track = 0; track < tracks.length; track++) offsets[track + 1] += offsets[track];
+  const next = offsets.slice();
+  const order = new Int32Array(trackOfRow.length);
+  for (let row = 0; row < trackOfRow.length; row++) order[next[trackOfRow[row]]++] = row;
+  for (let track = 0; track < tracks.length; track++) {
+    const part = order.subarray(offsets[track], offsets[track + 1]);
+    let sorted = true;
+    for (let i = 1; i < part.length && sorted; i++) sorted = times[part[i]] >= times[part[i - 1]];
+    if (!sorted) part.sort((a, b) => times[a] - times[b]);
+  }
+  return { order, offsets };
+}
+
+/** Leaves out rows that repeat the time of the row before; those must repeat everything else too. */
+function dropDuplicates(
+  rows: CollectedRows,
+  order: Int32Array,
+  offsets: Int32Array,
+  sortedTimes: Float64Array,
+  { samplingInterval }: IntervalEstimate,
+): RowOrder {
+  const kept = new Int32Array(order.length);
+  const keptOffsets = new Int32Array(offsets.length);
+  let count = 0;
+  for (let track = 0; track + 1 < offsets.length; track++) {
+    let last = -1; // place of the last row kept
+    for (let i = offsets[track]; i < offsets[track + 1]; i++) {
+      // Two times within a few roundings are one time written twice, whatever the interval.
+      const rounding = 4 * Number.EPSILON * Math.abs(sortedTimes[i]);
+      if (
+        last !== -1 &&
+        sortedTimes[i] - sortedTimes[last] <= Math.max(SAME_TIME * samplingInterval, rounding)
+      ) {
+        if (!sayTheSame(rows, order[last], order[i])) throw conflictError(rows, order[last], order[i]);
+        continue;
+      }
+      kept[count++] = order[i];
+      last = i;
+    }
+    keptOffsets[track + 1] = count;
+  }
+  return count === order.length ? { order, offsets } : { order: kept.slice(0, count), offsets: keptOffsets };
+}
+
+function sayTheSame(rows: CollectedRows, first: number, second: number): boolean {
+  const { dimensions, positions, errors } = rows;
+  for (let axis = 0; axis < dimensions; axis++) {
+    const a = first * dimensions + axis;
+    const b = second * dimensions + axis;
+    if (positions[a] !== positions[b] || (errors !== null && errors[a] !== errors[b])) return false;
+  }
+  return true;
+}
+
+function conflictError(rows: CollectedRows, first: number, second: number): DataError {
+  const { name, file } = rows.tracks[rows.trackOfRow[first]];
+  const lines = [rows.lines[first], rows.lines[second]].sort((a, b) => a - b);
+  const time = rows.times[first];
+  const moment = `${rows.countsFrames ? 'frame' : 'time'} ${time}`;
+  return tableError(
+    { file },
+    `track ${quoteCell(name)} has two different positions at ${moment} (lines ${lines[0]} and ${lines[1]}); keep one`,
+    { track: name, time, lines },
+  );
+}
+
+function checkTimesDiffer({ times, countsFrames }: CollectedRows): void {
+  for (let row = 1; row < times.length; row++) if (times[row] !== times[0]) return;
+  throw new DataError(
+    `all ${times.length} positions are at the same ${countsFrames ? 'frame' : 'time'} ${times[0]}; ` +
+      'tracks need positions at several times (is the right column used? see --columns)',
+    { time: times[0] },
+  );
+}
+
+function singlePositionsError({ tracks }: CollectedRows): DataError {
+  return new DataError(
+    `none of the ${tracks.length} tracks has positions at two different times; ` +
+      'use the column that names the tracks (--columns track=NAME)',
+    { tracks: tracks.length },
+  );
+}
+
+/** Frozen tables are refused: nothing can be learnt from particles of which none ever moves. */
+function checkMotion(
+  positions: Float64Array,
+  offsets: Int32Array,
+  dimensions: number,
+  rows: CollectedRows,
+): void {
+  for (let track = 0; track + 1 < offsets.length; track++) {
+    for (let i = (offsets[track] + 1) * dimensions; i < offsets[track + 1] * dimensions; i++) {
+      if (positions[i] !== positions[i - dimensions]) return;
+    }
+  }
+  throw new DataError(
+    `no position ever changes within a track (${rows.tracks.length} ${rows.tracks.length === 1 ? 'track' : 'tracks'}, ` +
+      `${rows.times.length} rows); tracks of moving particles are needed (are the right columns used? see --columns)`,
+    { tracks: rows.tracks.length },
+  );
+}
+
+function checkFinite(values: Float64Array, what: string, scale: string): void {
+  for (let i = 0; i < values.length; i++) {
+    if (values[i] - values[i] === 0) continue;
+    throw new DataError(
+      `${what} become too large for numbers in double precision; use a smaller --${scale}-scale`,
+    );
+  }
+}
+
+/** Whether two files have tracks of the same name. */
+function haveSharedNames({ tracks }: CollectedRows): boolean {
+  return new Set(tracks.map(({ name }) => name)).size < tracks.length;
+}

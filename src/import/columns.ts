@@ -1,0 +1,214 @@
+/** Which column of a table plays which role: by name, or by the mapping of `--columns`. */
+
+import { UsageError } from '../errors.js';
+import { COORDINATE_NAMES } from '../tracks/TrackSet.js';
+import { suggestName } from './suggestName.js';
+import { quoteCell, tableError } from './tableError.js';
+
+/** Everything a column can mean. Errors are standard deviations of the localization error, per axis. */
+export const COLUMN_ROLES = [
+  'track',
+  'time',
+  'frame',
+  'x',
+  'y',
+  'z',
+  'type',
+  'error_x',
+  'error_y',
+  'error_z',
+] as const;
+
+export type ColumnRole = (typeof COLUMN_ROLES)[number];
+
+/** Places of the columns in a row, counted from 0; −1 where the table has none. */
+export interface TableColumns {
+  /** Header cells without surrounding blanks. */
+  readonly names: readonly string[];
+  readonly track: number;
+  readonly time: number;
+  /** Whether the time column counts frames. */
+  readonly countsFrames: boolean;
+  readonly type: number;
+  /** Length d: the columns of x, y, z. */
+  readonly coordinates: readonly number[];
+  /** Length d, or null where the table has no error columns. */
+  readonly errors: readonly number[] | null;
+  /** Coordinate columns left out because `--columns` names others. */
+  readonly leftOut: readonly string[];
+}
+
+/**
+ * Checks a mapping of roles to column names before any file is read.
+ *
+ * @throws UsageError  unknown role, empty name, or both time and frame
+ */
+export function checkColumnMapping(mapping: Readonly<Record<string, string>>): void {
+  for (const [role, name] of Object.entries(mapping)) {
+    if (!(COLUMN_ROLES as readonly string[]).includes(role)) {
+      const suggestion = suggestName(role, COLUMN_ROLES);
+      const hint = suggestion === null ? '' : `; did you mean ${suggestion}?`;
+      throw new UsageError(
+        `--columns: ${quoteCell(role)} is not a role${hint} (${COLUMN_ROLES.join(', ')})`,
+        {
+          option: 'columns',
+          role,
+        },
+      );
+    }
+    if (name === '') {
+      throw new UsageError(`--columns: ${role} needs the name of a column, as in ${role}=NAME`, {
+        option: 'columns',
+        role,
+      });
+    }
+  }
+  if (mapping.time !== undefined && mapping.frame !== undefined) {
+    throw new UsageError(
+      '--columns names both time and frame; name the one that says when a position was taken',
+      {
+        option: 'columns',
+      },
+    );
+  }
+}
+
+/**
+ * Finds the columns. Names are compared without surrounding blanks, first exactly, then in any case. A table with
+ * both `time` and `frame` is read by its time. Where the mapping names coordinates, those are all the coordinates.
+ *
+ * @throws DataError  a needed or mapped column is missing or there twice, y without x, errors for some axes only
+ */
+export function findColumns(
+  header: readonly string[],
+  mapping: Readonly<Record<string, string>>,
+  file: string,
+  line: number,
+): TableColumns {
+  const names = header.map((name) => name.trim());
+  if (names.every((name) => name !== '' && Number.isFinite(Number(name)))) {
+    throw tableError(
+      { file, line },
+      'the first line holds numbers; a header line that names the columns is needed',
+    );
+  }
+  const place = (role: ColumnRole): number => findColumn(names, role, mapping[role], file, line);
+
+  const countsFrames = mapping.time === undefined && (mapping.frame !== undefined || place('time') === -1);
+  const time = place(countsFrames ? 'frame' : 'time');
+  if (time === -1) throw missingError(names, 'time', 'time or frame', file, line);
+
+  const mapped = COORDINATE_NAMES.filter((axis) => mapping[axis] !== undefined);
+  const found = COORDINATE_NAMES.filter((axis) => place(axis) !== -1);
+  const axes = mapped.length > 0 ? mapped : found;
+  for (let i = 0; i < Math.max(1, axes.length); i++) {
+    const needed = COORDINATE_NAMES[i];
+    if (axes[i] !== needed) throw missingError(names, needed, needed, file, line, axes.slice(i));
+  }
+
+  const track = place('track');
+  const type = place('type');
+  const errors = axes.map((axis) => place(`error_${axis}`));
+  const missing = errors.indexOf(-1);
+  if (missing !== -1 && errors.some((column) => column !== -1)) {
+    const axis = axes[missing];
+    throw tableError(
+      { file, line },
+      `there are error columns, but none for ${axis}; add error_${axis} or leave out the others`,
+      { role: `error_${axis}` },
+    );
+  }
+  const coordinates = axes.map(place);
+  const used = [track, time, type, ...coordinates, ...errors].filter((column) => column !== -1);
+  const twice = used.find((column, i) => used.indexOf(column) !== i);
+  if (twice !== undefined) {
+    throw new UsageError(
+      `--columns gives column ${quoteCell(names[twice])} two roles; name another for one of them`,
+      {
+        option: 'columns',
+        column: names[twice],
+      },
+    );
+  }
+  return {
+    names,
+    track,
+    time,
+    countsFrames,
+    type,
+    coordinates,
+    errors: missing === -1 ? errors : null,
+    leftOut: found.filter((axis) => !axes.includes(axis) && !coordinates.includes(place(axis))),
+  };
+}
+
+function findColumn(
+  names: readonly string[],
+  role: ColumnRole,
+  mappedName: string | undefined,
+  file: string,
+  line: number,
+): number {
+  const wanted = (mappedName ?? role).trim();
+  let places = placesOf(names, (name) => name === wanted);
+  if (places.length === 0) places = placesOf(names, (name) => name.toLowerCase() === wanted.toLowerCase());
+  if (places.length > 1) {
+    throw tableError(
+      { file, line, column: wanted },
+      `${places.length} columns have this name; rename all but one, or name another with --columns ${role}=NAME`,
+    );
+  }
+  if (places.length === 1) return places[0];
+  if (mappedName === undefined) return -1;
+  const suggestion = suggestName(wanted, names);
+  const hint = suggestion === null ? '' : `; did you mean ${quoteCell(suggestion)}?`;
+  throw tableError(
+    { file, line },
+    `there is no column ${quoteCell(wanted)} for ${role}${hint} (${listNames(names)})`,
+    {
+      role,
+      missing: wanted,
+      columns: names,
+    },
+  );
+}
+
+function placesOf(names: readonly string[], accept: (name: string) => boolean): number[] {
+  return names.flatMap((name, place) => (accept(name) ? [place] : []));
+}
+
+/** @param present  later axes that were found although this one was not */
+function missingError(
+  names: readonly string[],
+  role: ColumnRole,
+  wanted: string,
+  file: string,
+  line: number,
+  present: readonly string[] = [],
+): Error {
+  const although = present.length === 0 ? '' : ` although there is ${present.join(' and ')}`;
+  const suggestion = suggestName(role, names) ?? names.find((name) => holdsWord(name, role));
+  const example =
+    suggestion === undefined ? 'NAME' : /[\s,]/.test(suggestion) ? `"${suggestion}"` : suggestion;
+  return tableError(
+    { file, line },
+    `there is no column ${wanted}${although}; rename one or say --columns ${role}=${example} (${listNames(names)})`,
+    { role, columns: names },
+  );
+}
+
+/** `x (µm)`, `x_um`, `position x`: the role as a word of its own. */
+function holdsWord(name: string, role: string): boolean {
+  const words = name.toLowerCase().split(/[^\p{L}\p{N}]+/u);
+  return words.includes(role);
+}
+
+const LISTED_NAMES = 20;
+
+function listNames(names: readonly string[]): string {
+  const shown = names.slice(0, LISTED_NAMES).map(quoteCell).join(', ');
+  const more = names.length > LISTED_NAMES ? `, and ${names.length - LISTED_NAMES} more` : '';
+  return names.length === 1
+    ? `the only column is ${shown}; cells are separated by commas, semicolons or tabs`
+    : `columns: ${shown}${more}`;
+}
