@@ -24,7 +24,7 @@ type Colors = ReturnType<typeof picocolors.createColors>;
 
 /** Progress of one long step; `stop` takes the bar off the screen. */
 export interface Progress {
-  update(done: number, total: number, stage: string): void;
+  update(done: number, total: number, stage?: string): void;
   stop(): void;
 }
 
@@ -108,10 +108,10 @@ export class Terminal {
     let started = false;
     return {
       update: (done, total, stage) => {
-        if (!started) bar.start(total, done, { stage: stage || title });
+        if (!started) bar.start(total, done, { stage: stage ?? title });
         started = true;
         bar.setTotal(total);
-        bar.update(done, { stage: stage || title });
+        bar.update(done, { stage: stage ?? title });
       },
       stop: () => {
         if (started) bar.stop();

@@ -1,7 +1,8 @@
 /** Reading a fit file. */
 
 import { UsageError } from '../errors.js';
-import type { CoefficientField, Model } from '../fields/CoefficientField.js';
+import type { CoefficientField } from '../fields/CoefficientField.js';
+import { modelFields } from '../fields/modelParameters.js';
 import { checkDocument, type DocumentPlace } from './checkDocument.js';
 import { fitSchema, type FitDocument } from './FitDocument.js';
 
@@ -25,7 +26,7 @@ export function parseFit(value: unknown, place: Omit<DocumentPlace, 'kind'>): Fi
     refuse('data and model differ in their dimensions');
   }
   let total = 0;
-  for (const field of listFields(fit.model)) {
+  for (const field of modelFields(fit.model)) {
     const components = countComponents(field, dimensions);
     if (field.coefficients.length !== components) {
       refuse(`${field.name} has ${field.coefficients.length} components where its form has ${components}`);
@@ -42,13 +43,6 @@ export function parseFit(value: unknown, place: Omit<DocumentPlace, 'kind'>): Fi
     refuse('the grid of the visited region does not match its counts');
   }
   return fit;
-}
-
-/** The fields of a model, in model order. */
-function listFields(model: Model): readonly CoefficientField[] {
-  return model.order === 'second'
-    ? [model.force, model.friction, model.noise]
-    : [model.drift, model.diffusion];
 }
 
 function countComponents(field: CoefficientField, dimensions: number): number {

@@ -27,7 +27,7 @@ export async function runSimulate({ operands, options, terminal }: Call): Promis
   const scenario = parseScenario(value, path);
   const seed = (options.seed as number | undefined) ?? 1;
   const progress = await terminal.startProgress('simulating');
-  const tracks = await withWorkers(options.workers, (mapTasks) =>
+  const { tracks, warnings } = await withWorkers(options.workers, (mapTasks) =>
     simulateScenario(scenario, {
       tracks: options.tracks as number | undefined,
       frames: options.frames as number | undefined,
@@ -38,6 +38,7 @@ export async function runSimulate({ operands, options, terminal }: Call): Promis
       onProgress: progress.update,
     }),
   ).finally(progress.stop);
+  for (const warning of warnings) terminal.warn(warning);
 
   if (output === undefined) {
     for (const piece of formatTrackTable(tracks)) {

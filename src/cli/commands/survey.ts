@@ -25,7 +25,13 @@ export async function runSurvey({ operands, options, terminal }: Call): Promise<
     await writeWhole(terminal.resolve(momenta), formatMomenta(table), momenta);
     terminal.note(`wrote ${momenta}`);
   }
-  const result = { ...survey, counts: recording.counts, sources: recording.sources, warnings };
+  const result = {
+    ...survey,
+    units: recording.tracks.units,
+    counts: recording.counts,
+    sources: recording.sources,
+    warnings,
+  };
   const text = options.json ? formatJson(result) : formatSurveySummary(result, terminal.summaryStyle);
   await deliver(text, options.output, terminal);
 }
