@@ -1,14 +1,14 @@
 /** Cells to numbers: exact, quick for the usual cell, and able to say what is wrong with the others. */
 
 const POWERS_OF_TEN = Float64Array.from({ length: 23 }, (_, k) => Number(`1e${k}`)); // all exact in double precision
-const LARGEST_EXACT = 2 ** 53; // integers below it are exact in double precision
-const MOST_DIGITS = 16; // more digits than that never stay below LARGEST_EXACT
+const BLOCK = 9; // decimal digits that fit a 32-bit integer
 
 /**
  * A plain decimal number: sign, digits with at most one decimal mark, exponent; nothing else, no blanks.
  *
- * Where the digits make an integer below 2⁵³ and the power of ten is at most 22 both are exact, and one division or
- * multiplication rounds correctly; every other number is left to `Number`.
+ * Up to 15 significant digits and a power of ten up to 22 are both exact in double precision, and one division or
+ * multiplication rounds correctly (Clinger). Up to 18 digits are held as a sum of two doubles and divided with the
+ * remainder (divideRounded). Everything else is left to `Number`.
  *
  * @param mark  character code of the decimal mark, or 0 where a mark is not to be accepted
  * @returns the correctly rounded value; NaN for anything else (then ask classifyCell)
@@ -21,45 +21,102 @@ export function parsePlainNumber(cell: string, mark: number): number {
   let code = length > 0 ? cell.charCodeAt(0) : 0;
   const negative = code === 45;
   if (negative || code === 43) place = 1;
-  let mantissa = 0;
+  let first = 0; // the first nine significant digits
+  let second = 0; // the next nine
   let digits = 0; // significant ones
-  let decimals = 0;
-  let markSeen = false;
+  let markPlace = -1;
   let digitSeen = false;
   for (; place < length; place++) {
     code = cell.charCodeAt(place);
-    if (code >= 48 && code <= 57) {
+    const digit = code - 48;
+    if (digit >= 0 && digit <= 9) {
       digitSeen = true;
-      mantissa = mantissa * 10 + (code - 48);
-      if (mantissa > 0) digits++;
-      if (markSeen) decimals++;
-    } else if (code === mark && !markSeen) {
-      markSeen = true;
+      if (digits < BLOCK) first = (Math.imul(first, 10) + digit) | 0;
+      else if (digits < 2 * BLOCK) second = (Math.imul(second, 10) + digit) | 0;
+      if (first !== 0) digits++;
+    } else if (code === mark && markPlace === -1) {
+      markPlace = place;
     } else {
       break;
     }
   }
   if (!digitSeen) return NaN;
-  let exponent = 0;
+  let exponent = markPlace === -1 ? 0 : markPlace + 1 - place;
   if (place < length) {
-    if (code !== 69 && code !== 101) return NaN;
-    code = cell.charCodeAt(++place);
-    const sign = code === 45 ? -1 : 1;
-    if (code === 45 || code === 43) place++;
-    if (place >= length) return NaN;
-    for (; place < length; place++) {
-      code = cell.charCodeAt(place);
-      if (code < 48 || code > 57) return NaN;
-      exponent = Math.min(exponent * 10 + (code - 48), 100_000);
-    }
-    exponent *= sign;
+    const given = parseExponent(cell, place);
+    if (given !== given) return NaN;
+    exponent += given;
   }
-  exponent -= decimals;
-  if (digits <= MOST_DIGITS && mantissa < LARGEST_EXACT && exponent >= -22 && exponent <= 22) {
-    const size = exponent < 0 ? mantissa / POWERS_OF_TEN[-exponent] : mantissa * POWERS_OF_TEN[exponent];
-    return negative ? -size : size;
+  let size: number;
+  if (exponent < -22 || exponent > 22 || digits > 2 * BLOCK) {
+    return Number(mark === 44 ? cell.replace(',', '.') : cell);
   }
-  return Number(mark === 44 ? cell.replace(',', '.') : cell);
+  const shift = digits > BLOCK ? POWERS_OF_TEN[digits - BLOCK] : 1;
+  if (digits <= 15) {
+    const mantissa = first * shift + second;
+    size = exponent < 0 ? mantissa / POWERS_OF_TEN[-exponent] : mantissa * POWERS_OF_TEN[exponent];
+  } else {
+    size = exponent <= 0 ? divideRounded(first, shift, second, POWERS_OF_TEN[-exponent]) : NaN;
+    if (size !== size) return Number(mark === 44 ? cell.replace(',', '.') : cell);
+  }
+  return negative ? -size : size;
+}
+
+/** The power of ten behind `e` or `E` at the given place; NaN where there is anything else. */
+function parseExponent(cell: string, place: number): number {
+  let code = cell.charCodeAt(place);
+  if (code !== 69 && code !== 101) return NaN;
+  code = cell.charCodeAt(++place);
+  const negative = code === 45;
+  if (negative || code === 43) place++;
+  if (place >= cell.length) return NaN;
+  let exponent = 0;
+  for (; place < cell.length; place++) {
+    code = cell.charCodeAt(place);
+    if (code < 48 || code > 57) return NaN;
+    exponent = Math.min(exponent * 10 + (code - 48), 100_000); // far beyond any double, safe from overflow
+  }
+  return negative ? -exponent : exponent;
+}
+
+const SPLITTER = 2 ** 27 + 1;
+const DOUBT = 2 ** -50; // relative error of the correction below, generously
+
+/**
+ * (first · shift + second) / divisor, correctly rounded, or NaN where that is in doubt.
+ *
+ * The numerator is held exactly as high + low; quotient q = high / divisor; its remainder r = high − q divisor + low
+ * is exact up to its own rounding, and the answer is q + r / divisor. Where an error of the correction as large as
+ * DOUBT could turn the last bit, a tie is near: NaN.
+ *
+ * @param first  integer, 0 to 10⁹;  @param shift  power of ten up to 10⁹;  @param second  integer below `shift`
+ * @param divisor  power of ten up to 10²²
+ *
+ * Source   error-free product and sum: Dekker, A floating-point technique for extending the available precision,
+ *          Numer. Math. 18 (1971) 224.
+ */
+function divideRounded(first: number, shift: number, second: number, divisor: number): number {
+  const product = first * shift;
+  const productError = errorOfProduct(first, shift, product);
+  const high = product + second; // product ≥ second
+  const low = second - (high - product) + productError;
+  const quotient = high / divisor;
+  const multiple = quotient * divisor;
+  const remainder = high - multiple - errorOfProduct(quotient, divisor, multiple) + low;
+  const correction = remainder / divisor;
+  const below = quotient + correction * (1 - DOUBT);
+  return below === quotient + correction * (1 + DOUBT) ? below : NaN;
+}
+
+/** a b − fl(a b), exactly. */
+function errorOfProduct(a: number, b: number, product: number): number {
+  const aScaled = SPLITTER * a;
+  const aHigh = aScaled - (aScaled - a);
+  const aLow = a - aHigh;
+  const bScaled = SPLITTER * b;
+  const bHigh = bScaled - (bScaled - b);
+  const bLow = b - bHigh;
+  return aLow * bLow - (product - aHigh * bHigh - aLow * bHigh - aHigh * bLow);
 }
 
 export type CellKind =
