@@ -9,7 +9,7 @@ const SEED = 20;
 const FRAMES = 700;
 const INTERVAL = 0.05; // s
 const SUBSTEPS = 200;
-const WARM_UP_FRAMES = 800; // 40 s: five times the slowest relaxation, friction/bowl = 8 s on the bare table
+const WARM_UP_FRAMES = 2000; // 100 s: five times the slowest relaxation, friction/bowl = 20 s on the felt
 const LOCALIZATION_ERROR = 6e-4; // m
 
 export const feltTable: DataSet = {
@@ -17,7 +17,7 @@ export const feltTable: DataSet = {
   title: 'Pucks on an air-cushion table with a felt strip',
   description:
     'Sixty recordings of a single light puck on an air-cushion table, seen by a camera from above. A strip of felt ' +
-    'lies along x = 0.15 m, the table is slightly bowl-shaped, a fan near (-0.15, 0.05) m stirs the air in a circle, ' +
+    'lies along x = 0.05 m, the table is slightly bowl-shaped, a fan near (-0.2, 0.05) m stirs the air in a circle, ' +
     'and the air jets that agitate the puck are stronger towards positive y. Simulated; the apparatus is invented.',
   question:
     'Where is the felt and how much does it brake, is the force on the puck that of a bowl alone or does something ' +

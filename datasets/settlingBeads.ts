@@ -9,7 +9,7 @@ const SEED = 30;
 const FRAMES = 1000;
 const INTERVAL = 0.05; // s
 const SUBSTEPS = 200;
-const WARM_UP = 1000; // s: five times 4 scale²/diffusion, the slowest relaxation of sedimentation at the usual height
+const WARM_UP = 1000; // s: nine times 4 scale²/diffusion, the slowest relaxation of sedimentation at the usual height
 const WARM_UP_STEP = 1e-3; // s: four times the recorded substep, still 1/100 of the fastest relaxation
 const LOCALIZATION_ERROR = 2e-8; // m
 const START = 2e-6; // m
@@ -19,8 +19,8 @@ export const settlingBeads: DataSet = {
   title: 'Heights of beads sedimenting onto a floor',
   description:
     'Forty colloidal beads of 1.5 µm radius in water, nearly of the density of water, hover above a charged glass ' +
-    'floor: their weight pulls them down over a height of 2 µm per thermal energy, and electrostatic repulsion of ' +
-    '0.1 µm range keeps them off the floor. The height is the gap between bead and floor. Moving fluid through that ' +
+    'floor: their weight pulls them down over a height of 1.5 µm per thermal energy, and electrostatic repulsion of ' +
+    '0.2 µm range keeps them off the floor. The height is the gap between bead and floor. Moving fluid through that ' +
     'gap hinders diffusion near the floor. Simulated; the laboratory is invented.',
   question:
     'How does diffusion fall towards the floor, and does the drift agree with weight and repulsion at one temperature?',

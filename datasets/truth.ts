@@ -44,15 +44,15 @@ export interface FirstOrderTruth extends TruthBase {
 export type Truth = SecondOrderTruth | FirstOrderTruth;
 
 const felt = {
-  bowl: 0.25, // 1/s²: steepness of the bowl-shaped tilt
-  fan: 1.5, // 1/s²: strength of the fan at its centre
-  fanX: -0.15, // m
+  bowl: 0.3, // 1/s²: steepness of the bowl-shaped tilt
+  fan: 1.2, // 1/s²: strength of the fan at its centre
+  fanX: -0.2, // m
   fanY: 0.05, // m
-  fanWidth: 0.15, // m
+  fanWidth: 0.2, // m
   glide: 2, // 1/s: friction on the bare table
   felt: 2, // extra friction on the middle of the felt, in units of `glide`
-  stripX: 0.15, // m
-  stripWidth: 0.06, // m
+  stripX: 0.05, // m
+  stripWidth: 0.1, // m
   jets: 0.04, // m²/s³: mean strength of the air jets
   tilt: 0.5, // relative difference of the jets between the two ends
   jetWidth: 0.2, // m
@@ -89,9 +89,9 @@ export const FELT_TABLE: SecondOrderTruth = {
 const beads = {
   radius: 1.5e-6, // m
   free: 1.43e-13, // m²/s: diffusion far from the floor, of that radius in water at 20 °C
-  scale: 2e-6, // m: height over which the weight costs one thermal energy
-  repulsion: 12, // thermal energies at contact
-  screening: 1e-7, // m: Debye length
+  scale: 1.5e-6, // m: height over which the weight costs one thermal energy
+  repulsion: 10, // thermal energies at contact
+  screening: 2e-7, // m: Debye length
 };
 
 /**

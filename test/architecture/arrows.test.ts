@@ -26,7 +26,7 @@ const ALLOWED: Readonly<Record<string, readonly string[]>> = {
   momenta: ['numerics', 'tracks'],
   fields: ['numerics', 'tracks', 'momenta'],
   documents: ['fields'],
-  estimation: ARITHMETIC,
+  estimation: [...ARITHMETIC, 'documents'],
   uncertainty: [...ARITHMETIC, 'documents', 'estimation'],
   hypotheses: [...ARITHMETIC, 'documents', 'estimation', 'uncertainty'],
   simulation: [...ARITHMETIC, 'documents'],
