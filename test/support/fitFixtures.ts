@@ -6,6 +6,7 @@ import { type FitDocument, fitSchema } from '../../src/documents/FitDocument.js'
 import { studySchema } from '../../src/documents/Study.js';
 import type { BasisSpec } from '../../src/fields/Basis.js';
 import type { CoefficientField, FieldForm, FieldName, Model } from '../../src/fields/CoefficientField.js';
+import { createBasis } from '../../src/fields/createBasis.js';
 import { randomStream } from '../../src/numerics/random/RandomStream.js';
 
 export interface ExampleFitOptions {
@@ -54,10 +55,14 @@ export function trapField(
     centre: new Array<number>(d).fill(0),
     scale: new Array<number>(d).fill(1),
   };
-  // One constant and d first-degree monomials; an isotropic trap needs only to know where each axis' monomial sits.
+  const functions = createBasis(basis, d);
+  const indices = new Int32Array(functions.support);
+  const slopes = new Float64Array(functions.support);
   const coefficients = periods.map((period, axis) => {
-    const row = new Array<number>(d + 1).fill(0);
-    if (period === 0) row[1 + axis] = -stiffness;
+    const row = new Array<number>(functions.functionCount).fill(0);
+    const count = functions.differentiateInto(new Array<number>(d).fill(0), 0, axis, indices, slopes);
+    for (let i = 0; i < count; i++)
+      if (slopes[i] !== 0 && period === 0) row[indices[i]] = -stiffness / slopes[i];
     return row;
   });
   return { name, form: 'vector', link: 'identity', basis, coefficients };

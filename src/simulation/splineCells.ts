@@ -1,0 +1,161 @@
+/**
+ * Cubic splines as one polynomial per cell: what the integrators evaluate millions of times a second.
+ */
+
+import type { Basis, BasisSpec } from '../fields/Basis.js';
+
+type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
+
+/** Evaluates several weighted sums of functions at one place, writing them from `out[outOffset]` on. */
+export type SumEvaluator = (place: Float64Array, out: Float64Array, outOffset: number) => void;
+
+/** More numbers than this would not stay in the cache; the basis is then evaluated directly. */
+const MAX_CELL_COEFFICIENTS = 2_000_000;
+
+const NODES = [0, 1 / 3, 2 / 3, 1];
+/** Coefficients of 1, t, t², t³ from the values at the four nodes (inverse Vandermonde matrix, exact). */
+const FROM_NODES = [
+  [1, 0, 0, 0],
+  [-5.5, 9, -4.5, 1],
+  [9, -22.5, 18, -4.5],
+  [-4.5, 13.5, -13.5, 4.5],
+];
+
+/**
+ * Compiles weighted sums of tensor cubic B-splines. Inside a cell of the knot grid each sum is one cubic per axis, so
+ * its values at 4 points per axis determine it exactly (up to rounding).
+ *
+ * @param weights  one array of k weights per sum
+ * @returns null where the grid is too large to be worth it
+ */
+export function compileSplineCells(
+  basis: Basis,
+  spec: SplineSpec,
+  weights: readonly (readonly number[])[],
+): SumEvaluator | null {
+  const d = basis.dimensions;
+  const cells = spec.counts.map((count, axis) => (spec.periods[axis] > 0 ? count : count - 3));
+  if (cells.some((count) => count < 1)) return null;
+  const cellCount = cells.reduce((product, count) => product * count, 1);
+  const perSum = 4 ** d;
+  const sums = weights.length;
+  if (cellCount * perSum * sums > MAX_CELL_COEFFICIENTS) return null;
+
+  const widths = cells.map((count, axis) => (spec.high[axis] - spec.low[axis]) / count);
+  const table = new Float64Array(cellCount * sums * perSum);
+  const indices = new Int32Array(basis.support);
+  const values = new Float64Array(basis.support);
+  const place = new Float64Array(d);
+  const samples = new Float64Array(sums * perSum);
+  for (let cell = 0; cell < cellCount; cell++) {
+    for (let node = 0; node < perSum; node++) {
+      let restCell = cell;
+      let restNode = node;
+      for (let axis = d - 1; axis >= 0; axis--) {
+        place[axis] = spec.low[axis] + ((restCell % cells[axis]) + NODES[restNode % 4]) * widths[axis];
+        restCell = Math.floor(restCell / cells[axis]);
+        restNode = Math.floor(restNode / 4);
+      }
+      const count = basis.evaluateInto(place, 0, indices, values);
+      for (let sum = 0; sum < sums; sum++) {
+        let value = 0;
+        for (let i = 0; i < count; i++) value += weights[sum][indices[i]] * values[i];
+        samples[sum * perSum + node] = value;
+      }
+    }
+    for (let sum = 0; sum < sums; sum++) {
+      interpolate(samples.subarray(sum * perSum, (sum + 1) * perSum), d);
+    }
+    table.set(samples, cell * sums * perSum);
+  }
+  return createEvaluator(d, sums, spec, cells, widths, table);
+}
+
+/** Turns values at the nodes into polynomial coefficients, axis by axis, in place. */
+function interpolate(values: Float64Array, d: number): void {
+  const column = new Float64Array(4);
+  for (let axis = 0; axis < d; axis++) {
+    const stride = 4 ** (d - 1 - axis);
+    for (let start = 0; start < values.length; start++) {
+      if (Math.floor(start / stride) % 4 !== 0) continue;
+      for (let i = 0; i < 4; i++) column[i] = values[start + i * stride];
+      for (let i = 0; i < 4; i++) {
+        const row = FROM_NODES[i];
+        values[start + i * stride] =
+          row[0] * column[0] + row[1] * column[1] + row[2] * column[2] + row[3] * column[3];
+      }
+    }
+  }
+}
+
+function createEvaluator(
+  d: number,
+  sums: number,
+  spec: SplineSpec,
+  cells: readonly number[],
+  widths: readonly number[],
+  table: Float64Array,
+): SumEvaluator {
+  const scale = Float64Array.from(widths, (width) => 1 / width);
+  const low = Float64Array.from(spec.low);
+  const counts = Int32Array.from(cells);
+  const wraps = Uint8Array.from(spec.periods, (period) => (period > 0 ? 1 : 0));
+  const local = new Float64Array(3);
+  /** Cell number of a place; leaves the place inside the cell in `local`. */
+  const locate = (place: Float64Array): number => {
+    let cell = 0;
+    for (let axis = 0; axis < d; axis++) {
+      const count = counts[axis];
+      let u = (place[axis] - low[axis]) * scale[axis];
+      if (wraps[axis] === 1) {
+        if (u < 0 || u >= count) u -= Math.floor(u / count) * count;
+      } else if (u < 0) u = 0;
+      else if (u > count) u = count;
+      let index = u | 0;
+      if (index >= count) index = count - 1;
+      local[axis] = u - index;
+      cell = cell * count + index;
+    }
+    return cell;
+  };
+
+  if (d === 1) {
+    return (place, out, outOffset) => {
+      let at = locate(place) * sums * 4;
+      const t = local[0];
+      for (let sum = 0; sum < sums; sum++, at += 4) {
+        out[outOffset + sum] = table[at] + t * (table[at + 1] + t * (table[at + 2] + t * table[at + 3]));
+      }
+    };
+  }
+  if (d === 2) {
+    return (place, out, outOffset) => {
+      let at = locate(place) * sums * 16;
+      const s = local[0];
+      const t = local[1];
+      for (let sum = 0; sum < sums; sum++, at += 16) {
+        const a = table[at] + t * (table[at + 1] + t * (table[at + 2] + t * table[at + 3]));
+        const b = table[at + 4] + t * (table[at + 5] + t * (table[at + 6] + t * table[at + 7]));
+        const c = table[at + 8] + t * (table[at + 9] + t * (table[at + 10] + t * table[at + 11]));
+        const e = table[at + 12] + t * (table[at + 13] + t * (table[at + 14] + t * table[at + 15]));
+        out[outOffset + sum] = a + s * (b + s * (c + s * e));
+      }
+    };
+  }
+  return (place, out, outOffset) => {
+    let at = locate(place) * sums * 64;
+    const [r, s, t] = local;
+    for (let sum = 0; sum < sums; sum++, at += 64) {
+      let total = 0;
+      for (let i = 3; i >= 0; i--) {
+        let row = 0;
+        for (let j = 3; j >= 0; j--) {
+          const k = at + i * 16 + j * 4;
+          row = row * s + table[k] + t * (table[k + 1] + t * (table[k + 2] + t * table[k + 3]));
+        }
+        total = total * r + row;
+      }
+      out[outOffset + sum] = total;
+    }
+  };
+}
