@@ -19,6 +19,8 @@ export interface Recording {
   readonly exposure: number;
   /** Standard deviation of the localization error per axis, length d. */
   readonly localizationError: ArrayLike<number>;
+  /** Shape (n, d); replaces it by one standard deviation per row and axis, where the table gave them. */
+  readonly localizationErrors?: Float64Array | null;
 }
 
 const EXPOSURE_STEPS = 4; // least steps per exposure window; the trapezoid's error is a hundredth of the blur
@@ -47,7 +49,7 @@ export type TrackSimulator = (
 export function createTrackSimulator(integrator: Integrator, recording: Recording): TrackSimulator {
   const { evaluator } = integrator;
   const d = evaluator.dimensions;
-  const { step, exposure, localizationError } = recording;
+  const { step, exposure, localizationError, localizationErrors = null } = recording;
   const q = new Float64Array(d);
   const v = new Float64Array(d);
   const before = new Float64Array(d);
@@ -87,7 +89,8 @@ export function createTrackSimulator(integrator: Integrator, recording: Recordin
       }
       for (let axis = 0; axis < d; axis++) {
         const centre = exposure > 0 ? mean[axis] : q[axis];
-        const error = localizationError[axis];
+        const error =
+          localizationErrors === null ? localizationError[axis] : localizationErrors[row * d + axis];
         const seen = error > 0 ? centre + error * stream.normal() : centre;
         if (!Number.isFinite(seen)) throw escapeError(times[row] - times[first], step);
         out[row * d + axis] = seen;

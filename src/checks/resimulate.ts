@@ -1,0 +1,176 @@
+/**
+ * Re-simulation: the fitted model, simulated as the recording was made, against the recording.
+ */
+
+import type { FitDocument } from '../documents/FitDocument.js';
+import { DataError, UsageError, type Warning } from '../errors.js';
+import { modelFields, modelParameters } from '../fields/modelParameters.js';
+import { type MapTasks, mapTasksSerially } from '../numerics/MapTasks.js';
+import type { TrackSet } from '../tracks/TrackSet.js';
+import { compareFeatures } from './compareFeatures.js';
+import { drawSeries } from './drawSeries.js';
+import { describeReplicateTask } from './describeReplicateTask.js';
+import type { RefitCoefficient, ResimulationResult } from './ResimulationResult.js';
+import { createDesign, type Design, simulateDesign } from './simulateDesign.js';
+import { measureFeatures, planFeatures } from './trackFeatures.js';
+
+export interface ResimulationOptions {
+  /** Simulated recordings; at least 19, so that a p-value can reach 0.05. */
+  readonly replicates?: number;
+  readonly seed: number;
+  readonly mapTasks?: MapTasks;
+  /** The fit's own estimator: tracks in, coefficient vector of the model out. Null where it finds none. */
+  readonly refit?: (tracks: TrackSet) => Promise<ArrayLike<number> | null>;
+  /** How many simulated recordings are refitted. */
+  readonly refits?: number;
+  readonly onProgress?: (done: number, total: number) => void;
+}
+
+const REPLICATES = 99; // p-values in steps of 0.01
+const FEWEST_REPLICATES = 19;
+const REFITS = 8; // standard error of the mean a third of the estimator's scatter
+const LEVEL = 0.05;
+
+const TITLES: Readonly<Record<string, string>> = {
+  occupancy: 'where the particles are',
+  'velocity-distribution': 'displacements from frame to frame',
+  'displacement-distribution': 'displacements over longer times',
+  'mean-squared-displacement': 'mean squared displacement by lag',
+  'velocity-autocorrelation': 'correlation of velocities by lag',
+  'kinetic-temperature': 'mean squared velocity by place',
+  'velocity-persistence': 'product of neighbouring velocities by place',
+  current: 'mean velocity by place',
+  circulation: 'area swept around the centre per time',
+};
+
+/**
+ * Simulates a fit at the recorded design and compares statistics it was not fitted to.
+ *
+ * Every replicate uses its own draw of the coefficients (and of the localization error) from the fit's uncertainty,
+ * so that a right model is not refused for the error of its estimate. The verdict rests on the largest deviation over
+ * all statistics, with its simulated p-value: a right model is called inconsistent in at most 5 % of studies.
+ *
+ * @param tracks  the recording the fit was made from
+ * @throws UsageError  too few replicates
+ * @throws DataError  tracks of other dimensions than the fit, or none
+ * @throws NumericalError  where the fitted model runs off to infinity
+ */
+export async function resimulate(
+  fit: FitDocument,
+  tracks: TrackSet,
+  options: ResimulationOptions,
+): Promise<ResimulationResult> {
+  const { replicates = REPLICATES, seed, mapTasks = mapTasksSerially } = options;
+  if (!Number.isInteger(replicates) || replicates < FEWEST_REPLICATES) {
+    throw new UsageError(
+      `--replicates must be a whole number of at least ${FEWEST_REPLICATES} to reach a p-value of ${LEVEL}, got ${replicates}`,
+      { option: '--replicates', value: replicates },
+    );
+  }
+  if (tracks.dimensions !== fit.model.dimensions) {
+    throw new DataError(
+      `the tracks have ${tracks.dimensions} dimensions but the fit has ${fit.model.dimensions}; give the tracks it was made from`,
+      { found: tracks.dimensions, needed: fit.model.dimensions },
+    );
+  }
+  if (tracks.times.length === 0)
+    throw new DataError('there are no positions to compare with; give the tracks of the fit');
+
+  const design = createDesign(fit, tracks);
+  const layout = planFeatures(tracks, fit.visited.low, fit.visited.high);
+  const draws = fit.uncertainty.replicates;
+  const inputs = Array.from({ length: replicates }, (_, index) => ({
+    index,
+    draw: draws.length > 0 ? draws[index % draws.length] : null,
+  }));
+  const refits = options.refit === undefined ? 0 : Math.min(options.refits ?? REFITS, replicates);
+  const total = replicates + refits;
+  const described = await mapTasks(describeReplicateTask, { design, layout, seed }, inputs, (done) =>
+    options.onProgress?.(done, total),
+  );
+  const recorded = measureFeatures(layout, tracks.positions);
+  const features = [recorded, ...described.map((replicate) => replicate.features)];
+  const blocks = layout.blocks.filter((block) => !block.name.startsWith('curve:'));
+  const comparison = compareFeatures(features, blocks);
+
+  const warnings: Warning[] = design.scenario.warnings.filter(({ code }) => code.startsWith('negative-'));
+  if (draws.length === 0) {
+    warnings.push({
+      code: 'no-uncertainty',
+      message: 'the fit holds no coefficient draws, so the comparison takes its coefficients for exact',
+    });
+  }
+  const refit =
+    options.refit === undefined
+      ? []
+      : await refitCoefficients(fit, design, seed, refits, options.refit, warnings, (done) =>
+          options.onProgress?.(replicates + done, total),
+        );
+  return {
+    replicates,
+    seed,
+    statistics: comparison.statistics.map((statistic) => ({
+      ...statistic,
+      title: TITLES[statistic.name] ?? statistic.name,
+    })),
+    refit,
+    p: comparison.p,
+    level: LEVEL,
+    consistent: comparison.p > LEVEL,
+    series: drawSeries(layout, features, tracks),
+    warnings,
+  };
+}
+
+/** Simulates the fitted coefficients themselves and estimates them again from the simulated recordings. */
+async function refitCoefficients(
+  fit: FitDocument,
+  design: Design,
+  seed: number,
+  refits: number,
+  refit: NonNullable<ResimulationOptions['refit']>,
+  warnings: Warning[],
+  onProgress: (done: number) => void,
+): Promise<RefitCoefficient[]> {
+  const putIn = modelParameters(fit.model);
+  const found: ArrayLike<number>[] = [];
+  for (let index = 0; index < refits; index++) {
+    const positions = simulateDesign(design, null, seed, `refit-${index}`, false);
+    const estimate = await refit({ ...design.tracks, positions });
+    if (estimate !== null && estimate.length === putIn.length) found.push(estimate);
+    onProgress(index + 1);
+  }
+  if (found.length < refits) {
+    warnings.push({
+      code: 'refit-failed',
+      message: `${refits - found.length} of ${refits} simulated recordings could not be fitted again`,
+    });
+  }
+  const names = nameCoefficients(fit);
+  if (found.length === 0) return [];
+  return names.map((name, index) => {
+    const values = found.map((estimate) => estimate[index]);
+    const mean = values.reduce((sum, value) => sum + value, 0) / values.length;
+    const square = values.reduce((sum, value) => sum + (value - mean) ** 2, 0);
+    const standardError = values.length < 2 ? null : Math.sqrt(square / (values.length - 1) / values.length);
+    return { name, putIn: putIn[index], refitted: mean, standardError };
+  });
+}
+
+/** `force_x[0]`, `friction_xx[3]`, …, in model order. */
+function nameCoefficients(fit: FitDocument): string[] {
+  const axes = fit.data.coordinates;
+  return modelFields(fit.model).flatMap((field) => {
+    const components = nameComponents(field.name === 'friction', field.form, axes);
+    return field.coefficients.flatMap((row, component) =>
+      row.map((_, index) => `${field.name}_${components[component]}[${index}]`),
+    );
+  });
+}
+
+function nameComponents(isFriction: boolean, form: string, axes: readonly string[]): string[] {
+  if (form === 'vector') return [...axes];
+  if (form === 'scalar') return [axes[0] + axes[0]];
+  if (form === 'axes') return axes.map((axis) => axis + axis);
+  return axes.flatMap((a, i) => axes.filter((_, j) => isFriction || j >= i).map((b) => a + b));
+}
