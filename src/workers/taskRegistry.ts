@@ -8,6 +8,8 @@ import type { Task } from '../numerics/MapTasks.js';
 type AnyTask = Task<unknown, unknown, unknown>;
 
 const LOADERS: Readonly<Record<string, () => Promise<AnyTask>>> = {
+  'describe-replicate': async () =>
+    (await import('../checks/describeReplicateTask.js')).describeReplicateTask as AnyTask,
   'simulate-tracks': async () =>
     (await import('../simulation/simulateScenario.js')).simulateTracksTask as AnyTask,
   'sum-of-squares': async () => (await import('./probeTask.js')).probeTask as AnyTask,
