@@ -157,11 +157,13 @@ function conflictError(rows: CollectedRows, first: number, second: number): Data
   const lines = [rows.lines[first], rows.lines[second]].sort((a, b) => a - b);
   const time = rows.times[first];
   const moment = `${rows.countsFrames ? 'frame' : 'time'} ${time}`;
-  return tableError(
-    { file },
-    `track ${quoteCell(name)} has two different positions at ${moment} (lines ${lines[0]} and ${lines[1]}); keep one`,
-    { track: name, time, lines },
-  );
+  const place = `${moment} (lines ${lines[0]} and ${lines[1]})`;
+  const sentence =
+    name === file
+      ? `the file has no track column and two different positions at ${place}; keep one, or name the column that tells ` +
+        'tracks apart with --columns track=NAME'
+      : `track ${quoteCell(name)} has two different positions at ${place}; keep one`;
+  return tableError({ file }, sentence, { track: name, time, lines });
 }
 
 function checkTimesDiffer({ times, countsFrames }: CollectedRows): void {

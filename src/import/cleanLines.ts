@@ -21,31 +21,37 @@ export function cleanLines(text: string, delimiter: Delimiter | null): string {
   return hasComments ? lines.replace(/(^|\n)#[^\n]*/g, '$1') : lines;
 }
 
+const [FEED, RETURN, QUOTE, HASH] = [10, 13, 34, 35]; // character codes
+
 /** The same with an eye on quotes: they open a cell at its very beginning only, and are doubled inside. */
 function cleanQuotedLines(text: string, delimiters: string): string {
+  const codes = Array.from(delimiters, (delimiter) => delimiter.charCodeAt(0));
   let cleaned = '';
   let kept = 0; // everything before this place is in `cleaned`
   let place = 0;
   let lineStart = true;
   let cellStart = true;
   while (place < text.length) {
-    const character = text[place];
-    if (lineStart && character === '#') {
-      cleaned += text.slice(kept, place);
-      while (place < text.length && text[place] !== '\n' && text[place] !== '\r') place++;
-      kept = place;
-      lineStart = cellStart = false;
-    } else if (cellStart && character === '"') {
+    const code = text.charCodeAt(place);
+    if (cellStart && code === QUOTE) {
       place = findClosingQuote(text, place) + 1;
       lineStart = cellStart = false;
-    } else if (character === '\r') {
-      cleaned += `${text.slice(kept, place)}\n`;
-      place += text[place + 1] === '\n' ? 2 : 1;
+    } else if (lineStart && code === HASH) {
+      cleaned += text.slice(kept, place);
+      while (place < text.length && text.charCodeAt(place) !== FEED && text.charCodeAt(place) !== RETURN)
+        place++;
       kept = place;
+      lineStart = cellStart = false;
+    } else if (code === RETURN) {
+      cleaned += text.slice(kept, place);
+      kept = place + 1;
+      if (text.charCodeAt(kept) !== FEED) cleaned += '\n';
+      else place++;
+      place++;
       lineStart = cellStart = true;
     } else {
-      lineStart = character === '\n';
-      cellStart = lineStart || delimiters.includes(character);
+      lineStart = code === FEED;
+      cellStart = lineStart || codes.includes(code);
       place++;
     }
   }

@@ -89,7 +89,7 @@ export function findColumns(
   if (names.every((name) => name !== '' && Number.isFinite(Number(name)))) {
     throw tableError(
       { file, line },
-      'the first line holds numbers; a header line that names the columns is needed',
+      'the line holds numbers where a header line that names the columns is needed (lines that begin with # are comments)',
     );
   }
   const place = (role: ColumnRole): number => findColumn(names, role, mapping[role], file, line);

@@ -69,7 +69,7 @@ async function* inflate(
     yield first;
     yield* rest;
   };
-  const gunzip = createGunzip();
+  const gunzip = createGunzip({ chunkSize: LARGEST_PIECE });
   pipeline(Readable.from(packed()), gunzip, () => undefined); // errors arrive through the loop below
   try {
     for await (const chunk of gunzip as AsyncIterable<Uint8Array>) yield chunk;

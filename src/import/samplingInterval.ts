@@ -54,15 +54,16 @@ export function estimateSamplingInterval(
 /** Sorted steps between different times; of very many an evenly spread part. */
 function collectSteps(times: Float64Array, trackOffsets: Int32Array): Float64Array {
   const stride = Math.max(1, Math.ceil(times.length / MOST_STEPS));
-  const steps: number[] = [];
+  const steps = new Float64Array(Math.floor(times.length / stride) + 1);
+  let count = 0;
   let counter = 0;
   for (let track = 0; track + 1 < trackOffsets.length; track++) {
     for (let row = trackOffsets[track] + 1; row < trackOffsets[track + 1]; row++) {
       const step = times[row] - times[row - 1];
-      if (step > 0 && counter++ % stride === 0) steps.push(step);
+      if (step > 0 && counter++ % stride === 0) steps[count++] = step;
     }
   }
-  const sorted = Float64Array.from(steps).sort();
+  const sorted = steps.subarray(0, count).sort();
   // Times that differ by rounding only would fill windows of their own.
   const floor = SAME_TIME * (sorted[sorted.length >> 1] ?? 0);
   let first = 0;

@@ -108,7 +108,7 @@ class TableParser {
       this.#parser = new Papa.Parser({ delimiter: this.#dialect.delimiter, newline: '\n' });
     }
     const piece = this.#parser.parse(lines, 0, !last) as ParsedPiece;
-    this.#readRows(piece, lines.includes('"'), last);
+    this.#readRows(piece, holdsBrokenCells(lines, piece), last);
     this.#rest = last ? '' : lines.slice(piece.meta.cursor);
     this.#checkLength(
       this.#rest,
@@ -116,7 +116,7 @@ class TableParser {
     );
   }
 
-  #readRows(piece: ParsedPiece, quoted: boolean, last: boolean): void {
+  #readRows(piece: ParsedPiece, broken: boolean, last: boolean): void {
     const { data, errors } = piece;
     // The last error may belong to a record that is still incomplete: it will come again.
     const faulty = errors.length > 0 && (last || errors[0].row < data.length) ? errors[0].row : -1;
@@ -132,7 +132,7 @@ class TableParser {
               line,
             );
       }
-      if (quoted) for (const cell of cells) this.#line += countLineBreaks(cell);
+      if (broken) for (const cell of cells) this.#line += countLineBreaks(cell);
       if (cells.length === 1 && cells[0].trim() === '') continue;
       if (this.#headerRead) this.#consumer.readRow(cells, line);
       else if (this.#dialect !== null) {
@@ -163,4 +163,18 @@ function findLinesEnd(text: string): number {
   const feed = text.lastIndexOf('\n');
   if (text.length < 2 || !text.includes('\r')) return feed + 1; // searching forward is much faster than backward
   return Math.max(feed, text.lastIndexOf('\r', text.length - 2)) + 1;
+}
+
+/** Whether a record of the piece may take more than one line, because a quoted cell holds line breaks. */
+function holdsBrokenCells(lines: string, { data, meta }: ParsedPiece): boolean {
+  if (!lines.includes('"')) return false;
+  if (lines.includes('\r')) return true;
+  let feeds = 0;
+  for (
+    let place = lines.indexOf('\n');
+    place !== -1 && place < meta.cursor;
+    place = lines.indexOf('\n', place + 1)
+  )
+    feeds++;
+  return feeds !== data.length;
 }

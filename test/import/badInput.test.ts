@@ -20,6 +20,11 @@ const BAD_TABLES: Record<string, BadTable> = {
   'a file of blank lines and comments': { content: '# nothing\n\n   \n', says: /is empty/ },
   'an empty gzip file': { content: gzipSync(''), says: /is empty/ },
   'a header without rows': { content: `# only this\n${HEADER}\n\n`, line: 2, says: /not a single row/ },
+  'a header behind a comment mark': {
+    content: '# track,time,x\n1,0,2\n1,1,3\n',
+    line: 2,
+    says: /begin with # are comments/,
+  },
   'no header': { content: '1,0,0.5,2\n1,1,0.7,2\n', line: 1, says: /a header line that names the columns/ },
   'no x': { content: 'track,time,q\n1,0,2\n', line: 1, says: /no column x; .*"track", "time", "q"/ },
   'a name with its unit': { content: 'track,time,x (µm)\n1,0,2\n', line: 1, says: /--columns x="x \(µm\)"/ },
@@ -130,6 +135,10 @@ const BAD_TABLES: Record<string, BadTable> = {
   'conflicting rows': {
     content: `${HEADER}7,0.36,1,2\n8,0.36,1,2\n7,0.5,1,2\n7,0.36,1,3\n`,
     says: /tracks.csv: track "7" has two different positions at time 0.36 \(lines 2 and 5\); keep one/,
+  },
+  'rows of several tracks without a track column': {
+    content: 'particle,time,x\n1,0,1\n1,1,2\n2,0,3\n',
+    says: /the file has no track column and two different positions at time 0 \(lines 2 and 4\); .*--columns track=NAME/,
   },
   'a row too short': {
     content: `${HEADER}1,0,1,2\n1,1,1\n`,

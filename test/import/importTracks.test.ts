@@ -21,7 +21,9 @@ describe('columns', () => {
     });
     expect(result.tracks.dimensions).toBe(2);
     expect(Array.from(result.tracks.positions)).toEqual([1, 2, 2, 3]);
-    expect(result.warnings.find(({ code }) => code === 'coordinates-left-out')?.message).toMatch(/not used: z$/);
+    expect(result.warnings.find(({ code }) => code === 'coordinates-left-out')?.message).toMatch(
+      /not used: z$/,
+    );
     const flat = await importText('time,x,y\n0,3,4\n1,4,5\n', { columns: { x: 'x' } });
     expect(Array.from(flat.tracks.positions)).toEqual([3, 4]);
     expect(codes(flat)).toContain('coordinates-left-out');
