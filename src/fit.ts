@@ -4,12 +4,11 @@
 
 import type { FitDocument } from './documents/FitDocument.js';
 import type { Study } from './documents/Study.js';
-import { UsageError, type Warning } from './errors.js';
-import { partitionBlocks } from './estimation/blocks.js';
+import type { Warning } from './errors.js';
 import { chooseEstimator } from './estimation/choose.js';
-import type { Estimate, EstimationPlan, FieldPlan } from './estimation/Estimate.js';
-import { parseShape, resolveBasis } from './fields/shapes.js';
-import { type Survey, surveyTracks } from './momenta/survey.js';
+import type { Estimate } from './estimation/Estimate.js';
+import { planEstimation } from './estimation/planEstimation.js';
+import { surveyTracks } from './momenta/survey.js';
 import { checkTrackLengths } from './tracks/usableTracks.js';
 import { countPositions, countTracks, type TrackSet } from './tracks/TrackSet.js';
 import { sampleTracks } from './tracks/sampleTracks.js';
@@ -24,7 +23,10 @@ export interface FitContext {
 }
 
 /** A fit without what only the caller knows: file identity, sources and clock. */
-export type FitResult = Omit<FitDocument, 'format' | 'version' | 'program' | 'created' | 'timing' | 'sources'>;
+export type FitResult = Omit<
+  FitDocument,
+  'format' | 'version' | 'program' | 'created' | 'timing' | 'sources'
+>;
 
 /** Replicates behind simultaneous bands: their quantile needs more draws than a standard deviation does. */
 const BAND_REPLICATES = 1000;
@@ -45,7 +47,11 @@ const REPLICATE_DIGITS = 7;
  * @example
  * const fit = await fitTracks(tracks, studySchema.parse({ friction: 'constant', seed: 7 }));
  */
-export async function fitTracks(tracks: TrackSet, study: Study, context: FitContext = {}): Promise<FitResult> {
+export async function fitTracks(
+  tracks: TrackSet,
+  study: Study,
+  context: FitContext = {},
+): Promise<FitResult> {
   const progress = context.onProgress ?? (() => undefined);
   const steps = 4;
 
@@ -56,7 +62,7 @@ export async function fitTracks(tracks: TrackSet, study: Study, context: FitCont
   const visited = describeVisited(usable);
 
   progress(1, steps, 'estimating');
-  const plan = planEstimation(usable, study, order, survey, visited);
+  const plan = planEstimation(usable, study, order, survey.relaxationTime, visited);
   const estimate = chooseEstimator(study.estimator)(usable, plan);
 
   progress(2, steps, 'resampling');
@@ -98,7 +104,9 @@ export async function fitTracks(tracks: TrackSet, study: Study, context: FitCont
       confidence: study.confidence,
       multiplier,
       simultaneous,
-      replicates: replicates.map((row) => Array.from(row, (value) => Number(value.toPrecision(REPLICATE_DIGITS)))),
+      replicates: replicates.map((row) =>
+        Array.from(row, (value) => Number(value.toPrecision(REPLICATE_DIGITS))),
+      ),
     },
     visited,
     trackSample: sampleTracks(usable),
@@ -108,50 +116,14 @@ export async function fitTracks(tracks: TrackSet, study: Study, context: FitCont
   };
 }
 
-/** Resolves shapes, forms and blocks of a study over the tracks it is for. */
-export function planEstimation(
-  tracks: TrackSet,
-  study: Study,
-  order: 'first' | 'second',
-  survey: Pick<Survey, 'relaxationTime'>,
-  visited: FitDocument['visited'],
-): EstimationPlan {
-  const shapeContext = {
-    low: visited.low,
-    high: visited.high,
-    periods: tracks.periods,
-    positions: countPositions(tracks),
-  };
-  const planField = (shape: string, option: string, form: FieldPlan['form']): FieldPlan => ({
-    basis: resolveBasis(parseShape(shape, option), shapeContext, option),
-    form,
-  });
-  const second = order === 'second';
-  const noiseOption = second ? '--noise' : '--diffusion';
-  const noise = planField(second ? study.noise : study.diffusion, noiseOption, study.noiseForm);
-  if (!noise.basis) {
-    throw new UsageError(`${noiseOption} zero leaves nothing to fit the scatter with; use constant or spline`, {
-      option: noiseOption,
-    });
-  }
-  return {
-    order,
-    force: planField(second ? study.force : study.drift, second ? '--force' : '--drift', 'vector'),
-    friction: planField(second ? study.friction : 'zero', '--friction', study.frictionForm),
-    noise,
-    localizationError:
-      study.localizationError === 'auto'
-        ? null
-        : new Array<number>(tracks.dimensions).fill(study.localizationError),
-    exposure: study.exposure,
-    blocks: partitionBlocks(tracks, survey.relaxationTime ?? tracks.samplingInterval),
-  };
-}
-
 function intervalOfError(
   axis: Estimate['localizationError'][number],
   multiplier: number,
 ): { value: number; low: number; high: number } {
   const { value, standardError } = axis;
-  return { value, low: Math.max(0, value - multiplier * standardError), high: value + multiplier * standardError };
+  return {
+    value,
+    low: Math.max(0, value - multiplier * standardError),
+    high: value + multiplier * standardError,
+  };
 }

@@ -38,7 +38,8 @@ function trackBlocks(tracks: TrackSet, most: number): Blocks {
   const ofPosition = new Int32Array(countPositions(tracks));
   for (const track of order) {
     let block = 0;
-    for (let candidate = 1; candidate < count; candidate++) if (filled[candidate] < filled[block]) block = candidate;
+    for (let candidate = 1; candidate < count; candidate++)
+      if (filled[candidate] < filled[block]) block = candidate;
     filled[block] += trackOffsets[track + 1] - trackOffsets[track];
     ofPosition.fill(block, trackOffsets[track], trackOffsets[track + 1]);
   }

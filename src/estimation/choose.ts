@@ -13,10 +13,13 @@ const ESTIMATORS: Readonly<Record<string, Estimator>> = { differences: estimateD
  */
 export function chooseEstimator(name: string): Estimator {
   if (!Object.hasOwn(ESTIMATORS, name)) {
-    throw new UsageError(`--estimator "${name}" is not available; use ${Object.keys(ESTIMATORS).join(' or ')}`, {
-      option: '--estimator',
-      value: name,
-    });
+    throw new UsageError(
+      `--estimator "${name}" is not available; use ${Object.keys(ESTIMATORS).join(' or ')}`,
+      {
+        option: '--estimator',
+        value: name,
+      },
+    );
   }
   return ESTIMATORS[name];
 }

@@ -41,6 +41,8 @@ export interface MomentSolution {
   readonly smoothingFactor: { readonly values: Float64Array; readonly columns: number } | null;
   /** Inverse of the penalised system, shape (p, p): moves the parameters by inverse · Aᵀ W · (change of moments). */
   readonly inverse: Float64Array;
+  /** Moves the parameters by bread · (change of the moment vector), shape (p, p). */
+  readonly bread: Float64Array;
   /** Chosen strengths, relative to the information, one per group. */
   readonly strengths: readonly number[];
   /** Trace of the smoother: how many parameters' worth of freedom the fit used. */
@@ -57,19 +59,28 @@ const RIDGE = 1e-10; // relative; keeps directions nobody visited from making th
  * Solves penalised moment conditions, choosing the strengths by block cross-validation.
  *
  * @param groups  penalties; without any, the plain solution
+ * @param known  strengths to use as they are, one per group; without them they are chosen from the data
  * @throws NumericalError  where the moments hold no information at all
  *
  * Cost  O(folds · strengths · groups · p³).
  */
-export function solvePenalizedMoments(moments: MomentBlocks, groups: readonly PenaltyGroup[]): MomentSolution {
+export function solvePenalizedMoments(
+  moments: MomentBlocks,
+  groups: readonly PenaltyGroup[],
+  known?: readonly number[],
+): MomentSolution {
   const p = moments.size;
   const whiten = whiteningOf(moments);
-  const folds = foldMoments(moments, whiten, groups.length > 0 ? Math.min(FOLDS, moments.matrices.length) : 1);
+  const folds = foldMoments(
+    moments,
+    whiten,
+    groups.length > 0 && !known ? Math.min(FOLDS, moments.matrices.length) : 1,
+  );
   const information = crossProduct(folds.totalMatrix);
   const groupScales = groups.map((group) => informationScale(information, group));
   const ridge = RIDGE * Math.max(trace(information) / p, Number.MIN_VALUE);
 
-  const strengths = groups.map(() => 1e-2);
+  const strengths = known ? [...known] : groups.map(() => 1e-2);
   if (folds.parts.length > 1) {
     const judge = crossValidation(folds, groups, groupScales, ridge);
     for (let sweep = 0; sweep < (groups.length > 1 ? 2 : 1); sweep++) {
@@ -103,8 +114,18 @@ export function solvePenalizedMoments(moments: MomentBlocks, groups: readonly Pe
   return {
     parameters,
     influences,
-    smoothingFactor: smoothingFactorOf(groups, strengths, groupScales, inverse, information, smoother, influences, p),
+    smoothingFactor: smoothingFactorOf(
+      groups,
+      strengths,
+      groupScales,
+      inverse,
+      information,
+      smoother,
+      influences,
+      p,
+    ),
     inverse: Float64Array.from(inverse.to1DArray()),
+    bread: Float64Array.from(solveUpperRight(bread, whiten).to1DArray()),
     strengths: [...strengths],
     effectiveParameters: trace(smoother),
     conditioning: pivotRatio(factor),
@@ -189,7 +210,8 @@ function penaltyMatrix(
       for (let i = 0; i < k; i++) {
         for (let j = 0; j < k; j++) {
           const value = group.roughness[i * k + j];
-          if (value !== 0) penalty.set(offset + i, offset + j, penalty.get(offset + i, offset + j) + weight * value);
+          if (value !== 0)
+            penalty.set(offset + i, offset + j, penalty.get(offset + i, offset + j) + weight * value);
         }
       }
     }
@@ -206,7 +228,12 @@ function informationScale(information: Matrix, group: PenaltyGroup): number {
   return sum / (group.offsets.length * group.functionCount);
 }
 
-function blockInfluences(moments: MomentBlocks, whiten: Matrix, bread: Matrix, parameters: Float64Array): Float64Array {
+function blockInfluences(
+  moments: MomentBlocks,
+  whiten: Matrix,
+  bread: Matrix,
+  parameters: Float64Array,
+): Float64Array {
   const p = moments.size;
   const blocks = moments.matrices.length;
   const residuals = Matrix.zeros(p, blocks);
@@ -278,7 +305,9 @@ function smoothingFactorOf(
 }
 
 function symmetricEigen(flat: Float64Array, k: number): { values: number[]; vectors: Matrix } {
-  const decomposition = new EigenvalueDecomposition(Matrix.from1DArray(k, k, flat), { assumeSymmetric: true });
+  const decomposition = new EigenvalueDecomposition(Matrix.from1DArray(k, k, flat), {
+    assumeSymmetric: true,
+  });
   return { values: decomposition.realEigenvalues, vectors: decomposition.eigenvectorMatrix };
 }
 
@@ -305,6 +334,20 @@ function solveLower(lower: Matrix, right: Matrix): Matrix {
     }
     const pivot = lower.get(i, i);
     for (let c = 0; c < columns; c++) out.set(i, c, out.get(i, c) / pivot);
+  }
+  return out;
+}
+
+/** Solves X L = R for lower-triangular L, so that X acts on moments that are not yet whitened. */
+function solveUpperRight(right: Matrix, lower: Matrix): Matrix {
+  const out = right.clone();
+  for (let j = lower.columns - 1; j >= 0; j--) {
+    const pivot = lower.get(j, j);
+    for (let i = 0; i < out.rows; i++) {
+      let value = out.get(i, j);
+      for (let l = j + 1; l < lower.rows; l++) value -= out.get(i, l) * lower.get(l, j);
+      out.set(i, j, value / pivot);
+    }
   }
   return out;
 }

@@ -8,7 +8,9 @@ import type { CoefficientField, Model } from './CoefficientField.js';
 
 /** The model's fields in the order of the vector. */
 export function modelFields(model: Model): readonly CoefficientField[] {
-  return model.order === 'second' ? [model.force, model.friction, model.noise] : [model.drift, model.diffusion];
+  return model.order === 'second'
+    ? [model.force, model.friction, model.noise]
+    : [model.drift, model.diffusion];
 }
 
 /** All coefficients, flattened. */

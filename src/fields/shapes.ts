@@ -107,9 +107,12 @@ export function resolveBasis(shape: Shape, context: ShapeContext, option: string
     }
     case 'waves':
       if (periods.every((period) => period === 0)) {
-        throw new UsageError(`${option} asks for waves, which need a periodic axis; give --period or use spline`, {
-          option,
-        });
+        throw new UsageError(
+          `${option} asks for waves, which need a periodic axis; give --period or use spline`,
+          {
+            option,
+          },
+        );
       }
       return { kind: 'waves', waves: shape.waves, periods: [...periods] };
   }

@@ -41,3 +41,10 @@ export function findRuns(tracks: TrackSet, tolerance = INTERVAL_TOLERANCE): Runs
   }
   return { starts: Int32Array.from(starts), ends: Int32Array.from(ends), tracks: Int32Array.from(owners) };
 }
+
+/** Rows of the longest run. */
+export function longestRun(runs: Runs): number {
+  let longest = 0;
+  for (let run = 0; run < runs.starts.length; run++) longest = Math.max(longest, runs.ends[run] - runs.starts[run]);
+  return longest;
+}

@@ -21,7 +21,8 @@ export interface ColumnPlan {
 /** Names and scales of a model's columns, in the order they are printed. */
 export function planColumns(model: Model): ColumnPlan[] {
   const axes = COORDINATE_NAMES.slice(0, model.dimensions);
-  const vector = (name: string): ColumnPlan[] => axes.map((axis) => ({ name: `${name}_${axis}`, scale: 'linear' }));
+  const vector = (name: string): ColumnPlan[] =>
+    axes.map((axis) => ({ name: `${name}_${axis}`, scale: 'linear' }));
   const matrix = (field: CoefficientField, symmetric: boolean): ColumnPlan[] => {
     const scale: ColumnScale = field.link === 'log' ? 'logarithmic' : 'linear';
     return entriesOf(field.form, model.dimensions, symmetric).map(([i, j]) => ({
@@ -85,6 +86,10 @@ export function evaluateColumns(model: Model, places: Float64Array): Float64Arra
 }
 
 /** Evaluates every column for another coefficient vector of the same model. */
-export function evaluateReplicate(model: Model, parameters: ArrayLike<number>, places: Float64Array): Float64Array[] {
+export function evaluateReplicate(
+  model: Model,
+  parameters: ArrayLike<number>,
+  places: Float64Array,
+): Float64Array[] {
   return evaluateColumns(withParameters(model, Float64Array.from(parameters)), places);
 }

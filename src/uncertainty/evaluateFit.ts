@@ -34,7 +34,9 @@ export function evaluateFit(
   const columns = measureSpread(fit.model, replicates, places).map(({ name, scale, values, deviations }) => {
     const shifted = (widths: number) =>
       values.map((value, place) =>
-        scale === 'logarithmic' ? value * Math.exp(widths * deviations[place]) : value + widths * deviations[place],
+        scale === 'logarithmic'
+          ? value * Math.exp(widths * deviations[place])
+          : value + widths * deviations[place],
       );
     const band = simultaneous[name] ?? multiplier;
     return {

@@ -10,7 +10,11 @@ const POSITIVE = /^(friction|noise|diffusion)_(xx|yy|zz)$/;
  *
  * @param centres  shape (m, d): the visited places at which `spreads` were measured
  */
-export function warnOfSigns(spreads: readonly ColumnSpread[], centres: Float64Array, coordinates: readonly string[]): Warning[] {
+export function warnOfSigns(
+  spreads: readonly ColumnSpread[],
+  centres: Float64Array,
+  coordinates: readonly string[],
+): Warning[] {
   const d = coordinates.length;
   return spreads.flatMap(({ name, values }) => {
     if (!POSITIVE.test(name)) return [];
@@ -22,7 +26,9 @@ export function warnOfSigns(spreads: readonly ColumnSpread[], centres: Float64Ar
       if (values[place] <= values[worst]) worst = place;
     }
     if (bad === 0) return [];
-    const where = coordinates.map((axis, i) => `${axis} = ${centres[worst * d + i].toPrecision(3)}`).join(', ');
+    const where = coordinates
+      .map((axis, i) => `${axis} = ${centres[worst * d + i].toPrecision(3)}`)
+      .join(', ');
     return [
       {
         code: 'not-positive',

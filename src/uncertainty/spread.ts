@@ -47,7 +47,9 @@ export function measureSpread(
           const noiseChange = columns[noise][place] / estimate[noise][place];
           return noiseChange - columns[friction][place] / estimate[friction][place];
         }
-        return scale === 'logarithmic' ? Math.log(columns[column][place] / value) : columns[column][place] - value;
+        return scale === 'logarithmic'
+          ? Math.log(columns[column][place] / value)
+          : columns[column][place] - value;
       }),
     );
     const deviations = values.map((_, place) => {

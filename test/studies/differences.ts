@@ -5,8 +5,8 @@
 
 import { studySchema, type StudyInput } from '../../src/documents/Study.js';
 import { estimateDifferences } from '../../src/estimation/differences/estimateDifferences.js';
-import { planEstimation } from '../../src/fit.js';
-import { frictionNoiseBound } from '../../src/momenta/precisionBound.js';
+import { planEstimation } from '../../src/estimation/planEstimation.js';
+import { frictionPrecisionBound } from '../../src/momenta/precisionBound.js';
 import { describeVisited } from '../../src/tracks/visitedRegion.js';
 import type { TrackSet } from '../../src/tracks/TrackSet.js';
 import { drawReplicates } from '../../src/uncertainty/bootstrap.js';
@@ -20,7 +20,7 @@ const CONSTANT: StudyInput = { friction: 'constant', noise: 'constant', diffusio
 
 function estimate(tracks: TrackSet, input: StudyInput, order: 'first' | 'second') {
   const study = studySchema.parse(input);
-  const plan = planEstimation(tracks, study, order, { relaxationTime: null }, describeVisited(tracks));
+  const plan = planEstimation(tracks, study, order, null, describeVisited(tracks));
   return { estimate: estimateDifferences(tracks, plan), plan };
 }
 
@@ -49,7 +49,7 @@ function secondOrderTable(title: string, stiffnessOf: (friction: number) => numb
         noises.push(model.noise.coefficients[0][0] / (2 * x) - 1);
         errors.push(localizationError[0].value);
       }
-      const bound = frictionNoiseBound({
+      const bound = frictionPrecisionBound({
         frictionTimesInterval: x,
         errorOverDisplacement: ratio,
         positions: TRACKS * FRAMES,
@@ -69,7 +69,17 @@ function secondOrderTable(title: string, stiffnessOf: (friction: number) => numb
   }
   printTable(
     `${title}; ${TRACKS} tracks × ${FRAMES} frames, ${seeds} seeds`,
-    ['Γ·Δ', 's/(v·Δ)', 'friction bias', 'scatter', '÷ bound', 'noise bias', 'scatter', '÷ bound', 's recovered'],
+    [
+      'Γ·Δ',
+      's/(v·Δ)',
+      'friction bias',
+      'scatter',
+      '÷ bound',
+      'noise bias',
+      'scatter',
+      '÷ bound',
+      's recovered',
+    ],
     rows,
   );
 }
@@ -88,7 +98,11 @@ function firstOrderTable(): void {
           localizationError: Math.sqrt(ratio),
           seed,
         });
-        const { model } = estimate(tracks, { ...CONSTANT, drift: relaxation > 0 ? 'linear' : 'constant' }, 'first').estimate;
+        const { model } = estimate(
+          tracks,
+          { ...CONSTANT, drift: relaxation > 0 ? 'linear' : 'constant' },
+          'first',
+        ).estimate;
         if (model.order !== 'first') throw new Error('wrong order');
         diffusions.push(model.diffusion.coefficients[0][0] / 0.5 - 1);
       }
@@ -111,10 +125,26 @@ function coverageTable(): void {
   const studies = Math.max(200, seeds);
   const rows: string[][] = [];
   const cases: [string, 'first' | 'second', (seed: number) => TrackSet][] = [
-    ['second order, Γ·Δ 0.2, s/(v·Δ) 0.1', 'second', (seed) => simulateSecondOrder({ tracks: 40, frames: 500, friction: 0.2, localizationError: 0.1, seed })],
-    ['second order, Γ·Δ 0.1, s/(v·Δ) 0.3', 'second', (seed) => simulateSecondOrder({ tracks: 40, frames: 500, friction: 0.1, localizationError: 0.3, seed })],
-    ['second order, 5 long tracks', 'second', (seed) => simulateSecondOrder({ tracks: 5, frames: 4000, friction: 0.2, localizationError: 0.1, seed })],
-    ['first order, s²/(2DΔ) 0.25', 'first', (seed) => simulateFirstOrder({ tracks: 40, frames: 500, diffusion: 0.5, localizationError: 0.5, seed })],
+    [
+      'second order, Γ·Δ 0.2, s/(v·Δ) 0.1',
+      'second',
+      (seed) => simulateSecondOrder({ tracks: 40, frames: 500, friction: 0.2, localizationError: 0.1, seed }),
+    ],
+    [
+      'second order, Γ·Δ 0.1, s/(v·Δ) 0.3',
+      'second',
+      (seed) => simulateSecondOrder({ tracks: 40, frames: 500, friction: 0.1, localizationError: 0.3, seed }),
+    ],
+    [
+      'second order, 5 long tracks',
+      'second',
+      (seed) => simulateSecondOrder({ tracks: 5, frames: 4000, friction: 0.2, localizationError: 0.1, seed }),
+    ],
+    [
+      'first order, s²/(2DΔ) 0.25',
+      'first',
+      (seed) => simulateFirstOrder({ tracks: 40, frames: 500, diffusion: 0.5, localizationError: 0.5, seed }),
+    ],
   ];
   for (const [title, order, simulate] of cases) {
     const covered = new Map<string, number>();
@@ -123,10 +153,25 @@ function coverageTable(): void {
       const replicates = drawReplicates(fitted.estimate, 200, seed);
       const multiplier = pointwiseMultiplier(0.95, fitted.plan.blocks.count, 200);
       const friction = title.includes('0.1,') ? 0.1 : 0.2;
-      const truth: Record<string, number> = { force_x: 0, friction_xx: friction, noise_xx: 2 * friction, temperature_xx: 1, drift_x: 0, diffusion_xx: 0.5 };
-      for (const { name, scale, values, deviations } of measureSpread(fitted.estimate.model, replicates, Float64Array.of(0))) {
-        const distance = scale === 'logarithmic' ? Math.log(values[0] / truth[name]) : values[0] - truth[name];
-        covered.set(name, (covered.get(name) ?? 0) + (Math.abs(distance) <= multiplier * deviations[0] ? 1 : 0));
+      const truth: Record<string, number> = {
+        force_x: 0,
+        friction_xx: friction,
+        noise_xx: 2 * friction,
+        temperature_xx: 1,
+        drift_x: 0,
+        diffusion_xx: 0.5,
+      };
+      for (const { name, scale, values, deviations } of measureSpread(
+        fitted.estimate.model,
+        replicates,
+        Float64Array.of(0),
+      )) {
+        const distance =
+          scale === 'logarithmic' ? Math.log(values[0] / truth[name]) : values[0] - truth[name];
+        covered.set(
+          name,
+          (covered.get(name) ?? 0) + (Math.abs(distance) <= multiplier * deviations[0] ? 1 : 0),
+        );
       }
     }
     rows.push([title, [...covered].map(([name, hits]) => `${name} ${percent(hits / studies)}`).join(', ')]);
@@ -135,6 +180,7 @@ function coverageTable(): void {
 }
 
 if (only === '' || only === 'free') secondOrderTable('Second order, free', () => 0, 'constant');
-if (only === '' || only === 'trapped') secondOrderTable('Second order, trapped (k = (0.3/Δ)²)', () => 0.09, 'linear');
+if (only === '' || only === 'trapped')
+  secondOrderTable('Second order, trapped (k = (0.3/Δ)²)', () => 0.09, 'linear');
 if (only === '' || only === 'first') firstOrderTable();
 if (only === '' || only === 'coverage') coverageTable();

@@ -1,6 +1,10 @@
 /** Plain text tables for studies, in a form that can be pasted into the docs. */
 
-export function printTable(title: string, header: readonly string[], rows: readonly (readonly (string | number)[])[]): void {
+export function printTable(
+  title: string,
+  header: readonly string[],
+  rows: readonly (readonly (string | number)[])[],
+): void {
   console.log(`\n${title}\n`);
   console.log(`| ${header.join(' | ')} |`);
   console.log(`| ${header.map(() => '---').join(' | ')} |`);

@@ -45,9 +45,7 @@ export function correctSecondOrderInto(
   const half = friction.map((value) => (value * dt) / 2);
   limitNorm(half, d);
   const diagonal = isDiagonal(half, d);
-  const turned = diagonal
-    ? half.map((value) => Math.atanh(value))
-    : Float64Array.from(artanhMatrix(half, d));
+  const turned = diagonal ? half.map((value) => Math.atanh(value)) : Float64Array.from(artanhMatrix(half, d));
   const gain = diagonal ? diagonalGain(half, turned, d) : matrixGain(half, turned, d);
   for (let axis = 0; axis < d; axis++) {
     const own = axis * d + axis;
@@ -129,7 +127,8 @@ function limitNorm(half: Float64Array, d: number): void {
 }
 
 function isDiagonal(matrix: Float64Array, d: number): boolean {
-  for (let i = 0; i < d; i++) for (let j = 0; j < d; j++) if (i !== j && matrix[i * d + j] !== 0) return false;
+  for (let i = 0; i < d; i++)
+    for (let j = 0; j < d; j++) if (i !== j && matrix[i * d + j] !== 0) return false;
   return true;
 }
 

@@ -14,9 +14,16 @@ import { withParameters } from '../../fields/modelParameters.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { Estimate, EstimationPlan, FieldPlan } from '../Estimate.js';
 import { type MomentSolution, type PenaltyGroup, solvePenalizedMoments } from '../penalizedMoments.js';
-import { collectDiffusionMoments, collectDriftMoments, driftBasis } from './firstOrder.js';
+import {
+  collectDiffusionMoments,
+  collectDriftMoments,
+  type DiffusionMoments,
+  driftBasis,
+} from './firstOrder.js';
 import { createIntervalCorrection } from './intervalCorrection.js';
-import { collectForceFrictionMoments, collectNoiseMoments, layOutSecondOrder, type NoiseMoments } from './secondOrder.js';
+import { layOutSecondOrder } from './forceFriction.js';
+import { collectNoiseMoments, type NoiseMoments } from './residuals.js';
+import { solveForceFriction } from './solveForceFriction.js';
 
 /**
  * Estimates the model by differences.
@@ -31,54 +38,90 @@ export function estimateDifferences(tracks: TrackSet, plan: EstimationPlan): Est
   const noiseBasis = createBasis(plan.noise.basis, dimensions);
   const second = plan.order === 'second';
 
-  // first regression: force and friction, or drift
   const layout = layOutSecondOrder(plan, dimensions);
   const drift = driftBasis(plan, dimensions);
-  const motionSize = second ? layout.size : dimensions * (drift?.functionCount ?? 0);
   const groups: PenaltyGroup[] = [];
   if (layout.force) pushGroup(groups, layout.force, 0, dimensions);
-  if (second && layout.friction) pushGroup(groups, layout.friction, layout.frictionOffset, layout.frictionComponents);
-  let motion: MomentSolution | null = null;
-  if (motionSize > 0) {
-    const moments =
-      second || !drift
-        ? collectForceFrictionMoments(tracks, plan, layout)
-        : collectDriftMoments(tracks, plan, drift);
-    motion = solvePenalizedMoments(moments, groups);
+  if (second && layout.friction)
+    pushGroup(groups, layout.friction, layout.frictionOffset, layout.frictionComponents);
+
+  let motion: MotionPart = NO_MOTION;
+  let moments: NoiseMoments;
+  let localization: ErrorVariance;
+  const warnings: Warning[] = [];
+  if (second) {
+    if (layout.size > 0) {
+      const solved = solveForceFriction(tracks, plan, layout, groups);
+      motion = { ...solved.regression, influences: solved.influences };
+      localization = { variance: solved.errorVariance, influences: solved.errorInfluences };
+      if (!solved.converged) warnings.push(UNCONVERGED);
+    } else {
+      const variance = Float64Array.from(
+        plan.localizationError ?? new Float64Array(dimensions),
+        (s) => s * s,
+      );
+      localization = { variance, influences: new Float64Array(plan.blocks.count * dimensions) };
+    }
+    moments = collectNoiseMoments(tracks, plan, layout, noiseBasis, motion.parameters);
+  } else {
+    if (drift) motion = solvePenalizedMoments(collectDriftMoments(tracks, plan, drift), groups);
+    const diffusion = collectDiffusionMoments(tracks, plan, drift, noiseBasis, motion.parameters);
+    localization = firstOrderError(diffusion, plan, dimensions);
+    moments = diffusion;
   }
-  const motionParameters = motion?.parameters ?? new Float64Array(0);
-
-  // second regression: noise or diffusion
-  const noiseMoments = second
-    ? collectNoiseMoments(tracks, plan, layout, noiseBasis, motionParameters)
-    : collectDiffusionMoments(tracks, plan, drift, noiseBasis, motionParameters);
   const noiseGroups: PenaltyGroup[] = [];
-  pushGroup(noiseGroups, noiseBasis, 0, noiseMoments.size / noiseBasis.functionCount);
-  const noise = solvePenalizedMoments(noiseMoments, noiseGroups);
+  pushGroup(noiseGroups, noiseBasis, 0, moments.size / noiseBasis.functionCount);
+  const noise = solvePenalizedMoments(moments, noiseGroups);
 
-  const parameters = joined(motionParameters, noise.parameters);
-  const influences = joinInfluences(motion, noise, noiseMoments, plan.blocks.count);
-  const localizationError = errorOf(noiseMoments, plan, dimensions);
+  const parameters = joined(motion.parameters, noise.parameters);
   const model = templateModel(tracks, plan);
-  const correction = createIntervalCorrection(tracks, plan, model, localizationError.map((axis) => axis.value ** 2));
-  const corrected = correction.correct(parameters);
+  const correction = createIntervalCorrection(tracks, plan, model, Array.from(localization.variance));
+  const conditioning = Math.max(motion.conditioning, noise.conditioning);
   return {
-    model: withParameters(model, corrected),
+    model: withParameters(model, correction.correct(parameters)),
     parameters,
-    influences,
-    smoothingFactor: joinFactors(motion, noise, motionParameters.length),
+    influences: joinInfluences(motion, noise, moments, plan.blocks.count),
+    smoothingFactor: joinFactors(motion, noise),
     toModelParameters: (raw) => correction.correct(raw),
-    localizationError,
+    localizationError: describeError(localization, plan, dimensions),
     diagnostics: {
       estimator: 'differences',
-      effectiveParameters: (motion?.effectiveParameters ?? 0) + noise.effectiveParameters,
+      converged: warnings.length === 0,
       parameters: parameters.length,
-      roughnessStrengths: [...(motion?.strengths ?? []), ...noise.strengths],
-      conditioning: Math.max(motion?.conditioning ?? 1, noise.conditioning),
+      effectiveParameters: motion.effectiveParameters + noise.effectiveParameters,
+      roughnessStrengths: [...motion.strengths, ...noise.strengths],
+      conditioning,
     },
-    warnings: conditioningWarnings(motion, noise),
+    warnings: [...warnings, ...conditioningWarnings(conditioning)],
   };
 }
+
+/** What later steps need of the force–friction or drift regression. */
+type MotionPart = Pick<
+  MomentSolution,
+  'parameters' | 'influences' | 'smoothingFactor' | 'strengths' | 'effectiveParameters' | 'conditioning'
+>;
+
+const NO_MOTION: MotionPart = {
+  parameters: new Float64Array(0),
+  influences: new Float64Array(0),
+  smoothingFactor: null,
+  strengths: [],
+  effectiveParameters: 0,
+  conditioning: 1,
+};
+
+/** Localization variance per axis with the effect of each block on it, shape (B, d). */
+interface ErrorVariance {
+  readonly variance: Float64Array;
+  readonly influences: Float64Array;
+}
+
+const UNCONVERGED: Warning = {
+  code: 'not-converged',
+  message:
+    'localization error and friction did not settle on each other; give the localization error with --localization-error, or record more positions',
+};
 
 function pushGroup(groups: PenaltyGroup[], basis: Basis, offset: number, copies: number): void {
   const roughness = basis.roughness();
@@ -102,19 +145,17 @@ function joined(first: Float64Array, second: Float64Array): Float64Array {
  * noise is read from.
  */
 function joinInfluences(
-  motion: MomentSolution | null,
+  motion: MotionPart,
   noise: MomentSolution,
   moments: NoiseMoments,
   blocks: number,
 ): Float64Array {
-  const p1 = motion?.parameters.length ?? 0;
+  const p1 = motion.parameters.length;
   const p2 = noise.parameters.length;
   const out = new Float64Array(blocks * (p1 + p2));
   const shift = new Float64Array(p2);
   for (let block = 0; block < blocks; block++) {
     const base = block * (p1 + p2);
-    for (let i = 0; i < p2; i++) out[base + p1 + i] = noise.influences[block * p2 + i];
-    if (!motion) continue;
     for (let i = 0; i < p1; i++) out[base + i] = motion.influences[block * p1 + i];
     for (let i = 0; i < p2; i++) {
       let sum = 0;
@@ -122,17 +163,18 @@ function joinInfluences(
       shift[i] = sum;
     }
     for (let i = 0; i < p2; i++) {
-      let sum = 0;
+      let sum = noise.influences[block * p2 + i];
       for (let j = 0; j < p2; j++) sum += noise.inverse[i * p2 + j] * shift[j];
-      out[base + p1 + i] += sum;
+      out[base + p1 + i] = sum;
     }
   }
   return out;
 }
 
-function joinFactors(motion: MomentSolution | null, noise: MomentSolution, p1: number): Estimate['smoothingFactor'] {
+function joinFactors(motion: MotionPart, noise: MomentSolution): Estimate['smoothingFactor'] {
+  const p1 = motion.parameters.length;
   const parts = [
-    { factor: motion?.smoothingFactor ?? null, offset: 0, size: p1 },
+    { factor: motion.smoothingFactor, offset: 0, size: p1 },
     { factor: noise.smoothingFactor, offset: p1, size: noise.parameters.length },
   ];
   const columns = parts.reduce((sum, part) => sum + (part.factor?.columns ?? 0), 0);
@@ -151,40 +193,64 @@ function joinFactors(motion: MomentSolution | null, noise: MomentSolution, p1: n
   return { values, columns };
 }
 
-/** Localization error per axis from the lag that only it reaches, with a standard error from the blocks. */
-function errorOf(moments: NoiseMoments, plan: EstimationPlan, dimensions: number): Estimate['localizationError'] {
-  const { sums, counts } = moments.errorVariance;
-  return Array.from({ length: dimensions }, (_, axis) => {
-    if (plan.localizationError) return { value: plan.localizationError[axis], standardError: 0 };
-    let total = 0;
-    let rows = 0;
-    for (let block = 0; block < counts.length; block++) {
-      total += sums[block * dimensions + axis];
-      rows += counts[block];
+/** First order: the localization variance is minus the covariance of neighbouring residuals. */
+function firstOrderError(moments: DiffusionMoments, plan: EstimationPlan, d: number): ErrorVariance {
+  const blocks = plan.blocks.count;
+  const influences = new Float64Array(blocks * d);
+  if (plan.localizationError)
+    return { variance: Float64Array.from(plan.localizationError, (s) => s * s), influences };
+  const { errorSums, errorWeights } = moments;
+  const variance = new Float64Array(d);
+  for (let axis = 0; axis < d; axis++) {
+    let weight = 0;
+    for (let slot = axis; slot < errorSums.length; slot += d) {
+      variance[axis] += errorSums[slot];
+      weight += errorWeights[slot];
     }
-    const variance = total / rows;
+    variance[axis] /= weight;
+    for (let slot = axis; slot < errorSums.length; slot += d) {
+      influences[slot] = (errorSums[slot] - variance[axis] * errorWeights[slot]) / weight;
+    }
+  }
+  return { variance, influences };
+}
+
+/** Standard deviation of the localization error per axis, with its standard error over the blocks. */
+function describeError(error: ErrorVariance, plan: EstimationPlan, d: number): Estimate['localizationError'] {
+  return Array.from({ length: d }, (_, axis) => {
     let spread = 0;
-    for (let block = 0; block < counts.length; block++) {
-      spread += (sums[block * dimensions + axis] - variance * counts[block]) ** 2;
-    }
-    const varianceError = Math.sqrt(spread) / rows;
-    const value = Math.sqrt(Math.max(0, variance));
+    for (let block = 0; block < plan.blocks.count; block++) spread += error.influences[block * d + axis] ** 2;
+    const varianceError = Math.sqrt(spread);
+    const value = Math.sqrt(Math.max(0, error.variance[axis]));
     // Near zero the square root flattens: the error of s is then what makes s² one standard error.
-    return { value, standardError: varianceError / (value + Math.sqrt(value * value + varianceError)) };
+    const standardError =
+      spread === 0 ? 0 : varianceError / (value + Math.sqrt(value * value + varianceError));
+    return { value, standardError };
   });
 }
 
 /** The model with its bases and zero coefficients. */
 export function templateModel(tracks: TrackSet, plan: EstimationPlan): Model {
   const { dimensions, periods } = tracks;
-  const field = (name: FieldName, fieldPlan: FieldPlan, form: FieldForm, components: number): CoefficientField => {
+  const field = (
+    name: FieldName,
+    fieldPlan: FieldPlan,
+    form: FieldForm,
+    components: number,
+  ): CoefficientField => {
     const basis = fieldPlan.basis ?? { kind: 'constant' as const };
     const k = createBasis(basis, dimensions).functionCount;
     const coefficients = Array.from({ length: components }, () => new Array<number>(k).fill(0));
     return { name, form, link: 'identity', basis, coefficients };
   };
-  const noiseComponents = { scalar: 1, axes: dimensions, matrix: (dimensions * (dimensions + 1)) / 2, vector: 0 };
-  const noise = (name: FieldName) => field(name, plan.noise, plan.noise.form, noiseComponents[plan.noise.form]);
+  const noiseComponents = {
+    scalar: 1,
+    axes: dimensions,
+    matrix: (dimensions * (dimensions + 1)) / 2,
+    vector: 0,
+  };
+  const noise = (name: FieldName) =>
+    field(name, plan.noise, plan.noise.form, noiseComponents[plan.noise.form]);
   if (plan.order === 'first') {
     return {
       order: 'first',
@@ -209,13 +275,12 @@ export function templateModel(tracks: TrackSet, plan: EstimationPlan): Model {
 /** Beyond this the normal equations lose half of the digits of a double. */
 const POOR_CONDITIONING = 1e12;
 
-function conditioningWarnings(motion: MomentSolution | null, noise: MomentSolution): Warning[] {
-  const worst = Math.max(motion?.conditioning ?? 1, noise.conditioning);
-  if (worst < POOR_CONDITIONING) return [];
+function conditioningWarnings(conditioning: number): Warning[] {
+  if (conditioning < POOR_CONDITIONING) return [];
   return [
     {
       code: 'poorly-conditioned',
-      message: `the regression can hardly tell its functions apart (condition number above ${worst.toExponential(0)}); fewer functions per axis would be safer`,
+      message: `the regression can hardly tell its functions apart (condition number above ${conditioning.toExponential(0)}); fewer functions per axis would be safer`,
     },
   ];
 }

@@ -14,12 +14,19 @@
 import { DataError } from '../../errors.js';
 import type { Basis } from '../../fields/Basis.js';
 import { createBasis } from '../../fields/createBasis.js';
-import { findRuns } from '../../tracks/runs.js';
+import { findRuns, longestRun } from '../../tracks/runs.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { EstimationPlan } from '../Estimate.js';
 import type { MomentBlocks } from '../penalizedMoments.js';
-import { type NoiseMoments, noisePairs } from './secondOrder.js';
-import { addBasisRow, addOuterProducts, addSensitivity, RecentBasis, SparseRow } from './sparseRows.js';
+import { type NoiseMoments, noisePairs } from './residuals.js';
+import {
+  addBasisRow,
+  addOuterProducts,
+  addSensitivity,
+  createOwnSlopes,
+  RecentBasis,
+  SparseRow,
+} from './sparseRows.js';
 
 /** The drift basis, or null where the drift is taken as zero. */
 export function driftBasis(plan: EstimationPlan, dimensions: number): Basis | null {
@@ -59,13 +66,27 @@ export function collectDriftMoments(tracks: TrackSet, plan: EstimationPlan, basi
         instruments.append(axis * k, recent, row - 1, 1);
         const block = ofPosition[row];
         const velocity = (positions[at + dimensions] - positions[at]) / dt;
-        addOuterProducts(matrices[block], vectors[block], instrumentGram, p, instruments, regressors, velocity);
+        addOuterProducts(
+          matrices[block],
+          vectors[block],
+          instrumentGram,
+          p,
+          instruments,
+          regressors,
+          velocity,
+        );
       }
       rows++;
     }
   }
   if (rows === 0) throw tooShort();
   return { size: p, matrices, vectors, instrumentGram };
+}
+
+export interface DiffusionMoments extends NoiseMoments {
+  /** Shape (B, d): −Σ e_k e_{k+1} Δ² and Σ ρ_{k+1} with ρ = 1 + μ_e′Δ; their ratio is the localization variance. */
+  readonly errorSums: Float64Array;
+  readonly errorWeights: Float64Array;
 }
 
 /**
@@ -80,7 +101,7 @@ export function collectDiffusionMoments(
   drift: Basis | null,
   basis: Basis,
   parameters: Float64Array,
-): NoiseMoments {
+): DiffusionMoments {
   const { positions, dimensions, samplingInterval: dt } = tracks;
   const { count: blockCount, ofPosition } = plan.blocks;
   const k = basis.functionCount;
@@ -92,15 +113,14 @@ export function collectDiffusionMoments(
   const driftSize = drift?.functionCount ?? 0;
   const sensitivity = new Float64Array(p * parameters.length);
   const sums = new Float64Array(blockCount * dimensions);
-  const counts = new Float64Array(blockCount);
+  const weights = new Float64Array(blockCount * dimensions);
+  const slopeAt = createOwnSlopes(drift, parameters, positions, dimensions);
   const recent = new RecentBasis(drift);
   const driftRow = new SparseRow(drift?.support ?? 0);
   const indices = new Int32Array(basis.support);
   const values = new Float64Array(basis.support);
   const runs = findRuns(tracks);
-  let longest = 0;
-  for (let run = 0; run < runs.starts.length; run++) longest = Math.max(longest, runs.ends[run] - runs.starts[run]);
-  const residuals = new Float64Array(longest * dimensions);
+  const residuals = new Float64Array(longestRun(runs) * dimensions);
   const windows = new Float64Array(dimensions);
   let rows = 0;
   for (let run = 0; run < runs.starts.length; run++) {
@@ -114,8 +134,10 @@ export function collectDiffusionMoments(
         driftRow.clear();
         driftRow.append(axis * driftSize, recent, row, 1);
         let fitted = 0;
-        for (let i = 0; i < driftRow.length; i++) fitted += driftRow.values[i] * parameters[driftRow.indices[i]];
-        residuals[(row - start) * dimensions + axis] = (positions[at + dimensions] - positions[at]) / dt - fitted;
+        for (let i = 0; i < driftRow.length; i++)
+          fitted += driftRow.values[i] * parameters[driftRow.indices[i]];
+        residuals[(row - start) * dimensions + axis] =
+          (positions[at + dimensions] - positions[at]) / dt - fitted;
       }
     }
     for (let row = start + 1; row < end - 2; row++) {
@@ -127,22 +149,46 @@ export function collectDiffusionMoments(
         const at = local + axis;
         windows[axis] = residuals[at - dimensions] + residuals[at] + residuals[at + dimensions];
         sums[block * dimensions + axis] -= residuals[at] * residuals[at + dimensions] * dt * dt;
+        weights[block * dimensions + axis] += 1 + slopeAt(row + 1, axis) * dt;
       }
-      counts[block]++;
       for (let component = 0; component < pairs.length; component++) {
         let response = 0;
         for (const [a, b] of pairs[component]) {
           response += (residuals[local + a] * windows[b] + residuals[local + b] * windows[a]) / 2;
         }
         response *= dt / (2 * pairs[component].length);
-        addBasisRow(matrices[block], vectors[block], total, p, component * k, indices, values, found, response);
+        addBasisRow(
+          matrices[block],
+          vectors[block],
+          total,
+          p,
+          component * k,
+          indices,
+          values,
+          found,
+          response,
+        );
         if (!drift) continue;
         for (const [a, b] of pairs[component]) {
-          for (const [axis, other] of a === b ? [[a, b]] : [[a, b], [b, a]]) {
+          for (const [axis, other] of a === b
+            ? [[a, b]]
+            : [
+                [a, b],
+                [b, a],
+              ]) {
             driftRow.clear();
             driftRow.append(axis * driftSize, recent, row, 1);
             const weight = ((a === b ? -1 : -0.5) * windows[other] * dt) / pairs[component].length;
-            addSensitivity(sensitivity, parameters.length, component * k, indices, values, found, driftRow, weight);
+            addSensitivity(
+              sensitivity,
+              parameters.length,
+              component * k,
+              indices,
+              values,
+              found,
+              driftRow,
+              weight,
+            );
           }
         }
       }
@@ -150,7 +196,15 @@ export function collectDiffusionMoments(
     }
   }
   if (rows === 0) throw tooShort();
-  return { size: p, matrices, vectors, instrumentGram: total, sensitivity, errorVariance: { sums, counts } };
+  return {
+    size: p,
+    matrices,
+    vectors,
+    instrumentGram: total,
+    sensitivity,
+    errorSums: sums,
+    errorWeights: weights,
+  };
 }
 
 function tooShort(): DataError {

@@ -75,7 +75,9 @@ export function createIntervalCorrection(
       out.set(raw.subarray(field.rawOffset, field.rawOffset + size), field.modelOffset);
     }
     const forceValues = valuesAt(force, raw, force.design, nodeCount);
-    const slopeValues = Array.from({ length: d }, (_, axis) => componentAt(force, raw, slopesDesign[axis], nodeCount, axis));
+    const slopeValues = Array.from({ length: d }, (_, axis) =>
+      componentAt(force, raw, slopesDesign[axis], nodeCount, axis),
+    );
     const frictionValues = friction ? valuesAt(friction, raw, friction.design, nodeCount) : [];
     const noiseValues = valuesAt(noise, raw, noise.design, nodeCount);
     const local: LocalCoefficients = {
@@ -93,7 +95,8 @@ export function createIntervalCorrection(
       spread(local.noise, noiseValues, node, noiseForm, d, true);
       if (friction) correctSecondOrderInto(local, slopes, errorVariance, samplingInterval);
       else correctFirstOrderInto(local, slopes, errorVariance, samplingInterval);
-      for (let axis = 0; axis < d; axis++) forceValues[axis][node] = local.force[axis] - forceValues[axis][node];
+      for (let axis = 0; axis < d; axis++)
+        forceValues[axis][node] = local.force[axis] - forceValues[axis][node];
       gatherChange(frictionValues, local.friction, node, frictionForm, d, false);
       gatherChange(noiseValues, local.noise, node, noiseForm, d, true);
     }
@@ -187,7 +190,12 @@ function componentAt(
   return out;
 }
 
-function valuesAt(field: NodeField, raw: Float64Array, design: Float64Array, nodeCount: number): Float64Array[] {
+function valuesAt(
+  field: NodeField,
+  raw: Float64Array,
+  design: Float64Array,
+  nodeCount: number,
+): Float64Array[] {
   return Array.from({ length: field.components }, (_, component) =>
     componentAt(field, raw, design, nodeCount, component),
   );
@@ -256,7 +264,8 @@ function addProjected(
     for (let i = 0; i < k; i++) {
       let sum = 0;
       const row = i * nodeCount;
-      for (let node = 0; node < nodeCount; node++) sum += field.projection[row + node] * changes[component][node];
+      for (let node = 0; node < nodeCount; node++)
+        sum += field.projection[row + node] * changes[component][node];
       out[offset + i] += sum;
     }
   }

@@ -125,6 +125,31 @@ export function addSensitivity(
 ): void {
   for (let i = 0; i < count; i++) {
     const base = (offset + indices[i]) * columns;
-    for (let j = 0; j < row.length; j++) sensitivity[base + row.indices[j]] += weight * values[i] * row.values[j];
+    for (let j = 0; j < row.length; j++)
+      sensitivity[base + row.indices[j]] += weight * values[i] * row.values[j];
   }
+}
+
+/**
+ * Slope of each fitted vector component along its own axis, as a function of the row.
+ *
+ * @param parameters  coefficients of component a start at a · k
+ * @returns (row, axis) → slope, in the unit of the component per length; zero without a basis
+ */
+export function createOwnSlopes(
+  basis: Basis | null,
+  parameters: Float64Array,
+  positions: Float64Array,
+  dimensions: number,
+): (row: number, axis: number) => number {
+  if (!basis) return () => 0;
+  const k = basis.functionCount;
+  const indices = new Int32Array(basis.support);
+  const values = new Float64Array(basis.support);
+  return (row, axis) => {
+    const count = basis.differentiateInto(positions, row * dimensions, axis, indices, values);
+    let slope = 0;
+    for (let i = 0; i < count; i++) slope += parameters[axis * k + indices[i]] * values[i];
+    return slope;
+  };
 }

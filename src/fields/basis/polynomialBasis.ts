@@ -30,7 +30,8 @@ export function createPolynomialBasis(spec: PolynomialSpec, dimensions: number):
       fillPowers(places, offset);
       for (let i = 0; i < k; i++) {
         let product = 1;
-        for (let axis = 0; axis < dimensions; axis++) product *= powers[axis * (degree + 1) + exponents[i][axis]];
+        for (let axis = 0; axis < dimensions; axis++)
+          product *= powers[axis * (degree + 1) + exponents[i][axis]];
         indices[i] = i;
         values[i] = product;
       }

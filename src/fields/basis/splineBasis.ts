@@ -63,7 +63,8 @@ export function createSplineBasis(spec: SplineSpec, dimensions: number): Basis {
     functionCount,
     support,
     evaluateInto: (places, offset, indices, values) => combine(places, offset, -1, indices, values),
-    differentiateInto: (places, offset, axis, indices, values) => combine(places, offset, axis, indices, values),
+    differentiateInto: (places, offset, axis, indices, values) =>
+      combine(places, offset, axis, indices, values),
     roughness: () => tensorRoughness(axes),
   };
 }

@@ -42,7 +42,8 @@ export function createWavesBasis(spec: WavesSpec, dimensions: number): Basis {
     functionCount: k,
     support: k,
     evaluateInto: (places, offset, indices, values) => combine(places, offset, -1, indices, values),
-    differentiateInto: (places, offset, axis, indices, values) => combine(places, offset, axis, indices, values),
+    differentiateInto: (places, offset, axis, indices, values) =>
+      combine(places, offset, axis, indices, values),
     roughness: () => waveNumberPenalty(counts),
   };
 }

@@ -95,14 +95,21 @@ export function logarithmMatrix(matrix: ArrayLike<number>, d: number): Float64Ar
   let near: Float64Array = Float64Array.from(matrix);
   const one = identityMatrix(d);
   let roots = 0;
-  const distance = (): number => maximumNorm(near.map((value, i) => value - one[i]), d);
+  const distance = (): number =>
+    maximumNorm(
+      near.map((value, i) => value - one[i]),
+      d,
+    );
   while (distance() > 0.25 && roots < 60) {
     near = rootMatrix(near, d);
     roots++;
   }
   const ratio = multiplyMatrices(
     near.map((value, i) => value - one[i]),
-    invertMatrix(near.map((value, i) => value + one[i]), d),
+    invertMatrix(
+      near.map((value, i) => value + one[i]),
+      d,
+    ),
     d,
   );
   return artanhSeries(ratio, d).map((value) => value * 2 ** (roots + 1));
@@ -115,7 +122,10 @@ export function artanhMatrix(matrix: ArrayLike<number>, d: number): Float64Array
   const one = identityMatrix(d);
   const ratio = multiplyMatrices(
     entries.map((value, i) => one[i] + value),
-    invertMatrix(entries.map((value, i) => one[i] - value), d),
+    invertMatrix(
+      entries.map((value, i) => one[i] - value),
+      d,
+    ),
     d,
   );
   return logarithmMatrix(ratio, d).map((value) => value / 2);
