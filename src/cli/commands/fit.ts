@@ -4,6 +4,7 @@ import type { FitDocument } from '../../documents/FitDocument.js';
 import { fitSchema } from '../../documents/FitDocument.js';
 import type { Study } from '../../documents/Study.js';
 import { NumericalError } from '../../errors.js';
+import { chooseEstimator } from '../../estimation/choose.js';
 import { parseShape } from '../../fields/shapes.js';
 import { fitTracks } from '../../fit.js';
 import { formatFitSummary } from '../../report/terminal.js';
@@ -18,7 +19,7 @@ import { readVersion } from '../version.js';
 /** @throws UsageError, DataError, NumericalError */
 export async function runFit({ operands, options, terminal }: Call): Promise<void> {
   const study = await resolveStudy(options, terminal);
-  checkShapes(study);
+  checkPlan(study);
   const inputs = typeof options.study === 'string' ? [...operands, options.study] : operands;
   checkResultPlace(options.output, inputs, terminal);
 
@@ -78,8 +79,9 @@ function checkNumbers(fit: FitDocument): void {
   );
 }
 
-/** Shapes are read before the tracks, so that a slip costs no waiting. */
-function checkShapes(study: Study): void {
+/** Estimator and shapes are looked up before the tracks are read, so that a slip costs no waiting. */
+function checkPlan(study: Study): void {
+  chooseEstimator(study.estimator);
   const names =
     study.order === 'second'
       ? (['force', 'friction', 'noise'] as const)

@@ -1,6 +1,7 @@
 /** `resimulate FIT`: the fit, simulated at the recorded design, against the recording. */
 
 import type { ResimulationResult } from '../../checks/ResimulationResult.js';
+import { createRefit } from '../../checks/createRefit.js';
 import { resimulate } from '../../checks/resimulate.js';
 import type { FitDocument } from '../../documents/FitDocument.js';
 import { formatResimulationSummary } from '../../report/terminal.js';
@@ -56,7 +57,7 @@ export async function resimulateFit(
     resimulate(fit, recording.tracks, {
       replicates: choices.replicates ?? REPLICATES,
       seed: choices.seed ?? 1,
-      refit: choices.refit,
+      refit: choices.refit ? createRefit(fit) : undefined,
       mapTasks,
       onProgress: progress.update,
     }),

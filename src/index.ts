@@ -1,0 +1,69 @@
+/**
+ * The library: everything the program does, without files, streams or clock. Grouped by stage.
+ */
+
+// errors and units
+export {
+  DataError,
+  NumericalError,
+  UsageError,
+  WanderlawError,
+  type ErrorFacts,
+  type Warning,
+} from './errors.js';
+export { formatUnit, NO_UNITS, QUANTITY_POWERS, type Quantity, type Units } from './units.js';
+
+// documents
+export { type FitDocument, fitSchema } from './documents/FitDocument.js';
+export { describeDocuments, type DocumentName } from './documents/jsonSchemas.js';
+export { parseFit } from './documents/parseFit.js';
+export { completeStudy, parseStudyInput } from './documents/parseStudy.js';
+export { type Scenario, type ScenarioInput, scenarioSchema } from './documents/Scenario.js';
+export { type Study, type StudyInput, studySchema } from './documents/Study.js';
+
+// tracks
+export { formatTrackTable } from './import/formatTracks.js';
+export {
+  importTracks,
+  type ImportCounts,
+  type ImportOptions,
+  type ImportResult,
+  type TrackSource,
+} from './import/importTracks.js';
+export { countPositions, countTracks, type TrackSet } from './tracks/TrackSet.js';
+export { checkTrackLengths, selectTracks } from './tracks/usableTracks.js';
+
+// survey and momenta
+export type { Survey } from './momenta/Survey.js';
+export { surveyTracks } from './momenta/survey.js';
+
+// fit
+export { fitTracks, type FitContext, type FitResult } from './fit.js';
+
+// coefficients
+export type {
+  CoefficientField,
+  FieldForm,
+  FieldLink,
+  FieldName,
+  Model,
+  ModelEvaluator,
+} from './fields/CoefficientField.js';
+export { createModelEvaluator } from './fields/evaluateModel.js';
+export { evaluateFit, type EvaluatedColumn } from './uncertainty/evaluateFit.js';
+
+// simulation and checks
+export { mapTasksSerially, type MapTasks, type Task } from './numerics/MapTasks.js';
+export { RandomStream, randomStream } from './numerics/random/RandomStream.js';
+export { buildScenario } from './simulation/buildScenario.js';
+export { createScenario, parseScenario } from './simulation/parseScenario.js';
+export {
+  simulateScenario,
+  type SimulationOptions,
+  type SimulationResult,
+} from './simulation/simulateScenario.js';
+
+// report
+export { renderReport } from './report/renderReport.js';
+export type { ReportInput } from './report/ReportInput.js';
+export { formatFitSummary, formatResimulationSummary, formatSurveySummary } from './report/terminal.js';
