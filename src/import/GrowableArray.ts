@@ -1,35 +1,37 @@
 /** Flat numbers of unknown count: typed arrays that double when they are full. */
 
-type NumberArray = Float64Array | Int32Array;
-
-export class GrowableArray<T extends NumberArray> {
-  #values: T;
-  #length = 0;
+/** Public fields for the hot loop: write to `values` behind `length` after `reserve`, then raise `length`. */
+export class GrowableArray<T extends Float64Array | Int32Array> {
+  /** The numbers so far and room for more; replaced when the array grows. */
+  values: T;
+  /** How many numbers there are. */
+  length = 0;
   readonly #create: (length: number) => T;
 
   constructor(create: (length: number) => T, capacity = 1024) {
     this.#create = create;
-    this.#values = create(capacity);
+    this.values = create(capacity);
   }
 
-  get length(): number {
-    return this.#length;
+  /** Makes room for some more numbers. */
+  reserve(count: number): void {
+    if (this.length + count > this.values.length) this.#grow(count);
   }
 
   push(value: number): void {
-    if (this.#length === this.#values.length) this.#grow();
-    this.#values[this.#length++] = value;
+    this.reserve(1);
+    this.values[this.length++] = value;
   }
 
-  /** The values so far, without a copy: a view that the next push may leave behind. */
+  /** The numbers so far, without a copy: a view that the next push may leave behind. */
   view(): T {
-    return this.#values.subarray(0, this.#length) as T;
+    return this.values.subarray(0, this.length) as T;
   }
 
-  #grow(): void {
-    const larger = this.#create(2 * this.#values.length);
-    larger.set(this.#values);
-    this.#values = larger;
+  #grow(count: number): void {
+    const larger = this.#create(2 * this.values.length + count);
+    larger.set(this.values);
+    this.values = larger;
   }
 }
 

@@ -2,7 +2,7 @@
 
 import type { Dialect } from './dialect.js';
 import { findColumns, type TableColumns } from './columns.js';
-import { type GrowableArray, growFloats, growIntegers } from './GrowableArray.js';
+import { growFloats, growIntegers } from './GrowableArray.js';
 import { classifyCell, parsePlainNumber } from './parseNumber.js';
 import type { TableConsumer } from './table.js';
 import { quoteCell, tableError } from './tableError.js';
@@ -28,12 +28,9 @@ export interface CollectedRows {
   readonly trackOfRow: Int32Array;
   /** Length n: line in the track's file. */
   readonly lines: Int32Array;
-  /** Length n: time or frame as in the table. */
-  readonly times: Float64Array;
-  /** Shape (n, d), as in the table. */
-  readonly positions: Float64Array;
-  /** Shape (n, d), as in the table; null without error columns. */
-  readonly errors: Float64Array | null;
+  readonly hasErrors: boolean;
+  /** Shape (n, 1 + d), or (n, 1 + 2 d) with errors: time or frame, coordinates, errors, as in the table. */
+  readonly numbers: Float64Array;
 }
 
 /** Takes the tables of several files one after another; all must have the same kinds of columns. */
@@ -52,9 +49,7 @@ export class RowCollector implements TableConsumer {
   readonly #tracks: CollectedTrack[] = [];
   readonly #trackOfRow = growIntegers();
   readonly #lines = growIntegers();
-  readonly #times = growFloats();
-  readonly #positions = growFloats();
-  #errors: GrowableArray<Float64Array> | null = null;
+  readonly #numbers = growFloats();
 
   #firstTable: { columns: TableColumns; file: string } | null = null;
   #file = '';
@@ -65,8 +60,6 @@ export class RowCollector implements TableConsumer {
   #mark = POINT;
   #markLine = 0;
   #numberPlaces: readonly number[] = [];
-  /** Numbers of the row at hand: time, coordinates, errors. */
-  #numbers = new Float64Array(0);
   readonly #tracksOfFile = new Map<string, number>();
   #previousName: string | null = null;
   #previousTrack = -1;
@@ -93,8 +86,6 @@ export class RowCollector implements TableConsumer {
     this.#mark = dialect.decimalCommas ? 0 : POINT;
     this.#markLine = 0;
     this.#numberPlaces = [columns.time, ...columns.coordinates, ...(columns.errors ?? [])];
-    this.#numbers = new Float64Array(this.#numberPlaces.length);
-    if (columns.errors !== null) this.#errors ??= growFloats();
     if (columns.track === -1) this.untrackedFiles.push(this.#file);
     for (const name of columns.leftOut) this.leftOutColumns.add(name);
   }
@@ -107,35 +98,32 @@ export class RowCollector implements TableConsumer {
       this.#refuseWidth(cells.length, columns.names.length, line);
     }
     const places = this.#numberPlaces;
-    const numbers = this.#numbers;
     if (cells[places[0]] === '' && isBlank(cells)) return; // the empty last rows of a spreadsheet
     this.rowCount++;
     this.#rowsOfFile++;
 
     const name = columns.track === -1 ? this.#file : cells[columns.track];
     let valid = name !== this.#previousName && name.trim() === '' ? this.#skipEmptyName(columns, line) : true;
-    for (let i = 0; i < places.length; i++) {
+    const width = places.length;
+    this.#numbers.reserve(width);
+    const { values, length: start } = this.#numbers;
+    for (let i = 0; i < width; i++) {
       let value = parsePlainNumber(cells[places[i]], this.#mark);
       if (value - value !== 0) value = this.#readUnusual(cells[places[i]], places[i], line); // NaN or infinite
       if (value !== value) valid = false;
-      numbers[i] = value;
+      values[start + i] = value;
     }
     if (!valid) {
       this.invalidCount++;
       return;
     }
-    if (columns.countsFrames && !Number.isInteger(numbers[0])) this.#refuseFrame(cells[places[0]], line);
-
+    if (columns.countsFrames && !Number.isInteger(values[start])) this.#refuseFrame(cells[places[0]], line);
+    for (let i = 1 + columns.coordinates.length; i < width; i++) {
+      if (values[start + i] < 0) this.#refuseError(cells[places[i]], places[i], line);
+    }
     this.#trackOfRow.push(this.#findTrack(name, columns, cells, line));
     this.#lines.push(line);
-    this.#times.push(numbers[0]);
-    const dimensions = columns.coordinates.length;
-    for (let axis = 0; axis < dimensions; axis++) this.#positions.push(numbers[1 + axis]);
-    if (this.#errors === null) return;
-    for (let i = 1 + dimensions; i < numbers.length; i++) {
-      if (numbers[i] < 0) this.#refuseError(cells[places[i]], places[i], line);
-      this.#errors.push(numbers[i]);
-    }
+    this.#numbers.length = start + width;
   }
 
   /** @throws DataError  the file has a header but no rows */
@@ -157,9 +145,8 @@ export class RowCollector implements TableConsumer {
       tracks: this.#tracks,
       trackOfRow: this.#trackOfRow.view(),
       lines: this.#lines.view(),
-      times: this.#times.view(),
-      positions: this.#positions.view(),
-      errors: this.#errors?.view() ?? null,
+      hasErrors: (columns?.errors ?? null) !== null,
+      numbers: this.#numbers.view(),
     };
   }
 

@@ -4,13 +4,13 @@ import { DataError } from '../errors.js';
 import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
 import type { Units } from '../units.js';
 import type { CollectedRows } from './RowCollector.js';
-import { estimateSamplingInterval, type IntervalEstimate, SAME_TIME } from './samplingInterval.js';
+import { estimateSamplingInterval, SAME_TIME } from './samplingInterval.js';
 import { quoteCell, tableError } from './tableError.js';
 import { unwrapInto } from './unwrapPeriodic.js';
 
 export interface BuildOptions {
-  /** Factor from the table's times or frames to times, told from the table's dominant step. */
-  readonly chooseTimeScale: (rows: CollectedRows, step: number) => number;
+  /** Factor from the table's times or frames to times, told from them and their dominant step. */
+  readonly chooseTimeScale: (times: Float64Array, step: number) => number;
   readonly lengthScale: number;
   /** Length d, after scaling; 0 where the axis is open. */
   readonly periods: readonly number[];
@@ -37,33 +37,32 @@ export interface BuiltTracks {
  * Cost     O(n) where rows come sorted, else O(n log n) for the unsorted tracks; about three copies of the table.
  */
 export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTracks {
-  const { dimensions, tracks: collected } = rows;
-  checkTimesDiffer(rows);
-  const { order, offsets } = sortRows(rows);
-  const sortedTimes = new Float64Array(order.length);
-  for (let i = 0; i < order.length; i++) sortedTimes[i] = rows.times[order[i]];
-  const interval = estimateSamplingInterval(sortedTimes, offsets);
+  const { dimensions, numbers, tracks: collected } = rows;
+  const tableTimes = extractTimes(rows);
+  checkTimesDiffer(tableTimes, rows);
+  const sorted = sortRows(rows, tableTimes);
+  const interval = estimateSamplingInterval(sorted.times, sorted.offsets);
   if (interval === null) throw singlePositionsError(rows);
-  const timeScale = options.chooseTimeScale(rows, interval.samplingInterval);
+  const timeScale = options.chooseTimeScale(tableTimes, interval.samplingInterval);
 
-  const kept = dropDuplicates(rows, order, offsets, sortedTimes, interval);
-  const count = kept.order.length;
-  const times = new Float64Array(count);
+  const { order, offsets, times } = dropDuplicates(rows, sorted, interval.samplingInterval);
+  const count = order.length;
+  const width = rowWidth(rows);
   const positions = new Float64Array(count * dimensions);
-  const errors = rows.errors === null ? null : new Float64Array(count * dimensions);
+  const errors = rows.hasErrors ? new Float64Array(count * dimensions) : null;
   for (let i = 0; i < count; i++) {
-    const row = kept.order[i];
-    times[i] = rows.times[row] * timeScale;
+    const start = order[i] * width + 1;
+    times[i] *= timeScale;
     for (let axis = 0; axis < dimensions; axis++) {
-      positions[i * dimensions + axis] = rows.positions[row * dimensions + axis] * options.lengthScale;
-      if (errors === null || rows.errors === null) continue;
-      errors[i * dimensions + axis] = rows.errors[row * dimensions + axis] * options.lengthScale;
+      positions[i * dimensions + axis] = numbers[start + axis] * options.lengthScale;
+      if (errors === null) continue;
+      errors[i * dimensions + axis] = numbers[start + dimensions + axis] * options.lengthScale;
     }
   }
   checkFinite(times, 'times', 'time');
   checkFinite(positions, 'positions', 'length');
-  checkMotion(positions, kept.offsets, dimensions, rows);
-  unwrapInto(positions, kept.offsets, options.periods);
+  checkMotion(positions, offsets, dimensions, rows);
+  unwrapInto(positions, offsets, options.periods);
 
   const prefixed = haveSharedNames(rows);
   return {
@@ -71,7 +70,7 @@ export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTr
       dimensions,
       coordinates: COORDINATE_NAMES.slice(0, dimensions),
       trackNames: collected.map(({ name, file }) => (prefixed && name !== file ? `${file}:${name}` : name)),
-      trackOffsets: kept.offsets,
+      trackOffsets: offsets,
       times,
       positions,
       localizationErrors: errors,
@@ -80,22 +79,35 @@ export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTr
       periods: options.periods,
       units: options.units,
     },
-    duplicatesDropped: order.length - count,
+    duplicatesDropped: sorted.order.length - count,
     regularFraction: interval.regularFraction,
     prefixed,
   };
 }
 
-interface RowOrder {
+/** Numbers per row. */
+function rowWidth({ dimensions, hasErrors }: CollectedRows): number {
+  return 1 + (hasErrors ? 2 : 1) * dimensions;
+}
+
+function extractTimes(rows: CollectedRows): Float64Array {
+  const width = rowWidth(rows);
+  const times = new Float64Array(rows.trackOfRow.length);
+  for (let row = 0; row < times.length; row++) times[row] = rows.numbers[row * width];
+  return times;
+}
+
+interface SortedRows {
   /** Rows by track, and within a track by time. */
   readonly order: Int32Array;
   /** Length m + 1: the places in `order` where tracks begin. */
   readonly offsets: Int32Array;
+  /** As in the table, in this order. */
+  readonly times: Float64Array;
 }
 
 /** Counting sort by track; then each track by time, where it is not sorted already. */
-function sortRows(rows: CollectedRows): RowOrder {
-  const { trackOfRow, times, tracks } = rows;
+function sortRows({ trackOfRow, tracks }: CollectedRows, tableTimes: Float64Array): SortedRows {
   const offsets = new Int32Array(tracks.length + 1);
   for (let row = 0; row < trackOfRow.length; row++) offsets[trackOfRow[row] + 1]++;
   for (let track = 0; track < tracks.length; track++) offsets[track + 1] += offsets[track];
@@ -105,20 +117,17 @@ function sortRows(rows: CollectedRows): RowOrder {
   for (let track = 0; track < tracks.length; track++) {
     const part = order.subarray(offsets[track], offsets[track + 1]);
     let sorted = true;
-    for (let i = 1; i < part.length && sorted; i++) sorted = times[part[i]] >= times[part[i - 1]];
-    if (!sorted) part.sort((a, b) => times[a] - times[b]);
+    for (let i = 1; i < part.length && sorted; i++) sorted = tableTimes[part[i]] >= tableTimes[part[i - 1]];
+    if (!sorted) part.sort((a, b) => tableTimes[a] - tableTimes[b]);
   }
-  return { order, offsets };
+  const times = new Float64Array(order.length);
+  for (let i = 0; i < order.length; i++) times[i] = tableTimes[order[i]];
+  return { order, offsets, times };
 }
 
 /** Leaves out rows that repeat the time of the row before; those must repeat everything else too. */
-function dropDuplicates(
-  rows: CollectedRows,
-  order: Int32Array,
-  offsets: Int32Array,
-  sortedTimes: Float64Array,
-  { samplingInterval }: IntervalEstimate,
-): RowOrder {
+function dropDuplicates(rows: CollectedRows, sorted: SortedRows, samplingInterval: number): SortedRows {
+  const { order, offsets, times } = sorted;
   const kept = new Int32Array(order.length);
   const keptOffsets = new Int32Array(offsets.length);
   let count = 0;
@@ -126,28 +135,29 @@ function dropDuplicates(
     let last = -1; // place of the last row kept
     for (let i = offsets[track]; i < offsets[track + 1]; i++) {
       // Two times within a few roundings are one time written twice, whatever the interval.
-      const rounding = 4 * Number.EPSILON * Math.abs(sortedTimes[i]);
-      if (
-        last !== -1 &&
-        sortedTimes[i] - sortedTimes[last] <= Math.max(SAME_TIME * samplingInterval, rounding)
-      ) {
+      const rounding = 4 * Number.EPSILON * Math.abs(times[i]);
+      if (last !== -1 && times[i] - times[last] <= Math.max(SAME_TIME * samplingInterval, rounding)) {
         if (!sayTheSame(rows, order[last], order[i])) throw conflictError(rows, order[last], order[i]);
         continue;
       }
-      kept[count++] = order[i];
+      kept[count++] = i;
       last = i;
     }
     keptOffsets[track + 1] = count;
   }
-  return count === order.length ? { order, offsets } : { order: kept.slice(0, count), offsets: keptOffsets };
+  if (count === order.length) return sorted;
+  const places = kept.subarray(0, count);
+  return {
+    order: places.map((i) => order[i]),
+    offsets: keptOffsets,
+    times: Float64Array.from(places, (i) => times[i]),
+  };
 }
 
 function sayTheSame(rows: CollectedRows, first: number, second: number): boolean {
-  const { dimensions, positions, errors } = rows;
-  for (let axis = 0; axis < dimensions; axis++) {
-    const a = first * dimensions + axis;
-    const b = second * dimensions + axis;
-    if (positions[a] !== positions[b] || (errors !== null && errors[a] !== errors[b])) return false;
+  const width = rowWidth(rows);
+  for (let i = 1; i < width; i++) {
+    if (rows.numbers[first * width + i] !== rows.numbers[second * width + i]) return false;
   }
   return true;
 }
@@ -155,7 +165,7 @@ function sayTheSame(rows: CollectedRows, first: number, second: number): boolean
 function conflictError(rows: CollectedRows, first: number, second: number): DataError {
   const { name, file } = rows.tracks[rows.trackOfRow[first]];
   const lines = [rows.lines[first], rows.lines[second]].sort((a, b) => a - b);
-  const time = rows.times[first];
+  const time = rows.numbers[first * rowWidth(rows)];
   const moment = `${rows.countsFrames ? 'frame' : 'time'} ${time}`;
   const place = `${moment} (lines ${lines[0]} and ${lines[1]})`;
   const sentence =
@@ -166,7 +176,7 @@ function conflictError(rows: CollectedRows, first: number, second: number): Data
   return tableError({ file }, sentence, { track: name, time, lines });
 }
 
-function checkTimesDiffer({ times, countsFrames }: CollectedRows): void {
+function checkTimesDiffer(times: Float64Array, { countsFrames }: CollectedRows): void {
   for (let row = 1; row < times.length; row++) if (times[row] !== times[0]) return;
   throw new DataError(
     `all ${times.length} positions are at the same ${countsFrames ? 'frame' : 'time'} ${times[0]}; ` +
@@ -197,7 +207,7 @@ function checkMotion(
   }
   throw new DataError(
     `no position ever changes within a track (${rows.tracks.length} ${rows.tracks.length === 1 ? 'track' : 'tracks'}, ` +
-      `${rows.times.length} rows); tracks of moving particles are needed (are the right columns used? see --columns)`,
+      `${rows.trackOfRow.length} rows); tracks of moving particles are needed (are the right columns used? see --columns)`,
     { tracks: rows.tracks.length },
   );
 }

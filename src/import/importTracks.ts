@@ -12,7 +12,7 @@ import { NO_UNITS, type Units } from '../units.js';
 import { buildTracks } from './buildTracks.js';
 import { checkColumnMapping } from './columns.js';
 import type { TrackSource } from './decodeText.js';
-import { type CollectedRows, RowCollector } from './RowCollector.js';
+import { RowCollector } from './RowCollector.js';
 import { readTable } from './table.js';
 import { quoteCell } from './tableError.js';
 
@@ -73,7 +73,7 @@ export async function importTracks(
     collector.closeFile();
   }
   const rows = collector.collectRows();
-  if (rows.times.length === 0) {
+  if (rows.trackOfRow.length === 0) {
     throw new DataError(
       `all ${collector.rowCount} rows were skipped as invalid; positions with finite numbers are needed`,
       { rows: collector.rowCount, invalidSkipped: collector.invalidCount },
@@ -81,7 +81,7 @@ export async function importTracks(
   }
   const warnings: Warning[] = [];
   const built = buildTracks(rows, {
-    chooseTimeScale: (collected, step) => chooseTimeScale(collected, step, options, warnings),
+    chooseTimeScale: (times, step) => chooseTimeScale(times, step, rows.countsFrames, options, warnings),
     lengthScale: options.lengthScale ?? 1,
     periods: checkPeriods(options.period ?? null, rows.dimensions),
     units: options.units ?? NO_UNITS,
@@ -101,14 +101,15 @@ const AGREEMENT = 0.01;
 
 /** Factor from the table's time column to times, with a warning where the reader has to guess. */
 function chooseTimeScale(
-  rows: CollectedRows,
+  times: Float64Array,
   step: number,
+  countsFrames: boolean,
   options: ImportOptions,
   warnings: Warning[],
 ): number {
   const timeScale = options.timeScale ?? 1;
   const interval = options.interval ?? null;
-  if (rows.countsFrames) {
+  if (countsFrames) {
     if (interval === null) {
       warnings.push({
         code: 'frames-without-interval',
@@ -119,7 +120,7 @@ function chooseTimeScale(
     return (interval ?? 1) * timeScale;
   }
   if (interval === null || Math.abs(step - interval) <= AGREEMENT * interval) return timeScale;
-  if (rows.times.every(Number.isInteger)) {
+  if (times.every(Number.isInteger)) {
     warnings.push({
       code: 'time-read-as-frames',
       message:
