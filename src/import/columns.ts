@@ -92,7 +92,7 @@ export function findColumns(
       'the line holds numbers where a header line that names the columns is needed (lines that begin with # are comments)',
     );
   }
-  const place = (role: ColumnRole): number => findColumn(names, role, mapping[role], file, line);
+  const place = (role: ColumnRole): number => findColumn(names, role, mapping, file, line);
 
   const countsFrames = mapping.time === undefined && (mapping.frame !== undefined || place('time') === -1);
   const time = place(countsFrames ? 'frame' : 'time');
@@ -145,11 +145,11 @@ export function findColumns(
 function findColumn(
   names: readonly string[],
   role: ColumnRole,
-  mappedName: string | undefined,
+  mapping: Readonly<Record<string, string>>,
   file: string,
   line: number,
 ): number {
-  const wanted = (mappedName ?? role).trim();
+  const wanted = (mapping[role] ?? role).trim();
   let places = placesOf(names, (name) => name === wanted);
   if (places.length === 0) places = placesOf(names, (name) => name.toLowerCase() === wanted.toLowerCase());
   if (places.length > 1) {
@@ -159,9 +159,11 @@ function findColumn(
     );
   }
   if (places.length === 1) return places[0];
-  if (mappedName === undefined) return -1;
-  const suggestion = suggestName(wanted, names);
-  const hint = suggestion === null ? '' : `; did you mean ${quoteCell(suggestion)}?`;
+  if (mapping[role] === undefined) return -1;
+  const taken = Object.values(mapping);
+  const free = names.filter((name) => !taken.includes(name));
+  const suggestion = suggestName(wanted, free);
+  const hint = suggestion === null ? '; name one that is there' : `; did you mean ${quoteCell(suggestion)}?`;
   throw tableError(
     { file, line },
     `there is no column ${quoteCell(wanted)} for ${role}${hint} (${listNames(names)})`,

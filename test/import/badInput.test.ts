@@ -41,6 +41,12 @@ const BAD_TABLES: Record<string, BadTable> = {
     line: 1,
     says: /no column "Posx1" for x; did you mean "PosX"\? \(columns: "ID", "t", "PosX"\)/,
   },
+  'a mapped column near to one that has its role already': {
+    content: 'ID,t,PosX,PosY\n1,0,1,2\n',
+    options: { columns: { track: 'ID', time: 't', x: 'PosX', y: 'PosZ' } },
+    line: 1,
+    says: /no column "PosZ" for y; did you mean "PosY"\?/,
+  },
   'a column that is there twice': {
     content: 'track,time,x,X,x\n1,0,2,3,4\n',
     line: 1,
