@@ -24,8 +24,12 @@ export type Reading = 'ito' | 'stratonovich' | 'isothermal';
 
 const DIVERGENCE_SHARE: Readonly<Record<Reading, number>> = { ito: 0, stratonovich: 0.5, isothermal: 1 };
 
-/** Drift in the Itô reading and the matrix σ with σσᵀ = 2 D (row-major, full) at a place. */
-export type ItoCoefficients = (place: Float64Array, drift: Float64Array, sigma: Float64Array) => void;
+export interface ItoCoefficients {
+  /** Drift in the Itô reading and the matrix σ with σσᵀ = 2 D (row-major, full) at a place. */
+  evaluateInto(place: Float64Array, drift: Float64Array, sigma: Float64Array): void;
+  /** σ alone. */
+  sigmaInto(place: Float64Array, sigma: Float64Array): void;
+}
 
 /** The Itô form of a first-order scenario's coefficients. */
 export function createItoCoefficients(
@@ -43,8 +47,7 @@ export function createItoCoefficients(
   const above = new Float64Array(bathSize);
   const below = new Float64Array(bathSize);
   const delta = DERIVATIVE_STEP * lengthScale;
-  return (place, drift, sigma) => {
-    evaluator.evaluateInto(place, drift, unused, diffusion);
+  const readSigma = (sigma: Float64Array): void => {
     if (bathForm === 'matrix') {
       for (let i = 0; i < full.length; i++) full[i] = 2 * diffusion[i];
       choleskyInto(full, d, sigma);
@@ -52,7 +55,8 @@ export function createItoCoefficients(
       for (let axis = 0; axis < d; axis++)
         sigma[axis * (d + 1)] = Math.sqrt(2 * diffusion[bathSize === 1 ? 0 : axis]);
     }
-    if (share === 0) return;
+  };
+  const addDivergence = (place: Float64Array, drift: Float64Array): void => {
     shifted.set(place);
     for (let j = 0; j < d; j++) {
       shifted[j] = place[j] + delta;
@@ -68,6 +72,17 @@ export function createItoCoefficients(
         drift[j] += factor * (above[i] - below[i]);
       }
     }
+  };
+  return {
+    evaluateInto(place, drift, sigma) {
+      evaluator.evaluateInto(place, drift, unused, diffusion);
+      readSigma(sigma);
+      if (share !== 0) addDivergence(place, drift);
+    },
+    sigmaInto(place, sigma) {
+      evaluator.evaluateInto(place, spareForce, unused, diffusion);
+      readSigma(sigma);
+    },
   };
 }
 
@@ -101,14 +116,14 @@ function advanceUniform(
   return (position, velocity, count, step, stream) => {
     const root = Math.sqrt(step);
     for (let done = 0; done < count; done++) {
-      coefficients(position, drift, sigma);
+      coefficients.evaluateInto(position, drift, sigma);
       kick.fill(0);
       for (let j = 0; j < d; j++) {
         const w = root * stream.normal();
         for (let i = 0; i < d; i++) kick[i] += sigma[i * d + j] * w;
       }
       for (let i = 0; i < d; i++) ahead[i] = position[i] + step * drift[i] + kick[i];
-      coefficients(ahead, corrected, sigma);
+      coefficients.evaluateInto(ahead, corrected, sigma);
       for (let i = 0; i < d; i++) position[i] += 0.5 * step * (drift[i] + corrected[i]) + kick[i];
       if (walls !== null) reflect(position, velocity, walls);
     }
@@ -125,7 +140,6 @@ function advancePlaten(
 ): Integrator['advance'] {
   const a = new Float64Array(d);
   const aAhead = new Float64Array(d);
-  const aSpare = new Float64Array(d);
   const b = new Float64Array(d * d);
   const bPlus = new Float64Array(d * d);
   const bMinus = new Float64Array(d * d);
@@ -136,7 +150,7 @@ function advancePlaten(
   return (position, velocity, count, step, stream) => {
     const root = Math.sqrt(step);
     for (let done = 0; done < count; done++) {
-      coefficients(position, a, b);
+      coefficients.evaluateInto(position, a, b);
       for (let j = 0; j < d; j++) w[j] = root * stream.normal();
       for (let r = 0; r < d; r++) {
         v[r * d + r] = -step;
@@ -150,13 +164,13 @@ function advancePlaten(
         for (let j = 0; j < d; j++) noise += b[i * d + j] * w[j];
         place[i] = position[i] + step * a[i] + noise;
       }
-      coefficients(place, aAhead, bPlus);
+      coefficients.evaluateInto(place, aAhead, bPlus);
       for (let i = 0; i < d; i++) move[i] = 0.5 * step * (aAhead[i] + a[i]);
       for (let j = 0; j < d; j++) {
         for (let i = 0; i < d; i++) place[i] = position[i] + step * a[i] + root * b[i * d + j];
-        coefficients(place, aSpare, bPlus);
+        coefficients.sigmaInto(place, bPlus);
         for (let i = 0; i < d; i++) place[i] = position[i] + step * a[i] - root * b[i * d + j];
-        coefficients(place, aSpare, bMinus);
+        coefficients.sigmaInto(place, bMinus);
         const square = (w[j] * w[j] - step) / root;
         for (let i = 0; i < d; i++) {
           const k = i * d + j;
@@ -166,9 +180,9 @@ function advancePlaten(
       if (d > 1) {
         for (let r = 0; r < d; r++) {
           for (let i = 0; i < d; i++) place[i] = position[i] + root * b[i * d + r];
-          coefficients(place, aSpare, bPlus);
+          coefficients.sigmaInto(place, bPlus);
           for (let i = 0; i < d; i++) place[i] = position[i] - root * b[i * d + r];
-          coefficients(place, aSpare, bMinus);
+          coefficients.sigmaInto(place, bMinus);
           for (let j = 0; j < d; j++) {
             if (j === r) continue;
             const mixed = (w[j] * w[r] + v[r * d + j]) / root;
