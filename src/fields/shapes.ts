@@ -16,7 +16,7 @@ export type Shape =
 const FORMS = 'zero, constant, linear, polynomial:N, spline, spline:N or waves:N';
 
 /** B-splines per axis where the user leaves the size to the data (roughness is then penalised): by dimension. */
-const AUTO_SPLINES = [14, 9, 5]; // fine enough for features a tenth (1-D) of the region wide; cost grows with the square
+const AUTO_SPLINES = [36, 10, 5]; // fine enough for features a tenth (1-D) of the region wide; cost grows with the cube
 
 /** Fewest positions per basis function for which the automatic size is kept. */
 const POSITIONS_PER_FUNCTION = 20;
