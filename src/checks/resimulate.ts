@@ -38,7 +38,7 @@ const TITLES: Readonly<Record<string, string>> = {
   'mean-squared-displacement': 'mean squared displacement by lag',
   'velocity-autocorrelation': 'correlation of velocities by lag',
   'kinetic-temperature': 'mean squared velocity by place',
-  'velocity-persistence': 'product of neighbouring velocities by place',
+  'velocity-persistence': 'correlation of neighbouring velocities by place',
   current: 'mean velocity by place',
   circulation: 'area swept around the centre per time',
 };

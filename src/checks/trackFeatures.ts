@@ -299,7 +299,10 @@ function measureLags(layout: FeatureLayout, positions: Float64Array, out: Float6
   }
 }
 
-/** Means by place of the velocity, its square and its product with the next one; and the circulation as a whole. */
+/**
+ * By place: the mean velocity, its mean square, and the correlation of neighbouring velocities (their products over
+ * their squares, which is far sharper than the mean product); and the circulation as a whole.
+ */
 function measureMaps(layout: FeatureLayout, positions: Float64Array, out: Float64Array): void {
   const { dimensions: d, runs, samplingInterval, cellsPerAxis } = layout;
   const temperature = findBlock(layout, 'kinetic-temperature');
@@ -309,7 +312,7 @@ function measureMaps(layout: FeatureLayout, positions: Float64Array, out: Float6
   if (temperature === undefined || current === undefined) return;
   const cells = cellsPerAxis ** d;
   const counts = new Float64Array(cells);
-  const pairCounts = new Float64Array(cells);
+  const pairSquares = new Float64Array(cells);
   const planes = countPlanes(layout.periods);
   const swept = new Float64Array(planes.length);
   let steps = 0;
@@ -319,17 +322,22 @@ function measureMaps(layout: FeatureLayout, positions: Float64Array, out: Float6
       counts[cell]++;
       steps++;
       let product = 0;
+      let square = 0;
       const hasNext = row + 2 < runs.ends[run];
       for (let axis = 0; axis < d; axis++) {
         const at = row * d + axis;
         const move = (positions[at + d] - positions[at]) / samplingInterval;
         out[temperature.offset + cell] += (move * move) / d;
         out[current.offset + cell * d + axis] += move;
-        if (hasNext) product += (move * (positions[at + 2 * d] - positions[at + d])) / samplingInterval;
+        if (hasNext) {
+          const next = (positions[at + 2 * d] - positions[at + d]) / samplingInterval;
+          product += move * next;
+          square += 0.5 * (move * move + next * next);
+        }
       }
       if (hasNext && persistence) {
-        out[persistence.offset + cell] += product / d;
-        pairCounts[cell]++;
+        out[persistence.offset + cell] += product;
+        pairSquares[cell] += square;
       }
       for (let plane = 0; plane < planes.length; plane++) {
         const [a, b] = planes[plane];
@@ -344,7 +352,7 @@ function measureMaps(layout: FeatureLayout, positions: Float64Array, out: Float6
   for (let cell = 0; cell < cells; cell++) {
     out[temperature.offset + cell] /= counts[cell];
     for (let axis = 0; axis < d; axis++) out[current.offset + cell * d + axis] /= counts[cell];
-    if (persistence) out[persistence.offset + cell] /= pairCounts[cell];
+    if (persistence) out[persistence.offset + cell] /= pairSquares[cell];
   }
   if (circulation)
     for (let plane = 0; plane < planes.length; plane++)
