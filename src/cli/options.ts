@@ -220,7 +220,7 @@ export const OPTIONS = {
   // results and how the program speaks
   output: {
     flags: '-o, --output <FILE>',
-    meaning: 'file the result is written to, whole or not at all',
+    meaning: 'file the result is written to, whole or not at all; a name ending in .json asks for JSON',
     default: 'standard output',
   },
   json: {

@@ -20,6 +20,12 @@ export async function deliver(text: string, output: unknown, terminal: Terminal)
   terminal.note(`wrote ${output}`);
 }
 
+/** Whether the result is wanted as JSON: by --json, or by the name of the output file. */
+export function wantsJson(options: Readonly<Record<string, unknown>>): boolean {
+  const { json, output } = options;
+  return json === true || (typeof output === 'string' && output.endsWith('.json'));
+}
+
 /** JSON for people and programs alike: indented, but lists of numbers stay on one line. */
 export function formatJson(value: unknown): string {
   return `${formatValue(value, '')}\n`;

@@ -62,6 +62,14 @@ describe('survey', () => {
     expect(stdout).not.toContain('\u001b');
   });
 
+  it('writes JSON where the output file is named so, and text elsewhere', async () => {
+    await type('survey tracks.csv --quiet -o survey.json');
+    expect(readJson('survey.json')).toMatchObject({ tracks: 12 });
+    const { stdout } = await type('survey tracks.csv --quiet -o survey.txt');
+    expect(stdout).toBe('');
+    expect(readFileSync(join(place.path, 'survey.txt'), 'utf8')).toContain('tracks');
+  });
+
   it('writes momenta with their errors', async () => {
     const { status } = await type('survey tracks.csv --momenta momenta.csv --mass 2 --quiet');
     expect(status).toBe(0);
@@ -151,6 +159,15 @@ describe('color', () => {
     expect((await place.run(line, { isTTY: true })).stdout).toContain('\u001b[');
     expect((await place.run(line, { isTTY: true, env: { NO_COLOR: '1' } })).stdout).not.toContain('\u001b[');
     expect((await place.run(line, { env: { CI: '1', FORCE_COLOR: '1' } })).stdout).not.toContain('\u001b[');
+  });
+});
+
+describe('progress', () => {
+  it('is shown on a terminal only', async () => {
+    const shown = await place.run(FIT.split(' '), { isTTY: true });
+    expect(shown.status).toBe(0);
+    expect(shown.stderr).toMatch(/surveying|estimating|resampling/);
+    expect((await type(FIT)).stderr).not.toMatch(/surveying|estimating|resampling/);
   });
 });
 

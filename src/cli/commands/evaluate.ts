@@ -5,7 +5,7 @@ import type { Call } from '../commandTable.js';
 import { readFit } from '../documents.js';
 import { readPoints } from '../points.js';
 import { openInput } from '../recordings.js';
-import { checkResultPlace, deliver, formatJson } from '../results.js';
+import { checkResultPlace, deliver, formatJson, wantsJson } from '../results.js';
 
 /** @throws UsageError, DataError */
 export async function runEvaluate({ operands, options, terminal }: Call): Promise<void> {
@@ -29,7 +29,7 @@ export async function runEvaluate({ operands, options, terminal }: Call): Promis
   named.push(['visited', visited]);
 
   const rows = Array.from(visited, (_, row) => named.map(([name, values]) => [name, values[row]] as const));
-  const text = options.json
+  const text = wantsJson(options)
     ? formatJson({
         confidence: fit.uncertainty.confidence,
         points: rows.map((row) => Object.fromEntries(row)),

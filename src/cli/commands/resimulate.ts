@@ -8,7 +8,7 @@ import { formatResimulationSummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';
 import { readFit } from '../documents.js';
 import { readRecordingOfFit } from '../recordings.js';
-import { checkResultPlace, deliver, formatJson } from '../results.js';
+import { checkResultPlace, deliver, formatJson, wantsJson } from '../results.js';
 import type { Terminal } from '../Terminal.js';
 import { readVersion } from '../version.js';
 import { withWorkers } from '../workers.js';
@@ -30,7 +30,7 @@ export async function runResimulate({ operands, options, terminal }: Call): Prom
     workers: options.workers,
   });
   for (const warning of result.warnings) terminal.warn(warning);
-  const text = options.json
+  const text = wantsJson(options)
     ? formatJson(describeResimulation(result))
     : formatResimulationSummary(result, terminal.summaryStyle);
   await deliver(text, options.output, terminal);

@@ -7,7 +7,7 @@ import { formatSurveySummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';
 import { writeWhole } from '../files.js';
 import { readRecording } from '../recordings.js';
-import { checkResultPlace, deliver, formatJson } from '../results.js';
+import { checkResultPlace, deliver, formatJson, wantsJson } from '../results.js';
 import { resolveStudy } from '../study.js';
 
 /** @throws UsageError, DataError */
@@ -32,6 +32,6 @@ export async function runSurvey({ operands, options, terminal }: Call): Promise<
     sources: recording.sources,
     warnings,
   };
-  const text = options.json ? formatJson(result) : formatSurveySummary(result, terminal.summaryStyle);
+  const text = wantsJson(options) ? formatJson(result) : formatSurveySummary(result, terminal.summaryStyle);
   await deliver(text, options.output, terminal);
 }
