@@ -6,6 +6,7 @@ import { readFit } from '../documents.js';
 import { readPoints } from '../points.js';
 import { openInput } from '../recordings.js';
 import { checkResultPlace, deliver, formatJson, wantsJson } from '../results.js';
+import { type Column, formatTable } from '../tables.js';
 
 /** @throws UsageError, DataError */
 export async function runEvaluate({ operands, options, terminal }: Call): Promise<void> {
@@ -17,26 +18,22 @@ export async function runEvaluate({ operands, options, terminal }: Call): Promis
   const places = await readPoints(at, openInput(at, terminal), coordinates);
   const { columns, visited } = evaluateFit(fit, places);
 
-  const named: [string, ArrayLike<number>][] = coordinates.map((coordinate, axis) => [
-    coordinate,
-    places.filter((_, i) => i % dimensions === axis),
-  ]);
-  for (const column of columns) {
-    named.push([column.name, column.values]);
-    named.push([`${column.name}_low`, options.simultaneous ? column.bandLow : column.low]);
-    named.push([`${column.name}_high`, options.simultaneous ? column.bandHigh : column.high]);
+  const table: Column[] = coordinates.map((name, axis) => ({
+    name,
+    values: places.filter((_, i) => i % dimensions === axis),
+  }));
+  for (const { name, values, low, high, bandLow, bandHigh } of columns) {
+    table.push({ name, values });
+    table.push({ name: `${name}_low`, values: options.simultaneous ? bandLow : low });
+    table.push({ name: `${name}_high`, values: options.simultaneous ? bandHigh : high });
   }
-  named.push(['visited', visited]);
+  table.push({ name: 'visited', values: visited });
 
-  const rows = Array.from(visited, (_, row) => named.map(([name, values]) => [name, values[row]] as const));
+  const points = (): unknown[] =>
+    Array.from(visited, (_, row) => Object.fromEntries(table.map(({ name, values }) => [name, values[row]])));
   const text = wantsJson(options)
-    ? formatJson({
-        confidence: fit.uncertainty.confidence,
-        points: rows.map((row) => Object.fromEntries(row)),
-      })
-    : [named.map(([name]) => name), ...rows.map((row) => row.map(([, value]) => value))]
-        .map((cells) => `${cells.join(',')}\n`)
-        .join('');
+    ? formatJson({ confidence: fit.uncertainty.confidence, points: points() })
+    : [...formatTable(table)].join('');
   const outside = visited.filter((flag) => flag === 0).length;
   if (outside > 0) {
     const share = `${outside} of ${visited.length} places lie`;

@@ -1,6 +1,5 @@
 /** `survey TRACKS…`: what was recorded, and whether it can carry a fit. */
 
-import { formatMomenta } from '../../import/formatMomenta.js';
 import { surveyTracks } from '../../momenta/survey.js';
 import { tabulateMomenta } from '../../momenta/tabulateMomenta.js';
 import { formatSurveySummary } from '../../report/terminal.js';
@@ -9,6 +8,7 @@ import { writeWhole } from '../files.js';
 import { readRecording } from '../recordings.js';
 import { checkResultPlace, deliver, formatJson, wantsJson } from '../results.js';
 import { resolveStudy } from '../study.js';
+import { formatTable } from '../tables.js';
 
 /** @throws UsageError, DataError */
 export async function runSurvey({ operands, options, terminal }: Call): Promise<void> {
@@ -22,7 +22,7 @@ export async function runSurvey({ operands, options, terminal }: Call): Promise<
   for (const warning of warnings) terminal.warn(warning);
   if (momenta !== undefined) {
     const table = tabulateMomenta(recording.tracks, survey, study.mass ?? 1);
-    await writeWhole(terminal.resolve(momenta), formatMomenta(table), momenta);
+    await writeWhole(terminal.resolve(momenta), formatTable(table.columns), momenta);
     terminal.note(`wrote ${momenta}`);
   }
   const result = {
