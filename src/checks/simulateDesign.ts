@@ -21,17 +21,16 @@ export interface Design {
   readonly step: number;
 }
 
-const NORMAL_95 = 1.96; // half-width of the 95 % interval in standard errors
-
 /** The design of a recording under a fitted model. */
 export function createDesign(fit: FitDocument, tracks: TrackSet): Design {
   const scenario = buildScenario(fit);
   return {
     scenario,
     tracks,
-    localizationError: fit.localizationError.map(({ value, low, high }) => ({
+    localizationError: fit.localizationError.map(({ value, high }) => ({
       value: Math.max(0, value),
-      standardError: Math.max(0, (high - low) / (2 * NORMAL_95)),
+      // The lower end may have been cut off at zero; the upper end never is.
+      standardError: Math.max(0, (high - value) / fit.uncertainty.multiplier),
     })),
     step: scenario.integration.step ?? scenario.observation.interval,
   };
