@@ -28,7 +28,7 @@ export interface ResimulationOptions {
 
 const REPLICATES = 99; // p-values in steps of 0.01
 const FEWEST_REPLICATES = 19;
-const REFITS = 8; // standard error of the mean a third of the estimator's scatter
+const REFITS = 4; // each costs a whole fit; the standard error of the mean is half the scatter of the estimator
 const LEVEL = 0.05;
 
 const TITLES: Readonly<Record<string, string>> = {

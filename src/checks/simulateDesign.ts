@@ -23,7 +23,7 @@ export interface Design {
 
 /** The design of a recording under a fitted model. */
 export function createDesign(fit: FitDocument, tracks: TrackSet): Design {
-  const scenario = buildScenario(fit);
+  const scenario = { ...buildScenario(fit), ensemble: null }; // replicates are handed their draws one by one
   return {
     scenario,
     tracks,

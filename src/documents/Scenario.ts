@@ -16,22 +16,30 @@ const formulaField = z
   .describe('a coefficient written as formulas');
 const constantField = z
   .strictObject({
-    form: z.enum(['vector', 'scalar', 'axes', 'matrix']),
+    form: z.enum(['vector', 'scalar', 'axes', 'matrix']).describe('as in fit files: which components follow'),
     values: numbers.describe('one number per component'),
   })
   .describe('a coefficient that is the same everywhere');
 const coefficient = z.union([fieldSchema, formulaField, constantField]);
 
 export const scenarioSchema = z.strictObject({
-  format: z.literal('wanderlaw-scenario'),
-  version: z.literal(1),
+  format: z.literal('wanderlaw-scenario').describe('says what the file is'),
+  version: z.literal(1).describe('version of the format'),
   title: z.string().default('').describe('one line for people'),
-  dimensions: z.int().min(1).max(3),
+  dimensions: z.int().min(1).max(3).describe('number of coordinates: x; x and y; x, y and z'),
   units: z
     .strictObject({ length: z.string().nullable(), time: z.string().nullable() })
-    .default({ length: null, time: null }),
-  mass: z.number().positive().nullable().default(null),
-  order: z.enum(['first', 'second']),
+    .default({ length: null, time: null })
+    .describe('labels of the length and time units, or null'),
+  mass: z
+    .number()
+    .positive()
+    .nullable()
+    .default(null)
+    .describe('mass of a particle, where forces are wanted in mass units'),
+  order: z
+    .enum(['first', 'second'])
+    .describe('second: velocities are remembered between frames; first: they are not'),
   reading: z
     .enum(['ito', 'stratonovich', 'isothermal'])
     .default('ito')
@@ -39,7 +47,9 @@ export const scenarioSchema = z.strictObject({
   axes: z
     .array(
       z.strictObject({
-        kind: z.enum(['open', 'periodic', 'walls']).describe('walls reflect'),
+        kind: z
+          .enum(['open', 'periodic', 'walls'])
+          .describe('without end; closing on itself; or with reflecting walls'),
         low: z.number().nullable().default(null).describe('lower edge (periodic, walls)'),
         high: z.number().nullable().default(null).describe('upper edge (periodic, walls)'),
       }),
@@ -62,7 +72,12 @@ export const scenarioSchema = z.strictObject({
         .describe(
           'outside the visited region: hold the edge value; fade to the mean over `width`; hold, with a restoring force of strength `stiffness`',
         ),
-      width: z.number().positive().nullable().default(null),
+      width: z
+        .number()
+        .positive()
+        .nullable()
+        .default(null)
+        .describe('length over which coefficients fade (fade)'),
       stiffness: z
         .number()
         .positive()
@@ -70,7 +85,8 @@ export const scenarioSchema = z.strictObject({
         .default(null)
         .describe('1/time² (second order), 1/time (first order)'),
     })
-    .default({ kind: 'hold', width: null, stiffness: null }),
+    .default({ kind: 'hold', width: null, stiffness: null })
+    .describe('what the coefficients are outside the visited box'),
   visited: z
     .strictObject({ low: numbers, high: numbers })
     .nullable()
@@ -88,14 +104,28 @@ export const scenarioSchema = z.strictObject({
       spread: numbers.default([]).describe('normal: standard deviation; uniform: side lengths'),
     })
     .describe('where tracks begin'),
-  observation: z.strictObject({
-    tracks: z.int().min(1),
-    frames: z.int().min(1),
-    interval: z.number().positive().describe('time between frames'),
-    localizationError: z.array(z.number().min(0)).describe('standard deviation per axis, length'),
-    exposure: z.number().min(0).max(1).default(0).describe('fraction of the interval averaged over'),
-    lostFrames: z.number().min(0).lt(1).default(0).describe('fraction of frames lost at random'),
-  }),
+  observation: z
+    .strictObject({
+      tracks: z.int().min(1).describe('number of tracks'),
+      frames: z.int().min(1).describe('positions per track, lost ones included'),
+      interval: z.number().positive().describe('time between frames'),
+      localizationError: z.array(z.number().min(0)).describe('standard deviation per axis, length'),
+      exposure: z
+        .number()
+        .min(0)
+        .max(1)
+        .default(0)
+        .describe(
+          'fraction of the interval a position is averaged over; the window ends at the time of the frame',
+        ),
+      lostFrames: z
+        .number()
+        .min(0)
+        .lt(1)
+        .default(0)
+        .describe('fraction of frames lost at random; the first of a track is kept'),
+    })
+    .describe('how the process is recorded'),
   integration: z
     .strictObject({
       step: z
@@ -105,7 +135,8 @@ export const scenarioSchema = z.strictObject({
         .default(null)
         .describe('time step; null: chosen from the coefficients'),
     })
-    .default({ step: null }),
+    .default({ step: null })
+    .describe('how the equations of motion are solved'),
   ensemble: z
     .strictObject({
       draws: z
@@ -115,9 +146,16 @@ export const scenarioSchema = z.strictObject({
         ),
     })
     .nullable()
-    .default(null),
-  provenance: z.record(z.string(), z.json()).default({}),
-  warnings: z.array(z.strictObject({ code: z.string(), message: z.string() })).default([]),
+    .default(null)
+    .describe('the uncertainty of the fit, for simulate --ensemble'),
+  provenance: z
+    .record(z.string(), z.json())
+    .default({})
+    .describe('where the scenario came from: program, tracks and their hashes, seed'),
+  warnings: z
+    .array(z.strictObject({ code: z.string(), message: z.string() }))
+    .default([])
+    .describe('advice that simulate repeats'),
 });
 
 export type Scenario = z.output<typeof scenarioSchema>;

@@ -82,7 +82,7 @@ export async function simulateScenario(
       option: '--ensemble',
     });
   }
-  const run: Scenario = { ...scenario, observation };
+  const run: Scenario = { ...scenario, observation, ensemble: ensemble ? scenario.ensemble : null };
   const warnings: Warning[] = scenario.warnings.map(({ code, message }) => ({ code, message }));
   const step = chooseStep(run, await createScenarioEvaluator(run), warnings);
 
