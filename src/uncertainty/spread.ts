@@ -4,6 +4,7 @@
  */
 
 import { quantileSorted } from '../numerics/statistics/quantile.js';
+import { normalQuantile } from '../numerics/special/normal.js';
 import { studentQuantile } from '../numerics/special/student.js';
 import type { Model } from '../fields/CoefficientField.js';
 import { evaluateColumns, evaluateReplicate, planColumns, type ColumnScale } from './columns.js';
@@ -85,6 +86,6 @@ export function simultaneousMultiplier(spread: ColumnSpread, confidence: number,
     }
     return most;
   }).sort();
-  const widening = pointwise / studentQuantile((1 + confidence) / 2, 1e6);
+  const widening = pointwise / normalQuantile((1 + confidence) / 2);
   return Math.max(pointwise, quantileSorted(largest, confidence) * widening);
 }
