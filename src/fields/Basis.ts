@@ -39,7 +39,7 @@ export interface Basis {
   /**
    * Writes the functions that may be non-zero at the place `places[offset … offset + d − 1]` and their values.
    *
-   * @param indices  at least `support` long; function numbers, in increasing order
+   * @param indices  at least `support` long; function numbers, each once; in increasing order except where an axis wraps
    * @param values  at least `support` long
    * @returns how many were written (≤ support)
    */
