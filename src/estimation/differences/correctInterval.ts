@@ -79,11 +79,23 @@ export function correctSecondOrderInto(
  */
 export function stiffnessGain(half: number, stiffness: number): number {
   const turned = Math.atanh(half);
-  // Near zero k/K is smooth but 0/0: evaluate it a little to the side, at an error far below the statistical one.
-  const usable = Math.abs(stiffness) < 1e-3 ? (stiffness < 0 ? -1e-3 : 1e-3) : Math.min(stiffness, 2);
+  if (Math.abs(stiffness) < WEAK) return weakGain(turned, stiffness);
+  const usable = Math.min(stiffness, 2);
   const cosine = (1 - usable / 2) * Math.cosh(turned);
   const angle = cosine <= 1 ? Math.acos(Math.max(-1, cosine)) ** 2 : -(Math.acosh(cosine) ** 2);
   return (turned * turned + angle) / usable;
+}
+
+/** Below this KΔ² the closed form of k/K is 0/0 to too many digits; the next term of the series is then below 1e-8. */
+const WEAK = 1e-4;
+
+/** k/K to first order in KΔ²: t/tanh t + KΔ² cosh²t (t cosh t − sinh t)/(4 sinh³t) with t = ΓΔ/2. */
+function weakGain(turned: number, stiffness: number): number {
+  const t = Math.abs(turned);
+  if (t < 1e-2) return 1 + (t * t) / 3 + stiffness * (1 / 12 + (t * t) / 20);
+  const sinh = Math.sinh(t);
+  const cosh = Math.cosh(t);
+  return (t * cosh) / sinh + (stiffness * cosh * cosh * (t * cosh - sinh)) / (4 * sinh ** 3);
 }
 
 /**
