@@ -48,9 +48,11 @@ function trackBlocks(tracks: TrackSet, most: number): Blocks {
 
 /**
  * Tracks by falling length, then by path length: an order that does not depend on names, on the order of rows, or on
- * shifts and rotations of the plane, so that none of these changes the bootstrap.
+ * shifts and rotations of the plane, so that none of these changes a result.
+ *
+ * @returns track numbers
  */
-function canonicalOrder(tracks: TrackSet): number[] {
+export function canonicalOrder(tracks: TrackSet): number[] {
   const { trackOffsets, positions, dimensions } = tracks;
   const paths = new Float64Array(countTracks(tracks));
   for (let track = 0; track < paths.length; track++) {

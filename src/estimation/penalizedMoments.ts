@@ -47,13 +47,17 @@ export interface MomentSolution {
   readonly strengths: readonly number[];
   /** Trace of the smoother: how many parameters' worth of freedom the fit used. */
   readonly effectiveParameters: number;
-  /** Ratio of largest to smallest pivot of the final system: a cheap lower bound of its condition number. */
+  /**
+   * Ratio of largest to smallest pivot of the final system with unit diagonal: a cheap lower bound of its condition
+   * number that does not depend on units.
+   */
   readonly conditioning: number;
 }
 
 const FOLDS = 6; // enough for a stable choice; each costs one factorisation per trial strength
 const STRENGTHS = [1e-6, 1e-5, 1e-4, 1e-3, 1e-2, 1e-1, 1, 1e1, 1e2, 1e4]; // relative to the mean information per parameter
 const RIDGE = 1e-10; // relative; keeps directions nobody visited from making the system singular
+const GRAM_RIDGE = 1e-9; // the same for the Gram matrix of the instruments
 
 /**
  * Solves penalised moment conditions, choosing the strengths by block cross-validation.
@@ -70,7 +74,7 @@ export function solvePenalizedMoments(
   known?: readonly number[],
 ): MomentSolution {
   const p = moments.size;
-  const whiten = whiteningOf(moments);
+  const whiten = whiteningOf(moments, groups);
   const folds = foldMoments(
     moments,
     whiten,
@@ -78,7 +82,7 @@ export function solvePenalizedMoments(
   );
   const information = crossProduct(folds.totalMatrix);
   const groupScales = groups.map((group) => informationScale(information, group));
-  const ridge = RIDGE * Math.max(trace(information) / p, Number.MIN_VALUE);
+  const ridge = parameterScales(information, groups).map((scale) => RIDGE * scale);
 
   const strengths = known ? [...known] : groups.map(() => 1e-2);
   if (folds.parts.length > 1) {
@@ -99,9 +103,7 @@ export function solvePenalizedMoments(
     }
   }
 
-  const penalty = penaltyMatrix(p, groups, strengths, groupScales, 0);
-  const system = Matrix.add(information, penalty);
-  for (let i = 0; i < p; i++) system.set(i, i, system.get(i, i) + ridge);
+  const system = Matrix.add(information, penaltyMatrix(groups, strengths, groupScales, ridge));
   const factor = factorize(system);
   const right = folds.totalMatrix.transpose().mmul(folds.totalVector);
   const solution = factor.solve(right);
@@ -128,7 +130,7 @@ export function solvePenalizedMoments(
     bread: Float64Array.from(solveUpperRight(bread, whiten).to1DArray()),
     strengths: [...strengths],
     effectiveParameters: trace(smoother),
-    conditioning: pivotRatio(factor),
+    conditioning: pivotRatio(factor, system),
   };
 }
 
@@ -139,14 +141,28 @@ interface FoldedMoments {
 }
 
 /** Lower-triangular L with L Lᵀ = Gram of the instruments; moments are divided by it so that W becomes the identity. */
-function whiteningOf(moments: MomentBlocks): Matrix {
+function whiteningOf(moments: MomentBlocks, groups: readonly PenaltyGroup[]): Matrix {
   const gram = Matrix.from1DArray(moments.size, moments.size, moments.instrumentGram);
-  const mean = trace(gram) / moments.size;
-  if (!(mean > 0)) {
+  if (!(trace(gram) > 0)) {
     throw new NumericalError('the regression has no usable rows; give longer gap-free tracks');
   }
-  for (let i = 0; i < moments.size; i++) gram.set(i, i, gram.get(i, i) + 1e-9 * mean);
+  const scales = parameterScales(gram, groups);
+  for (let i = 0; i < moments.size; i++) gram.set(i, i, gram.get(i, i) + GRAM_RIDGE * scales[i]);
   return factorize(gram).lowerTriangularMatrix;
+}
+
+/**
+ * The size of each diagonal entry that a ridge is relative to: the mean over its penalty group, the entry itself
+ * outside of any. Parameters of different units never share a scale, so results do not depend on units.
+ */
+function parameterScales(matrix: Matrix, groups: readonly PenaltyGroup[]): Float64Array {
+  const scales = Float64Array.from(matrix.diagonal());
+  for (const group of groups) {
+    const mean = informationScale(matrix, group);
+    for (const offset of group.offsets) scales.fill(mean, offset, offset + group.functionCount);
+  }
+  const fallback = Math.max(trace(matrix) / matrix.rows, Number.MIN_VALUE);
+  return scales.map((scale) => (scale > 0 ? scale : fallback));
 }
 
 function foldMoments(moments: MomentBlocks, whiten: Matrix, foldCount: number): FoldedMoments {
@@ -174,7 +190,7 @@ function crossValidation(
   folds: FoldedMoments,
   groups: readonly PenaltyGroup[],
   scales: readonly number[],
-  ridge: number,
+  ridge: Float64Array,
 ): (strengths: readonly number[]) => number {
   const training = folds.parts.map((part) => {
     const matrix = Matrix.sub(folds.totalMatrix, part.matrix);
@@ -183,7 +199,7 @@ function crossValidation(
   });
   const share = ((folds.parts.length - 1) / folds.parts.length) ** 2; // information left, up to the fixed weight
   return (strengths) => {
-    const penalty = penaltyMatrix(folds.totalMatrix.rows, groups, strengths, scales, ridge).mul(share);
+    const penalty = penaltyMatrix(groups, strengths, scales, ridge).mul(share);
     let score = 0;
     for (const { normal, right, part } of training) {
       const parameters = factorize(Matrix.add(normal, penalty)).solve(right);
@@ -195,14 +211,12 @@ function crossValidation(
 }
 
 function penaltyMatrix(
-  p: number,
   groups: readonly PenaltyGroup[],
   strengths: readonly number[],
   scales: readonly number[],
-  ridge: number,
+  ridge: Float64Array,
 ): Matrix {
-  const penalty = Matrix.zeros(p, p);
-  for (let i = 0; i < p; i++) penalty.set(i, i, ridge);
+  const penalty = Matrix.diag(Array.from(ridge));
   groups.forEach((group, g) => {
     const weight = strengths[g] * scales[g];
     const k = group.functionCount;
@@ -360,9 +374,9 @@ function trace(matrix: Matrix): number {
   return matrix.trace();
 }
 
-function pivotRatio(factor: CholeskyDecomposition): number {
-  const pivots = factor.lowerTriangularMatrix.diagonal();
-  return (Math.max(...pivots) / Math.min(...pivots)) ** 2;
+function pivotRatio(factor: CholeskyDecomposition, system: Matrix): number {
+  const pivots = factor.lowerTriangularMatrix.diagonal().map((pivot, i) => pivot ** 2 / system.get(i, i));
+  return Math.max(...pivots) / Math.min(...pivots);
 }
 
 function addInto(target: Float64Array, source: Float64Array): void {

@@ -8,6 +8,7 @@ import type { Basis } from '../../fields/Basis.js';
 import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
 import { createBasis } from '../../fields/createBasis.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
+import { canonicalOrder } from '../blocks.js';
 import type { EstimationPlan } from '../Estimate.js';
 import { correctFirstOrderInto, correctSecondOrderInto, type LocalCoefficients } from './correctInterval.js';
 
@@ -108,15 +109,23 @@ export function createIntervalCorrection(
   return { correct };
 }
 
-/** Evenly spaced rows of the track store: places weigh as often as they were visited. */
+/** Evenly spaced rows, track after track in canonical order: places weigh as often as they were visited. */
 function pickNodes(tracks: TrackSet): Float64Array {
-  const { dimensions: d, positions } = tracks;
+  const { dimensions: d, positions, trackOffsets } = tracks;
   const n = countPositions(tracks);
   const count = Math.min(n, NODES);
   const nodes = new Float64Array(count * d);
-  for (let node = 0; node < count; node++) {
-    const row = Math.floor(((node + 0.5) * n) / count);
-    for (let axis = 0; axis < d; axis++) nodes[node * d + axis] = positions[row * d + axis];
+  let before = 0;
+  let node = 0;
+  for (const track of canonicalOrder(tracks)) {
+    const rows = trackOffsets[track + 1] - trackOffsets[track];
+    for (; node < count; node++) {
+      const place = Math.floor(((node + 0.5) * n) / count) - before;
+      if (place >= rows) break;
+      const row = trackOffsets[track] + place;
+      for (let axis = 0; axis < d; axis++) nodes[node * d + axis] = positions[row * d + axis];
+    }
+    before += rows;
   }
   return nodes;
 }
