@@ -22,7 +22,7 @@ import {
 } from './firstOrder.js';
 import { createIntervalCorrection } from './intervalCorrection.js';
 import { layOutSecondOrder } from './forceFriction.js';
-import { collectNoiseMoments, type NoiseMoments } from './residuals.js';
+import { checkSecondOrderRuns, collectNoiseMoments, type NoiseMoments } from './residuals.js';
 import { solveForceFriction } from './solveForceFriction.js';
 
 /**
@@ -37,6 +37,7 @@ export function estimateDifferences(tracks: TrackSet, plan: EstimationPlan): Est
   if (!plan.noise.basis) throw new TypeError('the noise needs a basis');
   const noiseBasis = createBasis(plan.noise.basis, dimensions);
   const second = plan.order === 'second';
+  if (second) checkSecondOrderRuns(tracks);
 
   const layout = layOutSecondOrder(plan, dimensions);
   const drift = driftBasis(plan, dimensions);

@@ -147,6 +147,22 @@ export function residualCovarianceRatio(half: number): number {
   return variance / ((1 + e * e) * next - e * (own + e * next));
 }
 
+/** Gap-free positions behind one row of the noise regression: five residuals of three positions each, overlapping. */
+const NOISE_ROW = 7;
+
+/**
+ * Refuses tracks that cannot carry a second-order fit by differences, before anything is computed.
+ *
+ * @throws DataError  where no run has the seven gap-free positions one row of the noise regression needs
+ */
+export function checkSecondOrderRuns(tracks: TrackSet): void {
+  if (longestRun(findRuns(tracks)) >= NOISE_ROW) return;
+  throw new DataError(
+    `no stretch of ${NOISE_ROW} gap-free positions at one interval was found, which the differences estimator needs at second order; record longer tracks or take --estimator likelihood`,
+    { needed: NOISE_ROW },
+  );
+}
+
 /** What the residuals of the regression say of the noise. */
 export interface NoiseMoments extends MomentBlocks {
   /** Shape (p₂, p₁): how the total moment vector moves with the parameters of the first regression. */
@@ -158,8 +174,8 @@ export interface NoiseMoments extends MomentBlocks {
  *
  * Noise components: scalar (mean over the axes), axes, or matrix (upper triangle, symmetrised).
  *
+ * @param tracks  with at least one run of seven positions (`checkSecondOrderRuns`)
  * @param parameters  force–friction parameters, length p₁
- * @throws DataError  where no run has the seven gap-free positions one row needs
  */
 export function collectNoiseMoments(
   tracks: TrackSet,
@@ -183,12 +199,11 @@ export function collectNoiseMoments(
   const runs = findRuns(tracks);
   const run = new RunResiduals(tracks, layout, parameters, longestRun(runs));
   const { residuals } = run;
-  let rows = 0;
 
   for (let r = 0; r < runs.starts.length; r++) {
     const start = runs.starts[r];
     const end = runs.ends[r];
-    if (end - start < 7) continue;
+    if (end - start < NOISE_ROW) continue;
     run.fill(start, end);
     for (let row = start + 3; row < end - 3; row++) {
       const local = (row - start) * dimensions;
@@ -236,14 +251,7 @@ export function collectNoiseMoments(
           }
         }
       }
-      rows++;
     }
-  }
-  if (rows === 0) {
-    throw new DataError(
-      'no stretch of 7 gap-free positions at one interval was found, which the differences estimator needs for the noise; record longer tracks or take --estimator likelihood',
-      { needed: 7 },
-    );
   }
   return { size: p, matrices, vectors, instrumentGram: total, sensitivity };
 }
