@@ -7,6 +7,7 @@ import { CholeskyDecomposition, Matrix } from 'ml-matrix';
 import type { Basis } from '../../fields/Basis.js';
 import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
 import { createBasis } from '../../fields/createBasis.js';
+import { modelFields } from '../../fields/modelParameters.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
 import { canonicalOrder } from '../blocks.js';
 import type { EstimationPlan } from '../Estimate.js';
@@ -46,10 +47,10 @@ export function createIntervalCorrection(
   errorVariance: readonly number[],
 ): IntervalCorrection {
   const { dimensions: d, samplingInterval } = tracks;
-  const nodes = pickNodes(tracks);
+  const fields = modelFields(model);
+  const uniform = fields.every((field) => field.basis.kind === 'constant');
+  const nodes = pickNodes(tracks, uniform ? 1 : NODES);
   const nodeCount = nodes.length / d;
-  const fields: CoefficientField[] =
-    model.order === 'second' ? [model.force, model.friction, model.noise] : [model.drift, model.diffusion];
   const plans = model.order === 'second' ? [plan.force, plan.friction, plan.noise] : [plan.force, plan.noise];
   let rawOffset = 0;
   let modelOffset = 0;
@@ -110,10 +111,10 @@ export function createIntervalCorrection(
 }
 
 /** Evenly spaced rows, track after track in canonical order: places weigh as often as they were visited. */
-function pickNodes(tracks: TrackSet): Float64Array {
+function pickNodes(tracks: TrackSet, most: number): Float64Array {
   const { dimensions: d, positions, trackOffsets } = tracks;
   const n = countPositions(tracks);
-  const count = Math.min(n, NODES);
+  const count = Math.min(n, most);
   const nodes = new Float64Array(count * d);
   let before = 0;
   let node = 0;
