@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { RandomStream, randomStream } from '../../src/numerics/random/RandomStream.js';
+import { type RandomStream, randomStream } from '../../src/numerics/random/RandomStream.js';
 import { normalTail } from '../../src/numerics/special/normal.js';
 
 // Every bound is a number of standard errors of the statistic under the law that is claimed; with fixed seeds the
