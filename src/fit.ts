@@ -8,7 +8,7 @@ import type { Warning } from './errors.js';
 import { chooseEstimator } from './estimation/choose.js';
 import type { Estimate } from './estimation/Estimate.js';
 import { planEstimation } from './estimation/planEstimation.js';
-import { surveyTracks } from './momenta/survey.js';
+import { surveyTracks } from './momenta/surveyTracks.js';
 import { checkTrackLengths } from './tracks/usableTracks.js';
 import { countPositions, countTracks, type TrackSet } from './tracks/TrackSet.js';
 import { sampleTracks } from './tracks/sampleTracks.js';

@@ -35,7 +35,7 @@ export { checkTrackLengths, selectTracks } from './tracks/usableTracks.js';
 
 // survey and momenta
 export type { Survey } from './momenta/Survey.js';
-export { surveyTracks } from './momenta/survey.js';
+export { surveyTracks } from './momenta/surveyTracks.js';
 
 // fit
 export { fitTracks, type FitContext, type FitResult } from './fit.js';

@@ -9,6 +9,11 @@ export interface BlockRange {
   readonly name: string;
   readonly offset: number;
   readonly length: number;
+  /**
+   * Where the numbers belong to places: the occupancy of those places, `perPlace` numbers to one. Places count by how
+   * much of the time is spent there (averaged over all data sets), because the others hold little but scatter.
+   */
+  readonly occupancy?: { readonly offset: number; readonly perPlace: number };
 }
 
 export interface BlockComparison {
@@ -30,7 +35,7 @@ export interface Comparison {
 /**
  * Compares data set 0 (the recording) with the others.
  *
- * Distance of data set i in a block: the mean over its numbers c of (f_ic − mean of the others)² / variance_c.
+ * Distance of data set i in a block: the (occupancy-weighted) mean over its numbers c of (f_ic − mean of the others)² / variance_c.
  * p-values count the data sets whose distance is at least as large, the recording included: (1 + #)/(R + 1). For all
  * blocks together the logarithms of the distances are standardised by the other data sets and the largest is taken:
  * its p-value needs no assumption on how the statistics hang together.
@@ -70,7 +75,8 @@ function countAtLeast(values: ArrayLike<number>, threshold: number, from = 0): n
   return found;
 }
 
-function measureDistances(features: readonly Float64Array[], { offset, length }: BlockRange): Float64Array {
+function measureDistances(features: readonly Float64Array[], block: BlockRange): Float64Array {
+  const { offset, length, occupancy } = block;
   const count = features.length;
   const distances = new Float64Array(count);
   const used = new Float64Array(count);
@@ -92,12 +98,18 @@ function measureDistances(features: readonly Float64Array[], { offset, length }:
     }
     variance /= known - 1;
     if (!(variance > 1e-24 * mean * mean) || variance === 0) continue;
+    let weight = 1;
+    if (occupancy !== undefined) {
+      const place = occupancy.offset + Math.floor((c - offset) / occupancy.perPlace);
+      weight = 0;
+      for (let set = 0; set < count; set++) weight += features[set][place] / count;
+    }
     for (let set = 0; set < count; set++) {
       const value = features[set][c];
       if (Number.isNaN(value)) continue;
       const others = (sum - value) / (known - 1);
-      distances[set] += (value - others) ** 2 / variance;
-      used[set]++;
+      distances[set] += (weight * (value - others) ** 2) / variance;
+      used[set] += weight;
     }
   }
   return distances.map((value, set) => (used[set] > 0 ? value / used[set] : 0));

@@ -12,7 +12,13 @@ import { drawSeries } from './drawSeries.js';
 import { describeReplicateTask } from './describeReplicateTask.js';
 import type { RefitCoefficient, ResimulationResult } from './ResimulationResult.js';
 import { createDesign, type Design, simulateDesign } from './simulateDesign.js';
-import { measureFeatures, planFeatures } from './trackFeatures.js';
+import {
+  type FeatureBlock,
+  type FeatureLayout,
+  findBlock,
+  measureFeatures,
+  planFeatures,
+} from './trackFeatures.js';
 
 export interface ResimulationOptions {
   /** Simulated recordings; at least 19, so that a p-value can reach 0.05. */
@@ -30,6 +36,8 @@ const REPLICATES = 99; // p-values in steps of 0.01
 const FEWEST_REPLICATES = 19;
 const REFITS = 4; // each costs a whole fit; the standard error of the mean is half the scatter of the estimator
 const LEVEL = 0.05;
+
+const MAPS: readonly string[] = ['kinetic-temperature', 'velocity-persistence', 'current'];
 
 const TITLES: Readonly<Record<string, string>> = {
   occupancy: 'where the particles are',
@@ -90,7 +98,9 @@ export async function resimulate(
   );
   const recorded = measureFeatures(layout, tracks.positions);
   const features = [recorded, ...described.map((replicate) => replicate.features)];
-  const blocks = layout.blocks.filter((block) => !block.name.startsWith('curve:'));
+  const blocks = layout.blocks
+    .filter((block) => !block.name.startsWith('curve:'))
+    .map((block) => ({ ...block, occupancy: findOccupancy(layout, block) }));
   const comparison = compareFeatures(features, blocks);
 
   const warnings: Warning[] = design.scenario.warnings.filter(({ code }) => code.startsWith('negative-'));
@@ -120,6 +130,16 @@ export async function resimulate(
     series: drawSeries(layout, features, tracks),
     warnings,
   };
+}
+
+/** The occupancy that weighs a map's cells. */
+function findOccupancy(
+  layout: FeatureLayout,
+  block: FeatureBlock,
+): { offset: number; perPlace: number } | undefined {
+  const places = findBlock(layout, 'occupancy');
+  if (places === undefined || !MAPS.includes(block.name)) return undefined;
+  return { offset: places.offset, perPlace: block.length / places.length };
 }
 
 /** Simulates the fitted coefficients themselves and estimates them again from the simulated recordings. */

@@ -6,7 +6,7 @@ import { join, relative } from 'node:path';
 import { completeStudy } from '../../documents/parseStudy.js';
 import type { StudyInput } from '../../documents/Study.js';
 import { UsageError } from '../../errors.js';
-import { surveyTracks } from '../../momenta/survey.js';
+import { surveyTracks } from '../../momenta/surveyTracks.js';
 import { renderReport } from '../../report/renderReport.js';
 import { formatFitSummary, formatResimulationSummary, formatSurveySummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';

@@ -1,6 +1,6 @@
 /** `survey TRACKS…`: what was recorded, and whether it can carry a fit. */
 
-import { surveyTracks } from '../../momenta/survey.js';
+import { surveyTracks } from '../../momenta/surveyTracks.js';
 import { tabulateMomenta } from '../../momenta/tabulateMomenta.js';
 import { formatSurveySummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';

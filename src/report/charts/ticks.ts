@@ -1,0 +1,45 @@
+/** Round numbers for axes and colour classes. */
+
+/** The smallest of 1, 2, 2.5, 5 × 10ⁿ that is at least `step`; 1 where `step` is not positive. */
+export function roundStepUp(step: number): number {
+  if (!(step > 0) || !Number.isFinite(step)) return 1;
+  const base = 10 ** Math.floor(Math.log10(step));
+  for (const factor of [1, 2, 2.5, 5, 10]) if (factor * base >= step * (1 - 1e-9)) return factor * base;
+  return 10 * base;
+}
+
+/** Smallest and largest finite value; null where there is none. */
+export function findRange(values: Iterable<number>): { low: number; high: number } | null {
+  let low = Number.POSITIVE_INFINITY;
+  let high = Number.NEGATIVE_INFINITY;
+  for (const value of values) {
+    if (!Number.isFinite(value)) continue;
+    if (value < low) low = value;
+    if (value > high) high = value;
+  }
+  return low <= high ? { low, high } : null;
+}
+
+/** Edges of at most `count` equal classes with round bounds that cover low … high. */
+export function roundClasses(low: number, high: number, count: number): number[] {
+  const size = Math.max(Math.abs(low), Math.abs(high)) || 1;
+  // A constant still gets a class of its own width, wide enough that round-off does not split it.
+  const span = Math.max(high - low, size * 1e-3);
+  for (let step = roundStepUp(span / count); ; step = roundStepUp(step * 1.01)) {
+    const first = Math.floor(low / step + 1e-9);
+    const last = Math.max(first + 1, Math.ceil(high / step - 1e-9));
+    if (last - first <= count) {
+      return Array.from({ length: last - first + 1 }, (_, i) => Number(((first + i) * step).toPrecision(12)));
+    }
+  }
+}
+
+/** Decimals that write every multiple of the step between neighbouring edges exactly. */
+export function stepDecimals(edges: readonly number[]): number {
+  const step = (edges[1] ?? 1) - (edges[0] ?? 0);
+  for (let decimals = 0; decimals < 10; decimals++) {
+    if (Math.abs(step * 10 ** decimals - Math.round(step * 10 ** decimals)) < 1e-6 * 10 ** decimals * step)
+      return decimals;
+  }
+  return 10;
+}
