@@ -56,7 +56,7 @@ export async function fitTracks(
   const steps = 4;
 
   progress(0, steps, 'surveying');
-  const survey = surveyTracks(tracks);
+  const survey = surveyTracks(tracks, { localizationError: study.localizationError });
   const order = study.order === 'auto' ? survey.recommendedOrder : study.order;
   const { tracks: usable, warnings: lengthWarnings } = checkTrackLengths(tracks, order);
   const visited = describeVisited(usable);

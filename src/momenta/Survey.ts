@@ -31,7 +31,11 @@ export interface Survey extends Recording {
   readonly errorOverDisplacement: (number | null)[];
   /** Relaxation time of the velocity, 1/friction; null where no velocity memory is resolved. */
   readonly relaxationTime: number | null;
-  readonly relaxationTimeInterval: { readonly low: number; readonly high: number; readonly level: number } | null;
+  readonly relaxationTimeInterval: {
+    readonly low: number;
+    readonly high: number;
+    readonly level: number;
+  } | null;
   /** Friction × sampling interval, dimensionless; null with the relaxation time. */
   readonly frictionTimesInterval: number | null;
   /** Per axis: variance of the velocity (kinetic temperature per mass), length²/time²; null where not resolved. */
@@ -43,6 +47,12 @@ export interface Survey extends Recording {
   readonly diffusion: (number | null)[];
   /** Per axis: whether the displacements show the pull of a trap. */
   readonly trapped: boolean[];
+  /** Slope of log mean squared displacement against log lag over those lags (frames); null with too few of them. */
+  readonly spreadingExponent: {
+    readonly value: number;
+    readonly fromLag: number;
+    readonly toLag: number;
+  } | null;
   /** Per axis: mean velocity over all tracks and its standard error, length/time. */
   readonly meanVelocity: number[];
   readonly meanVelocityStandardError: number[] | null;
@@ -55,5 +65,7 @@ export interface Survey extends Recording {
   readonly suspectJumps: number;
   /** Correlation of simultaneous displacements of different tracks; null where too few are simultaneous. */
   readonly commonDriftCorrelation: number | null;
+  /** The same in its standard errors. */
+  readonly commonDriftStandardErrors: number | null;
   readonly warnings: Warning[];
 }

@@ -49,7 +49,9 @@ function measureSteps(tracks: TrackSet, tolerance: number, order: 1 | 2): Float6
     for (let i = 0; i < rows.length; i++) {
       const at = rows[i] * dimensions + axis;
       const step = positions[at + dimensions] - positions[at];
-      values[i] = Math.abs(order === 1 ? step : positions[at + 2 * dimensions] - positions[at + dimensions] - step);
+      values[i] = Math.abs(
+        order === 1 ? step : positions[at + 2 * dimensions] - positions[at + dimensions] - step,
+      );
     }
     const median = findMedian(values.slice());
     if (!(median > 0)) continue;
@@ -77,7 +79,8 @@ function findOutliers(size: Float64Array, tracks: TrackSet, order: 1 | 2): numbe
     for (let shift = -NEIGHBOURS - order + 1; shift <= NEIGHBOURS + order - 1; shift++) {
       if (Math.abs(shift) < order) continue; // neighbouring second differences share the jump itself
       const other = row + shift;
-      if (other < trackOffsets[track] || other >= trackOffsets[track + 1] || Number.isNaN(size[other])) continue;
+      if (other < trackOffsets[track] || other >= trackOffsets[track + 1] || Number.isNaN(size[other]))
+        continue;
       if (found < neighbours.length) neighbours[found++] = size[other];
     }
     const local = found >= NEIGHBOURS ? findMedian(neighbours.slice(0, found)) : overall;

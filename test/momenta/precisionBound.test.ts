@@ -1,5 +1,4 @@
 import { describe, expect, it } from 'vitest';
-import { UsageError } from '../../src/errors.js';
 import { frictionPrecisionBound } from '../../src/momenta/precisionBound.js';
 
 // Evaluated beforehand from Whittle's formula (Whittle 1953) by an independent program, 40 × 1000 frames, T = 1;

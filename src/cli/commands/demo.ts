@@ -54,7 +54,7 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
   const paths = [relative(terminal.streams.cwd, tracksPath)];
 
   const recording = await readRecording(paths, study, terminal);
-  const survey = surveyTracks(recording.tracks);
+  const survey = surveyTracks(recording.tracks, { localizationError: study.localizationError });
   await keep('survey.json', formatJson(survey));
   await say(`${formatSurveySummary(survey, terminal.summaryStyle)}\n`);
 

@@ -17,7 +17,7 @@ export async function runSurvey({ operands, options, terminal }: Call): Promise<
   checkResultPlace(options.output, operands, terminal);
   checkResultPlace(momenta, operands, terminal);
   const recording = await readRecording(operands, study, terminal);
-  const survey = surveyTracks(recording.tracks);
+  const survey = surveyTracks(recording.tracks, { localizationError: study.localizationError });
   const warnings = [...recording.warnings, ...survey.warnings];
   for (const warning of warnings) terminal.warn(warning);
   if (momenta !== undefined) {
