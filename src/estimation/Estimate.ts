@@ -12,6 +12,11 @@ import type { Blocks } from './blocks.js';
 export interface FieldPlan {
   readonly basis: BasisSpec | null;
   readonly form: FieldForm;
+  /**
+   * `none`: no roughness penalty, so that smooth averages of the coefficient are free of smoothing bias (tests of
+   * hypotheses ask for this); default: penalised, with the strength chosen from the data.
+   */
+  readonly smoothing?: 'penalized' | 'none';
 }
 
 /** What to estimate. At first order `force` plans the drift, `noise` the diffusion, and `friction` is unused. */

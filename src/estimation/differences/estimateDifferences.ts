@@ -42,8 +42,8 @@ export function estimateDifferences(tracks: TrackSet, plan: EstimationPlan): Est
   const layout = layOutSecondOrder(plan, dimensions);
   const drift = driftBasis(plan, dimensions);
   const groups: PenaltyGroup[] = [];
-  if (layout.force) pushGroup(groups, layout.force, 0, dimensions);
-  if (second && layout.friction)
+  if (layout.force && isPenalized(plan.force)) pushGroup(groups, layout.force, 0, dimensions);
+  if (second && layout.friction && isPenalized(plan.friction))
     pushGroup(groups, layout.friction, layout.frictionOffset, layout.frictionComponents);
 
   let motion: MotionPart = NO_MOTION;
@@ -71,7 +71,8 @@ export function estimateDifferences(tracks: TrackSet, plan: EstimationPlan): Est
     moments = diffusion;
   }
   const noiseGroups: PenaltyGroup[] = [];
-  pushGroup(noiseGroups, noiseBasis, 0, moments.size / noiseBasis.functionCount);
+  if (isPenalized(plan.noise))
+    pushGroup(noiseGroups, noiseBasis, 0, moments.size / noiseBasis.functionCount);
   const noise = solvePenalizedMoments(moments, noiseGroups);
 
   const parameters = joined(motion.parameters, noise.parameters);
@@ -123,6 +124,10 @@ const UNCONVERGED: Warning = {
   message:
     'localization error and friction did not settle on each other; give the localization error with --localization-error, or record more positions',
 };
+
+function isPenalized(field: FieldPlan): boolean {
+  return field.smoothing !== 'none';
+}
 
 function pushGroup(groups: PenaltyGroup[], basis: Basis, offset: number, copies: number): void {
   const roughness = basis.roughness();
