@@ -23,6 +23,8 @@ export const QUANTITY_POWERS = {
   temperature: [2, -2],
   drift: [1, -1],
   diffusion: [2, -1],
+  forceCurl: [0, -2],
+  driftCurl: [0, -1],
 } as const satisfies Record<string, readonly [number, number]>;
 
 export type Quantity = keyof typeof QUANTITY_POWERS;
