@@ -18,7 +18,8 @@ import { findRuns, longestRun } from '../../tracks/runs.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { EstimationPlan } from '../Estimate.js';
 import type { MomentBlocks } from '../penalizedMoments.js';
-import { type NoiseMoments, noisePairs } from './residuals.js';
+import { noisePairs, ResidualProducts } from './residualProducts.js';
+import type { NoiseMoments } from './residuals.js';
 import {
   addBasisRow,
   addOuterProducts,
@@ -39,7 +40,7 @@ export function driftBasis(plan: EstimationPlan, dimensions: number): Basis | nu
  * @throws DataError  where no run has the three gap-free positions one row needs
  */
 export function collectDriftMoments(tracks: TrackSet, plan: EstimationPlan, basis: Basis): MomentBlocks {
-  const { positions, dimensions, samplingInterval: dt } = tracks;
+  const { positions, dimensions } = tracks;
   const k = basis.functionCount;
   const p = dimensions * k;
   const { count, ofPosition } = plan.blocks;
@@ -49,38 +50,56 @@ export function collectDriftMoments(tracks: TrackSet, plan: EstimationPlan, basi
   const recent = new RecentBasis(basis);
   const regressors = new SparseRow(basis.support);
   const instruments = new SparseRow(basis.support);
+  const rows = visitDriftRows(tracks, (row, velocity, fresh) => {
+    for (let other = fresh ? row - 1 : row; other <= row; other++)
+      recent.evaluate(positions, other, dimensions);
+    const block = ofPosition[row];
+    for (let axis = 0; axis < dimensions; axis++) {
+      regressors.clear();
+      instruments.clear();
+      regressors.append(axis * k, recent, row, 1);
+      instruments.append(axis * k, recent, row - 1, 1);
+      addOuterProducts(
+        matrices[block],
+        vectors[block],
+        instrumentGram,
+        p,
+        instruments,
+        regressors,
+        velocity[axis],
+      );
+    }
+  });
+  if (rows === 0) throw tooShort();
+  return { size: p, matrices, vectors, instrumentGram };
+}
+
+/**
+ * Visits the rows of the drift regression, run after run: those with a neighbour before and after.
+ *
+ * @param visit  gets the row, the velocity (y_{k+1} − y_k)/Δ of each axis, and whether the row is the first of its run
+ * @returns how many rows there were
+ */
+export function visitDriftRows(
+  tracks: TrackSet,
+  visit: (row: number, velocity: Float64Array, fresh: boolean) => void,
+): number {
+  const { positions, dimensions, samplingInterval: dt } = tracks;
+  const velocity = new Float64Array(dimensions);
   const runs = findRuns(tracks);
   let rows = 0;
   for (let run = 0; run < runs.starts.length; run++) {
-    const start = runs.starts[run];
-    const end = runs.ends[run];
-    if (end - start < 3) continue;
-    recent.evaluate(positions, start, dimensions);
-    for (let row = start + 1; row < end - 1; row++) {
-      recent.evaluate(positions, row, dimensions);
+    const first = runs.starts[run] + 1;
+    for (let row = first; row < runs.ends[run] - 1; row++) {
       for (let axis = 0; axis < dimensions; axis++) {
         const at = row * dimensions + axis;
-        regressors.clear();
-        instruments.clear();
-        regressors.append(axis * k, recent, row, 1);
-        instruments.append(axis * k, recent, row - 1, 1);
-        const block = ofPosition[row];
-        const velocity = (positions[at + dimensions] - positions[at]) / dt;
-        addOuterProducts(
-          matrices[block],
-          vectors[block],
-          instrumentGram,
-          p,
-          instruments,
-          regressors,
-          velocity,
-        );
+        velocity[axis] = (positions[at + dimensions] - positions[at]) / dt;
       }
+      visit(row, velocity, row === first);
       rows++;
     }
   }
-  if (rows === 0) throw tooShort();
-  return { size: p, matrices, vectors, instrumentGram };
+  return rows;
 }
 
 export interface DiffusionMoments extends NoiseMoments {
@@ -105,97 +124,52 @@ export function collectDiffusionMoments(
   const { positions, dimensions, samplingInterval: dt } = tracks;
   const { count: blockCount, ofPosition } = plan.blocks;
   const k = basis.functionCount;
-  const pairs = noisePairs(plan.noise.form, dimensions);
-  const p = pairs.length * k;
+  const components = noisePairs(plan.noise.form, dimensions).length;
+  const p = components * k;
   const matrices = Array.from({ length: blockCount }, () => new Float64Array(p * p));
   const vectors = Array.from({ length: blockCount }, () => new Float64Array(p));
   const total = new Float64Array(p * p);
-  const driftSize = drift?.functionCount ?? 0;
   const sensitivity = new Float64Array(p * parameters.length);
   const sums = new Float64Array(blockCount * dimensions);
   const weights = new Float64Array(blockCount * dimensions);
   const slopeAt = createOwnSlopes(drift, parameters, positions, dimensions);
-  const recent = new RecentBasis(drift);
-  const driftRow = new SparseRow(drift?.support ?? 0);
   const indices = new Int32Array(basis.support);
   const values = new Float64Array(basis.support);
-  const runs = findRuns(tracks);
-  const residuals = new Float64Array(longestRun(runs) * dimensions);
-  const windows = new Float64Array(dimensions);
-  let rows = 0;
-  for (let run = 0; run < runs.starts.length; run++) {
-    const start = runs.starts[run];
-    const end = runs.ends[run];
-    if (end - start < 4) continue;
-    for (let row = start; row < end - 1; row++) {
-      recent.evaluate(positions, row, dimensions);
-      for (let axis = 0; axis < dimensions; axis++) {
-        const at = row * dimensions + axis;
-        driftRow.clear();
-        driftRow.append(axis * driftSize, recent, row, 1);
-        let fitted = 0;
-        for (let i = 0; i < driftRow.length; i++)
-          fitted += driftRow.values[i] * parameters[driftRow.indices[i]];
-        residuals[(row - start) * dimensions + axis] =
-          (positions[at + dimensions] - positions[at]) / dt - fitted;
-      }
+  visitDiffusionRows(tracks, plan.noise.form, drift, parameters, (row, products, neighbours, driftRowOf) => {
+    const block = ofPosition[row];
+    const found = basis.evaluateInto(positions, row * dimensions, indices, values);
+    for (let axis = 0; axis < dimensions; axis++) {
+      sums[block * dimensions + axis] -= neighbours[axis] * dt * dt;
+      weights[block * dimensions + axis] += 1 + slopeAt(row + 1, axis) * dt;
     }
-    for (let row = start + 1; row < end - 2; row++) {
-      const local = (row - start) * dimensions;
-      const block = ofPosition[row];
-      const found = basis.evaluateInto(positions, row * dimensions, indices, values);
-      recent.evaluate(positions, row, dimensions);
-      for (let axis = 0; axis < dimensions; axis++) {
-        const at = local + axis;
-        windows[axis] = residuals[at - dimensions] + residuals[at] + residuals[at + dimensions];
-        sums[block * dimensions + axis] -= residuals[at] * residuals[at + dimensions] * dt * dt;
-        weights[block * dimensions + axis] += 1 + slopeAt(row + 1, axis) * dt;
-      }
-      for (let component = 0; component < pairs.length; component++) {
-        let response = 0;
-        for (const [a, b] of pairs[component]) {
-          response += (residuals[local + a] * windows[b] + residuals[local + b] * windows[a]) / 2;
-        }
-        response *= dt / (2 * pairs[component].length);
-        addBasisRow(
-          matrices[block],
-          vectors[block],
-          total,
-          p,
+    for (let component = 0; component < components; component++) {
+      addBasisRow(
+        matrices[block],
+        vectors[block],
+        total,
+        p,
+        component * k,
+        indices,
+        values,
+        found,
+        products.responses[component],
+      );
+      for (let axis = 0; drift && axis < dimensions; axis++) {
+        const slope = products.slopes[component * dimensions + axis];
+        if (slope === 0) continue;
+        addSensitivity(
+          sensitivity,
+          parameters.length,
           component * k,
           indices,
           values,
           found,
-          response,
+          driftRowOf(axis),
+          -slope,
         );
-        if (!drift) continue;
-        for (const [a, b] of pairs[component]) {
-          for (const [axis, other] of a === b
-            ? [[a, b]]
-            : [
-                [a, b],
-                [b, a],
-              ]) {
-            driftRow.clear();
-            driftRow.append(axis * driftSize, recent, row, 1);
-            const weight = ((a === b ? -1 : -0.5) * windows[other] * dt) / pairs[component].length;
-            addSensitivity(
-              sensitivity,
-              parameters.length,
-              component * k,
-              indices,
-              values,
-              found,
-              driftRow,
-              weight,
-            );
-          }
-        }
       }
-      rows++;
     }
-  }
-  if (rows === 0) throw tooShort();
+  });
   return {
     size: p,
     matrices,
@@ -207,9 +181,80 @@ export function collectDiffusionMoments(
   };
 }
 
-function tooShort(): DataError {
+/**
+ * What is done with one row of the diffusion regression.
+ *
+ * @param products  with the responses (Δ/2) Σ_{|j|≤1} e_k e_{k+j} of the row
+ * @param neighbours  length d: e_k e_{k+1} per axis, length²/time²
+ * @param driftRowOf  regressors of the drift along an axis
+ */
+export type DiffusionVisitor = (
+  row: number,
+  products: ResidualProducts,
+  neighbours: Float64Array,
+  driftRowOf: (axis: number) => SparseRow,
+) => void;
+
+/**
+ * Visits the rows of the diffusion regression, run after run.
+ *
+ * @param form  of the diffusion
+ * @param drift  basis of the drift, or null
+ * @param parameters  drift parameters, length p₁ (empty without a drift)
+ * @throws DataError  where no run has the four gap-free positions one row needs
+ */
+export function visitDiffusionRows(
+  tracks: TrackSet,
+  form: string,
+  drift: Basis | null,
+  parameters: Float64Array,
+  visit: DiffusionVisitor,
+): void {
+  const { positions, dimensions, samplingInterval: dt } = tracks;
+  const driftSize = drift?.functionCount ?? 0;
+  const products = new ResidualProducts(form, dimensions, 1, dt / 2);
+  const recent = new RecentBasis(drift);
+  const driftRow = new SparseRow(drift?.support ?? 0);
+  const driftRowOf = (row: number, axis: number): SparseRow => {
+    driftRow.clear();
+    driftRow.append(axis * driftSize, recent, row, 1);
+    return driftRow;
+  };
+  const runs = findRuns(tracks);
+  const residuals = new Float64Array(longestRun(runs) * dimensions);
+  const neighbours = new Float64Array(dimensions);
+  let rows = 0;
+  for (let run = 0; run < runs.starts.length; run++) {
+    const start = runs.starts[run];
+    const end = runs.ends[run];
+    if (end - start < 4) continue;
+    for (let row = start; row < end - 1; row++) {
+      recent.evaluate(positions, row, dimensions);
+      for (let axis = 0; axis < dimensions; axis++) {
+        const at = row * dimensions + axis;
+        const { indices, values, length } = driftRowOf(row, axis);
+        let fitted = 0;
+        for (let i = 0; i < length; i++) fitted += values[i] * parameters[indices[i]];
+        residuals[(row - start) * dimensions + axis] =
+          (positions[at + dimensions] - positions[at]) / dt - fitted;
+      }
+    }
+    for (let row = start + 1; row < end - 2; row++) {
+      const at = (row - start) * dimensions;
+      recent.evaluate(positions, row, dimensions);
+      products.fill(residuals, row - start);
+      for (let axis = 0; axis < dimensions; axis++)
+        neighbours[axis] = residuals[at + axis] * residuals[at + axis + dimensions];
+      visit(row, products, neighbours, (axis) => driftRowOf(row, axis));
+      rows++;
+    }
+  }
+  if (rows === 0) throw tooShort();
+}
+
+export function tooShort(): DataError {
   return new DataError(
-    'no stretch of 4 gap-free positions at one interval was found, which the differences estimator needs at first order; record longer tracks or take --estimator likelihood',
+    'no stretch of 4 gap-free positions at one interval was found, which regression on differences needs at first order; record longer tracks or take --estimator likelihood',
     { needed: 4 },
   );
 }

@@ -148,51 +148,82 @@ export function collectForceFrictionMoments(
   const instrumentGram = new Float64Array(p * p);
   const builder = new RowBuilder(layout);
   const { regressors, instruments } = builder;
+  const rows = visitAccelerations(tracks, lag, lag + 1, (row, velocity, earlier, fresh) => {
+    for (let other = fresh ? row - 2 : row; other <= row; other++) builder.evaluate(positions, other);
+    const block = ofPosition[row];
+    for (let axis = 0; axis < dimensions; axis++) {
+      builder.fill(regressors, axis, row, velocity, -1);
+      builder.fill(instruments, axis, row - 2, earlier, -1);
+      const acceleration = secondDifference(positions, row * dimensions + axis, dimensions) / (dt * dt);
+      addOuterProducts(
+        matrices[block],
+        vectors[block],
+        instrumentGram,
+        p,
+        instruments,
+        regressors,
+        acceleration,
+      );
+    }
+    builder.addFrictionProducts(frictionSums[block], frictionProducts[block], row);
+  });
+  if (rows === 0) throw tooShortForAccelerations(lag + 3);
+  return { size: p, matrices, vectors, instrumentGram, frictionSums, frictionProducts };
+}
+
+/**
+ * What is done with one row of the force–friction regression.
+ *
+ * @param velocity  length d; central velocity at the row, length/time
+ * @param earlier  length d; velocity instrument, length/time
+ * @param fresh  whether the row is the first of its run
+ */
+export type AccelerationVisitor = (
+  row: number,
+  velocity: Float64Array,
+  earlier: Float64Array,
+  fresh: boolean,
+) => void;
+
+/**
+ * Visits the rows of the force–friction regression, run after run.
+ *
+ * @param lag  of the velocity instrument: (y_{k−lag} − y_{k−lag−1})/Δ
+ * @param history  gap-free positions wanted before a row, at least lag + 1
+ * @returns how many rows there were
+ */
+export function visitAccelerations(
+  tracks: TrackSet,
+  lag: 1 | 2,
+  history: number,
+  visit: AccelerationVisitor,
+): number {
+  const { positions, dimensions, samplingInterval: dt } = tracks;
   const velocity = new Float64Array(dimensions);
   const earlier = new Float64Array(dimensions);
   const runs = findRuns(tracks);
   let rows = 0;
-
   for (let run = 0; run < runs.starts.length; run++) {
-    const start = runs.starts[run];
-    const end = runs.ends[run];
-    if (end - start < lag + 3) continue;
-    const first = start + lag + 1;
-    for (let row = first - 2; row < first; row++) builder.evaluate(positions, row);
-    for (let row = first; row < end - 1; row++) {
-      builder.evaluate(positions, row);
-      const here = row * dimensions;
+    const first = runs.starts[run] + history;
+    for (let row = first; row < runs.ends[run] - 1; row++) {
       fillVelocity(velocity, positions, row, dimensions, dt);
       for (let axis = 0; axis < dimensions; axis++) {
-        const at = here + axis - lag * dimensions;
+        const at = (row - lag) * dimensions + axis;
         earlier[axis] = (positions[at] - positions[at - dimensions]) / dt;
       }
-      const block = ofPosition[row];
-      for (let axis = 0; axis < dimensions; axis++) {
-        builder.fill(regressors, axis, row, velocity, -1);
-        builder.fill(instruments, axis, row - 2, earlier, -1);
-        const acceleration = secondDifference(positions, here + axis, dimensions) / (dt * dt);
-        addOuterProducts(
-          matrices[block],
-          vectors[block],
-          instrumentGram,
-          p,
-          instruments,
-          regressors,
-          acceleration,
-        );
-      }
-      builder.addFrictionProducts(frictionSums[block], frictionProducts[block], row);
+      visit(row, velocity, earlier, row === first);
       rows++;
     }
   }
-  if (rows === 0) {
-    throw new DataError(
-      `no stretch of ${lag + 3} gap-free positions at one interval was found, which the differences estimator needs at second order; record longer tracks or take --estimator likelihood`,
-      { needed: lag + 3 },
-    );
-  }
-  return { size: p, matrices, vectors, instrumentGram, frictionSums, frictionProducts };
+  return rows;
+}
+
+/** @param needed  gap-free positions one row needs */
+export function tooShortForAccelerations(needed: number): DataError {
+  return new DataError(
+    `no stretch of ${needed} gap-free positions at one interval was found, which regression on differences needs at second order; record longer tracks or take --estimator likelihood`,
+    { needed },
+  );
 }
 
 /** Central velocity at a row, length/time. */

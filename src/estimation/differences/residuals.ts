@@ -9,6 +9,7 @@ import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { EstimationPlan } from '../Estimate.js';
 import type { MomentBlocks } from '../penalizedMoments.js';
 import { fillVelocity, RowBuilder, secondDifference, type SecondOrderLayout } from './forceFriction.js';
+import { noisePairs, ResidualProducts } from './residualProducts.js';
 import { addBasisRow, addSensitivity, createOwnSlopes, type SparseRow } from './sparseRows.js';
 
 /** Residuals of the regression along one run, with the friction seen at each row. */
@@ -158,7 +159,7 @@ const NOISE_ROW = 7;
 export function checkSecondOrderRuns(tracks: TrackSet): void {
   if (longestRun(findRuns(tracks)) >= NOISE_ROW) return;
   throw new DataError(
-    `no stretch of ${NOISE_ROW} gap-free positions at one interval was found, which the differences estimator needs at second order; record longer tracks or take --estimator likelihood`,
+    `no stretch of ${NOISE_ROW} gap-free positions at one interval was found, which regression on differences needs at second order; record longer tracks or take --estimator likelihood`,
     { needed: NOISE_ROW },
   );
 }
@@ -184,82 +185,71 @@ export function collectNoiseMoments(
   basis: Basis,
   parameters: Float64Array,
 ): NoiseMoments {
-  const { positions, dimensions, samplingInterval: dt } = tracks;
+  const { positions, dimensions } = tracks;
   const { count, ofPosition } = plan.blocks;
   const k = basis.functionCount;
-  const pairs = noisePairs(plan.noise.form, dimensions);
-  const p = pairs.length * k;
+  const components = noisePairs(plan.noise.form, dimensions).length;
+  const p = components * k;
   const matrices = Array.from({ length: count }, () => new Float64Array(p * p));
   const vectors = Array.from({ length: count }, () => new Float64Array(p));
   const total = new Float64Array(p * p);
   const sensitivity = new Float64Array(p * layout.size);
   const indices = new Int32Array(basis.support);
   const values = new Float64Array(basis.support);
-  const windows = new Float64Array(dimensions);
+  visitNoiseRows(tracks, plan.noise.form, layout, parameters, (row, products, regressorsOf) => {
+    const block = ofPosition[row];
+    const found = basis.evaluateInto(positions, row * dimensions, indices, values);
+    products.responses.forEach((response, component) => {
+      addBasisRow(matrices[block], vectors[block], total, p, component * k, indices, values, found, response);
+    });
+    for (let axis = 0; axis < dimensions; axis++) {
+      const regressors = regressorsOf(axis);
+      for (let component = 0; component < components; component++) {
+        const slope = products.slopes[component * dimensions + axis];
+        if (slope === 0) continue;
+        addSensitivity(sensitivity, layout.size, component * k, indices, values, found, regressors, -slope);
+      }
+    }
+  });
+  return { size: p, matrices, vectors, instrumentGram: total, sensitivity };
+}
+
+/**
+ * What is done with one row of the noise regression.
+ *
+ * @param products  with the responses Δ Σ_{|j|≤2} e_k e_{k+j} of the row
+ * @param regressorsOf  regressors of the force–friction regression along an axis; ask for the axes in order, from 0 on
+ */
+export type NoiseVisitor = (
+  row: number,
+  products: ResidualProducts,
+  regressorsOf: (axis: number) => SparseRow,
+) => void;
+
+/**
+ * Visits the rows of the noise regression, run after run.
+ *
+ * @param form  of the noise
+ * @param parameters  force–friction parameters, length p₁
+ */
+export function visitNoiseRows(
+  tracks: TrackSet,
+  form: string,
+  layout: SecondOrderLayout,
+  parameters: Float64Array,
+  visit: NoiseVisitor,
+): void {
+  const products = new ResidualProducts(form, tracks.dimensions, 2, tracks.samplingInterval);
   const runs = findRuns(tracks);
   const run = new RunResiduals(tracks, layout, parameters, longestRun(runs));
-  const { residuals } = run;
-
   for (let r = 0; r < runs.starts.length; r++) {
     const start = runs.starts[r];
     const end = runs.ends[r];
     if (end - start < NOISE_ROW) continue;
     run.fill(start, end);
     for (let row = start + 3; row < end - 3; row++) {
-      const local = (row - start) * dimensions;
-      const block = ofPosition[row];
-      const found = basis.evaluateInto(positions, row * dimensions, indices, values);
-      for (let axis = 0; axis < dimensions; axis++) {
-        windows[axis] = 0;
-        for (let j = -2; j <= 2; j++) windows[axis] += residuals[local + axis + j * dimensions];
-      }
-      for (let component = 0; component < pairs.length; component++) {
-        let response = 0;
-        for (const [a, b] of pairs[component]) {
-          response += (residuals[local + a] * windows[b] + residuals[local + b] * windows[a]) / 2;
-        }
-        const share = dt / pairs[component].length;
-        addBasisRow(
-          matrices[block],
-          vectors[block],
-          total,
-          p,
-          component * k,
-          indices,
-          values,
-          found,
-          share * response,
-        );
-      }
-      for (let axis = 0; axis < dimensions; axis++) {
-        const regressors = run.rowOf(row, axis, axis === 0);
-        for (let component = 0; component < pairs.length; component++) {
-          for (const [a, b] of pairs[component]) {
-            if (a !== axis && b !== axis) continue;
-            const other = a === axis ? b : a;
-            const weight = ((a === b ? -2 : -1) * windows[other] * dt) / pairs[component].length;
-            addSensitivity(
-              sensitivity,
-              layout.size,
-              component * k,
-              indices,
-              values,
-              found,
-              regressors,
-              weight,
-            );
-          }
-        }
-      }
+      products.fill(run.residuals, row - start);
+      visit(row, products, (axis) => run.rowOf(row, axis, axis === 0));
     }
   }
-  return { size: p, matrices, vectors, instrumentGram: total, sensitivity };
-}
-
-/** Axis pairs whose residual products make up each noise component. */
-export function noisePairs(form: string, dimensions: number): [number, number][][] {
-  const axes = Array.from({ length: dimensions }, (_, axis) => axis);
-  if (form === 'axes') return axes.map((axis) => [[axis, axis]]);
-  if (form === 'matrix') return axes.flatMap((a) => axes.slice(a).map((b): [number, number][] => [[a, b]]));
-  return [axes.map((axis): [number, number] => [axis, axis])];
 }
