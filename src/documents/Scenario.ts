@@ -8,19 +8,65 @@ import { fieldSchema } from './fields.js';
 
 const numbers = z.array(z.number());
 
+const form = z
+  .enum(['vector', 'scalar', 'axes', 'matrix'])
+  .describe(
+    'components that follow: vector (force, drift) one per axis; scalar one for all axes; axes one per axis; matrix row by row, all of them for friction, xx, xy, …, yy, … (upper triangle) for noise and diffusion',
+  );
 const formulaField = z
   .strictObject({
-    form: z.enum(['vector', 'scalar', 'axes', 'matrix']).describe('as in fit files: which components follow'),
-    formulas: z.array(z.string()).describe('one formula per component, of x, y, z and the named parameters'),
+    form,
+    formulas: z
+      .array(z.string())
+      .describe(
+        'one formula per component, of x, y, z and the named parameters: numbers, + - * / ^, parentheses, elementary functions',
+      ),
   })
   .describe('a coefficient written as formulas');
 const constantField = z
   .strictObject({
-    form: z.enum(['vector', 'scalar', 'axes', 'matrix']).describe('as in fit files: which components follow'),
+    form,
     values: numbers.describe('one number per component'),
   })
   .describe('a coefficient that is the same everywhere');
 const coefficient = z.union([fieldSchema, formulaField, constantField]);
+
+/** Standing conditions of a unique stationary law: see `assessStanding`. */
+const standingSchema = z.strictObject({
+  conditions: z
+    .array(
+      z.strictObject({
+        name: z.string().describe('stable name of the condition'),
+        title: z.string().describe('what is asked, in words'),
+        verdict: z.enum(['holds', 'fails', 'unknown']).describe('unknown: cannot be told'),
+        value: z.number().nullable().describe('the number the verdict rests on, or null'),
+        place: numbers.nullable().describe('where that number is met, length, or null'),
+        note: z.string().describe('one sentence: number, unit, place and reason'),
+      }),
+    )
+    .describe('sufficient conditions for one stationary law, approached exponentially fast'),
+  relaxation: z
+    .strictObject({
+      time: z
+        .number()
+        .nullable()
+        .describe('slowest relaxation time of the whole process, time; null: not resolved'),
+      low: z.number().describe('lower end of its interval, time'),
+      high: z.number().nullable().describe('upper end of its interval, time; null: not bounded'),
+      samples: z
+        .strictObject({
+          value: z.number().describe('best value'),
+          low: z.number().describe('lower end of its interval'),
+          high: z.number().describe('upper end of its interval'),
+        })
+        .nullable()
+        .describe('effective number of independent samples in a recording of the observation’s size'),
+      confidence: z.number().describe('level of the intervals'),
+      note: z.string().describe('how it was measured, in one sentence'),
+    })
+    .nullable()
+    .describe('how fast the law is approached; null where the conditions do not all hold'),
+});
 
 export const scenarioSchema = z.strictObject({
   format: z.literal('wanderlaw-scenario').describe('says what the file is'),
@@ -28,15 +74,20 @@ export const scenarioSchema = z.strictObject({
   title: z.string().default('').describe('one line for people'),
   dimensions: z.int().min(1).max(3).describe('number of coordinates: x; x and y; x, y and z'),
   units: z
-    .strictObject({ length: z.string().nullable(), time: z.string().nullable() })
+    .strictObject({
+      length: z.string().nullable().describe('label of the length unit, or null'),
+      time: z.string().nullable().describe('label of the time unit, or null'),
+    })
     .default({ length: null, time: null })
-    .describe('labels of the length and time units, or null'),
+    .describe('labels only: every number of the file is in these units'),
   mass: z
     .number()
     .positive()
     .nullable()
     .default(null)
-    .describe('mass of a particle, where forces are wanted in mass units'),
+    .describe(
+      'mass of a particle, for reports in mass units; force, friction and noise are always per unit mass',
+    ),
   order: z
     .enum(['first', 'second'])
     .describe('second: velocities are remembered between frames; first: they are not'),
@@ -58,11 +109,13 @@ export const scenarioSchema = z.strictObject({
   parameters: z.record(z.string(), z.number()).default({}).describe('named numbers the formulas may use'),
   coefficients: z
     .strictObject({
-      force: coefficient.optional(),
-      friction: coefficient.optional(),
-      noise: coefficient.optional(),
-      drift: coefficient.optional(),
-      diffusion: coefficient.optional(),
+      force: coefficient.optional().describe('force per mass, length/time² (second order)'),
+      friction: coefficient.optional().describe('friction, 1/time (second order)'),
+      noise: coefficient
+        .optional()
+        .describe('noise σσᵀ, the growth of the velocity variance, length²/time³ (second order)'),
+      drift: coefficient.optional().describe('drift in the reading given, length/time (first order)'),
+      diffusion: coefficient.optional().describe('diffusion, length²/time (first order)'),
     })
     .describe('force, friction and noise at second order; drift and diffusion at first'),
   continuation: z
@@ -70,7 +123,7 @@ export const scenarioSchema = z.strictObject({
       kind: z
         .enum(['hold', 'fade', 'confine'])
         .describe(
-          'outside the visited region: hold the edge value; fade to the mean over `width`; hold, with a restoring force of strength `stiffness`',
+          'outside the visited box: hold the edge value; fade to a constant within `width`; confine: hold, with a restoring force of strength `stiffness`',
         ),
       width: z
         .number()
@@ -78,17 +131,34 @@ export const scenarioSchema = z.strictObject({
         .nullable()
         .default(null)
         .describe('length over which coefficients fade (fade)'),
+      towards: z
+        .strictObject({
+          force: numbers.optional().describe('components as in coefficients.force'),
+          friction: numbers.optional().describe('components as in coefficients.friction'),
+          noise: numbers.optional().describe('components as in coefficients.noise'),
+          drift: numbers.optional().describe('components as in coefficients.drift'),
+          diffusion: numbers.optional().describe('components as in coefficients.diffusion'),
+        })
+        .default({})
+        .describe(
+          'constants that coefficients fade to (fade); what is left out fades to its mean over the box',
+        ),
       stiffness: z
         .number()
         .positive()
         .nullable()
         .default(null)
-        .describe('1/time² (second order), 1/time (first order)'),
+        .describe(
+          'restoring force per mass and length beyond the edge, 1/time² (second order); restoring drift per length, 1/time (first order)',
+        ),
     })
-    .default({ kind: 'hold', width: null, stiffness: null })
+    .default({ kind: 'hold', width: null, towards: {}, stiffness: null })
     .describe('what the coefficients are outside the visited box'),
   visited: z
-    .strictObject({ low: numbers, high: numbers })
+    .strictObject({
+      low: numbers.describe('lower corner, length'),
+      high: numbers.describe('upper corner, length'),
+    })
     .nullable()
     .default(null)
     .describe('box in which the coefficients are supported by data; null: everywhere'),
@@ -102,6 +172,11 @@ export const scenarioSchema = z.strictObject({
         .describe('one velocity per point, or empty: drawn from the kinetic temperature'),
       mean: numbers.default([]).describe('normal: mean; uniform: lower corner'),
       spread: numbers.default([]).describe('normal: standard deviation; uniform: side lengths'),
+      warmUp: z
+        .number()
+        .min(0)
+        .default(0)
+        .describe('time simulated before the first frame; many relaxation times give a stationary start'),
     })
     .describe('where tracks begin'),
   observation: z
@@ -134,8 +209,15 @@ export const scenarioSchema = z.strictObject({
         .nullable()
         .default(null)
         .describe('time step; null: chosen from the coefficients'),
+      integrator: z
+        .enum(['splitting', 'platen'])
+        .nullable()
+        .default(null)
+        .describe(
+          'splitting: symmetric splitting with an exact friction–noise step (second order); platen: explicit scheme of weak order 2 (first order); null: the one for the order',
+        ),
     })
-    .default({ step: null })
+    .default({ step: null, integrator: null })
     .describe('how the equations of motion are solved'),
   ensemble: z
     .strictObject({
@@ -152,11 +234,21 @@ export const scenarioSchema = z.strictObject({
     .record(z.string(), z.json())
     .default({})
     .describe('where the scenario came from: program, tracks and their hashes, seed'),
+  standing: standingSchema
+    .nullable()
+    .default(null)
+    .describe('whether the process settles on one stationary law, condition by condition'),
   warnings: z
-    .array(z.strictObject({ code: z.string(), message: z.string() }))
+    .array(
+      z.strictObject({
+        code: z.string().describe('stable name of the warning'),
+        message: z.string().describe('one sentence for people'),
+      }),
+    )
     .default([])
     .describe('advice that simulate repeats'),
 });
 
 export type Scenario = z.output<typeof scenarioSchema>;
+export type Standing = z.output<typeof standingSchema>;
 export type ScenarioInput = z.input<typeof scenarioSchema>;

@@ -17,6 +17,7 @@ import {
   isBasisField,
 } from './coefficients.js';
 import { continuePlaceInto, fadeWeight } from './continuation.js';
+import { findFadeTargets, type Slot } from './fadeTargets.js';
 import { clampToPositive, exponentiateSymmetricPart, fillMatrix } from './smallMatrices.js';
 import { compileSplineCells, type SumEvaluator } from './splineCells.js';
 
@@ -68,14 +69,6 @@ export function createBasisEvaluator(
   return assembleEvaluator(scenario, draw, null);
 }
 
-/** Where the components of one coefficient lie in the array of raw sums. */
-interface Slot {
-  readonly name: FieldName;
-  readonly coefficient: Coefficient;
-  readonly offset: number;
-  readonly count: number;
-}
-
 function assembleEvaluator(
   scenario: Scenario,
   draw: ArrayLike<number> | null,
@@ -105,7 +98,8 @@ function assembleEvaluator(
   const floored = { friction: 0, noise: 0 };
   const writeFriction = order === 'second' ? createBathWriter(frictionSlot, raw, d, bathForm) : null;
   const writeNoise = createBathWriter(noiseSlot, raw, d, bathForm);
-  const means = scenario.continuation.kind === 'fade' ? averageOverBox(scenario, writers, raw) : null;
+  const targets =
+    scenario.continuation.kind === 'fade' ? findFadeTargets(scenario, slots, writers, raw) : null;
   const { kind, width, stiffness } = scenario.continuation;
 
   const place = new Float64Array(d);
@@ -119,9 +113,9 @@ function assembleEvaluator(
       where = place;
     }
     for (let i = 0; i < writers.length; i++) writers[i](where, raw, 0);
-    if (outside && means !== null) {
+    if (outside && targets !== null) {
       const weight = fadeWeight(excess, width ?? 1);
-      for (let i = 0; i < total; i++) raw[i] = means[i] + weight * (raw[i] - means[i]);
+      for (let i = 0; i < total; i++) raw[i] = targets[i] + weight * (raw[i] - targets[i]);
     }
     for (let axis = 0; axis < d; axis++) force[axis] = raw[forceSlot.offset + axis];
     if (outside && kind === 'confine') {
@@ -323,29 +317,4 @@ function createBathWriter(
     }
     return negative;
   };
-}
-
-/** Means of all raw components over the visited box (midpoint rule), after links of scalar kind. */
-function averageOverBox(
-  scenario: Scenario,
-  writers: readonly SumEvaluator[],
-  raw: Float64Array,
-): Float64Array {
-  const { dimensions: d, visited } = scenario;
-  const means = new Float64Array(raw.length);
-  if (visited === null) return means;
-  const perAxis = [64, 24, 10][d - 1];
-  const count = perAxis ** d;
-  const place = new Float64Array(d);
-  for (let index = 0; index < count; index++) {
-    let rest = index;
-    for (let axis = 0; axis < d; axis++) {
-      const share = ((rest % perAxis) + 0.5) / perAxis;
-      place[axis] = visited.low[axis] + share * (visited.high[axis] - visited.low[axis]);
-      rest = Math.floor(rest / perAxis);
-    }
-    for (let i = 0; i < writers.length; i++) writers[i](place, raw, 0);
-    for (let i = 0; i < raw.length; i++) means[i] += raw[i] / count;
-  }
-  return means;
 }

@@ -7,6 +7,7 @@ import { type Scenario, scenarioSchema } from '../documents/Scenario.js';
 import type { Warning } from '../errors.js';
 import { createModelEvaluator } from '../fields/evaluateModel.js';
 import { randomStream } from '../numerics/random/RandomStream.js';
+import { INTEGRATOR_NAMES } from './createIntegrator.js';
 import { createBasisEvaluator } from './ScenarioEvaluator.js';
 import { recommendedStep } from './recommendedStep.js';
 
@@ -71,7 +72,11 @@ export function buildScenario(fit: FitDocument): Scenario {
   const evaluator = createBasisEvaluator(bare);
   const { step } = recommendedStep(evaluator, bare);
   warnings.push(...describeFloors(bare));
-  return { ...bare, integration: { step: Number(step.toPrecision(3)) }, warnings };
+  return {
+    ...bare,
+    integration: { step: Number(step.toPrecision(3)), integrator: INTEGRATOR_NAMES[model.order] },
+    warnings,
+  };
 }
 
 function missingFrames(fit: FitDocument): number {
@@ -129,8 +134,14 @@ function chooseContinuation(fit: FitDocument): Scenario['continuation'] {
     if (!(faces[0] > 0 && faces[1] < 0)) confining = false;
     stiffness.push((faces[0] - faces[1]) / (visited.high[axis] - visited.low[axis]));
   });
-  if (!confining || stiffness.length === 0) return { kind: 'hold', width: null, stiffness: null };
-  return { kind: 'confine', width: null, stiffness: Number(Math.max(...stiffness).toPrecision(3)) };
+  if (!confining || stiffness.length === 0)
+    return { kind: 'hold', width: null, towards: {}, stiffness: null };
+  return {
+    kind: 'confine',
+    width: null,
+    towards: {},
+    stiffness: Number(Math.max(...stiffness).toPrecision(3)),
+  };
 }
 
 /** Calls back once per visited cell of the grid's outermost layer that has any, placed on the face of the box. */

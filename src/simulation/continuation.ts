@@ -2,7 +2,7 @@
  * Where coefficients are read outside the visited region, which is a choice of the scenario's author:
  *
  *   hold     the value at the nearest point of the visited box
- *   fade     from that value to the mean over the box, within `width` of the edge
+ *   fade     from that value to a constant (given, or the mean over the box), within `width` of the edge
  *   confine  hold, with the force −stiffness · (distance beyond the edge) along each axis (drift at first order)
  */
 

@@ -8,6 +8,9 @@ import type { ScenarioEvaluator } from './ScenarioEvaluator.js';
 import { createSecondOrderIntegrator } from './secondOrderIntegrator.js';
 import { readWalls } from './walls.js';
 
+/** The integrator for each order, as scenarios name it. */
+export const INTEGRATOR_NAMES = { second: 'splitting', first: 'platen' } as const;
+
 export function createIntegrator(scenario: Scenario, evaluator: ScenarioEvaluator): Integrator {
   const walls = readWalls(scenario);
   return scenario.order === 'second'

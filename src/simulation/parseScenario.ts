@@ -5,7 +5,9 @@
 import { checkDocument, type DocumentPlace } from '../documents/checkDocument.js';
 import { type Scenario, type ScenarioInput, scenarioSchema } from '../documents/Scenario.js';
 import { UsageError } from '../errors.js';
+import type { FieldForm, FieldName } from '../fields/CoefficientField.js';
 import { COEFFICIENT_NAMES, type Coefficient, countComponents, isBasisField } from './coefficients.js';
+import { INTEGRATOR_NAMES } from './createIntegrator.js';
 import { fillMatrix, smallestSymmetricEigenvalue } from './smallMatrices.js';
 
 /**
@@ -31,9 +33,11 @@ export function createScenario(input: ScenarioInput): Scenario {
   return parseScenario(input);
 }
 
+type Refuse = (field: string, message: string) => never;
+
 function checkScenario(scenario: Scenario, name: string): void {
-  const { dimensions, axes, continuation, visited, start, observation, ensemble } = scenario;
-  const refuse = (field: string, message: string): never => {
+  const { dimensions, axes, visited, start, observation, integration, ensemble } = scenario;
+  const refuse: Refuse = (field, message) => {
     throw new UsageError(`${name}: ${field}: ${message}`, { source: name, at: field });
   };
   const checkLength = (field: string, values: readonly unknown[]): void => {
@@ -76,17 +80,7 @@ function checkScenario(scenario: Scenario, name: string): void {
     if (['x', 'y', 'z'].includes(key)) refuse('parameters', `"${key}" is a coordinate; choose another name`);
   }
 
-  if (continuation.kind === 'fade' && continuation.width === null)
-    refuse('continuation.width', 'is needed to fade');
-  if (continuation.kind === 'confine' && continuation.stiffness === null) {
-    refuse('continuation.stiffness', 'is needed to confine');
-  }
-  if (continuation.kind !== 'hold' && visited === null) {
-    refuse(
-      'visited',
-      `is needed to ${continuation.kind}: the box outside of which coefficients are continued`,
-    );
-  }
+  checkContinuation(scenario, refuse);
   if (visited !== null) {
     checkLength('visited.low', visited.low);
     checkLength('visited.high', visited.high);
@@ -94,6 +88,14 @@ function checkScenario(scenario: Scenario, name: string): void {
       if (!(low < visited.high[axis]))
         refuse(`visited.low[${axis}]`, `${low} must be below high ${visited.high[axis]}`);
     });
+  }
+
+  const own = INTEGRATOR_NAMES[scenario.order];
+  if (![null, own].includes(integration.integrator)) {
+    refuse(
+      'integration.integrator',
+      `"${integration.integrator}" does not solve order "${scenario.order}"; use "${own}" or leave it out`,
+    );
   }
 
   if (start.kind === 'points') {
@@ -128,27 +130,57 @@ function checkScenario(scenario: Scenario, name: string): void {
   }
 }
 
+function checkContinuation(scenario: Scenario, refuse: Refuse): void {
+  const { continuation, visited, dimensions } = scenario;
+  const { kind, width, stiffness, towards } = continuation;
+  if (kind === 'fade' && width === null) refuse('continuation.width', 'is needed to fade');
+  if (kind === 'confine' && stiffness === null) refuse('continuation.stiffness', 'is needed to confine');
+  if (kind !== 'hold' && visited === null) {
+    refuse('visited', `is needed to ${kind}: the box outside of which coefficients are continued`);
+  }
+  for (const [key, values] of Object.entries(towards)) {
+    const name = key as keyof typeof towards;
+    const at = `continuation.towards.${key}`;
+    const coefficient = scenario.coefficients[name];
+    if (kind !== 'fade') refuse(at, `has no meaning with kind "${kind}"; only "fade" goes to constants`);
+    if (coefficient === undefined) refuse(at, `names a coefficient the scenario does not have`);
+    else {
+      checkValues(
+        name,
+        coefficient.form,
+        values,
+        dimensions,
+        (field, message) => refuse(`${at}${field}`, message),
+        '',
+      );
+      const link = isBasisField(coefficient) ? coefficient.link : 'identity';
+      if (link !== 'identity' && !isPositive(name, coefficient.form, values, dimensions))
+        refuse(at, `must be above zero, because coefficients.${key} is given through its logarithm`);
+    }
+  }
+}
+
 function checkCoefficient(
   key: keyof Scenario['coefficients'],
   coefficient: Coefficient,
   dimensions: number,
-  refuse: (field: string, message: string) => never,
+  refuse: Refuse,
 ): void {
   const isVector = key === 'force' || key === 'drift';
   if ((coefficient.form === 'vector') !== isVector) {
     const forms = isVector ? 'vector' : 'scalar, axes or matrix';
     refuse('.form', `cannot be "${coefficient.form}"; use ${forms}`);
   }
-  const count = countComponents(key, coefficient.form, dimensions);
-  const [field, components] =
-    'values' in coefficient
-      ? ['.values', coefficient.values]
-      : 'formulas' in coefficient
+  if (!('values' in coefficient)) {
+    const count = countComponents(key, coefficient.form, dimensions);
+    const [field, components] =
+      'formulas' in coefficient
         ? ['.formulas', coefficient.formulas]
         : ['.coefficients', coefficient.coefficients];
-  if (components.length !== count) {
-    const shape = `form "${coefficient.form}" in ${dimensions} dimensions`;
-    refuse(field, `has ${components.length} components but ${shape} takes ${count}`);
+    if (components.length !== count) {
+      const shape = `form "${coefficient.form}" in ${dimensions} dimensions`;
+      refuse(field, `has ${components.length} components but ${shape} takes ${count}`);
+    }
   }
   if (isBasisField(coefficient)) {
     if (coefficient.name !== key) refuse('.name', `is "${coefficient.name}" but stands under ${key}`);
@@ -156,21 +188,51 @@ function checkCoefficient(
     if (lengths.size > 1)
       refuse('.coefficients', 'has components of different lengths; each needs one number per function');
   }
-  if (!('values' in coefficient) || isVector) return;
-  if (coefficient.form !== 'matrix') {
-    coefficient.values.forEach((value, index) => {
-      if (value < 0) refuse(`.values[${index}]`, `${key} must not be negative, got ${value}`);
+  if ('values' in coefficient)
+    checkValues(key, coefficient.form, coefficient.values, dimensions, refuse, '.values');
+}
+
+/** Constants: as many as the form has, no negative friction or noise. */
+function checkValues(
+  key: FieldName,
+  form: FieldForm,
+  values: readonly number[],
+  dimensions: number,
+  refuse: Refuse,
+  field: string,
+): void {
+  const count = countComponents(key, form, dimensions);
+  if (values.length !== count) {
+    refuse(
+      field,
+      `has ${values.length} components but form "${form}" in ${dimensions} dimensions takes ${count}`,
+    );
+  }
+  if (form === 'vector') return;
+  if (form !== 'matrix') {
+    values.forEach((value, index) => {
+      if (value < 0) refuse(`${field}[${index}]`, `${key} must not be negative, got ${value}`);
     });
     return;
   }
-  const matrix = new Float64Array(dimensions * dimensions);
-  fillMatrix(key, coefficient.values, 0, dimensions, matrix);
-  const smallest = smallestSymmetricEigenvalue(matrix, dimensions);
+  const smallest = smallestEigenvalue(key, values, dimensions);
   if (smallest < 0) {
     const what = key === 'friction' ? 'the symmetric part of the friction' : `the ${key}`;
     refuse(
-      '.values',
+      field,
       `${what} must be positive, but its smallest eigenvalue is ${Number(smallest.toPrecision(4))}`,
     );
   }
+}
+
+function isPositive(key: FieldName, form: FieldForm, values: readonly number[], dimensions: number): boolean {
+  return form === 'matrix'
+    ? smallestEigenvalue(key, values, dimensions) > 0
+    : values.every((value) => value > 0);
+}
+
+function smallestEigenvalue(key: FieldName, values: readonly number[], dimensions: number): number {
+  const matrix = new Float64Array(dimensions * dimensions);
+  fillMatrix(key, values, 0, dimensions, matrix);
+  return smallestSymmetricEigenvalue(matrix, dimensions);
 }

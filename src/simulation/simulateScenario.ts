@@ -12,6 +12,7 @@ import { createIntegrator } from './createIntegrator.js';
 import { recommendedStep } from './recommendedStep.js';
 import { createScenarioEvaluator, type ScenarioEvaluator } from './ScenarioEvaluator.js';
 import { createTrackSimulator, type TrackSimulator } from './simulateTrack.js';
+import { readWalls, reflect } from './walls.js';
 
 export interface SimulationOptions {
   /** Each replaces the scenario's own number. */
@@ -142,13 +143,15 @@ export const simulateTracksTask: Task<SharedWork, TrackRange, TrackPiece> = {
     const recording = {
       step,
       exposure: observation.exposure * interval,
+      warmUp: scenario.start.warmUp,
       localizationError: observation.localizationError,
     };
     const frameTimes = Float64Array.from({ length: frames }, (_, frame) => frame * interval);
-    const whole = new Float64Array(frames * d);
     const counts = new Int32Array(last - first);
-    const times: number[] = [];
-    const positions: number[] = [];
+    const times = new Float64Array((last - first) * frames);
+    const positions = new Float64Array((last - first) * frames * d);
+    let rows = 0;
+    const walls = readWalls(scenario);
     const floored = { friction: 0, noise: 0 };
     const evaluators = new Map<number, { evaluator: ScenarioEvaluator; simulate: TrackSimulator }>();
     const start = new Float64Array(d);
@@ -166,22 +169,19 @@ export const simulateTracksTask: Task<SharedWork, TrackRange, TrackPiece> = {
       }
       const stream = randomStream(seed, 'simulate', track);
       const velocity = drawStart(scenario, start, stream);
+      if (walls !== null) reflect(start, new Float64Array(d), walls); // a normal law knows nothing of walls
+      const whole = positions.subarray(rows * d, (rows + frames) * d);
       prepared.simulate(frameTimes, 0, frames, start, velocity, whole, stream);
-      counts[track - first] = keepFrames(
-        frameTimes,
-        whole,
-        d,
-        observation.lostFrames,
-        stream,
-        times,
-        positions,
-      );
+      times.set(frameTimes, rows);
+      const kept = keepFrames(times.subarray(rows, rows + frames), whole, observation.lostFrames, stream);
+      counts[track - first] = kept;
+      rows += kept;
     }
     for (const { evaluator } of evaluators.values()) {
       floored.friction += evaluator.floored.friction;
       floored.noise += evaluator.floored.noise;
     }
-    return { counts, times: Float64Array.from(times), positions: Float64Array.from(positions), floored };
+    return { counts, times: times.slice(0, rows), positions: positions.slice(0, rows * d), floored };
   },
 };
 
@@ -199,21 +199,24 @@ function drawStart(scenario: Scenario, start: Float64Array, stream: RandomStream
   return null;
 }
 
-/** Appends the frames that are not lost; the first one is always kept, so that no track vanishes. */
+/**
+ * Moves the frames that are not lost to the front, in place; the first is always kept, so that no track vanishes.
+ *
+ * @returns how many are kept
+ */
 function keepFrames(
-  frameTimes: Float64Array,
-  whole: Float64Array,
-  d: number,
+  times: Float64Array,
+  positions: Float64Array,
   lostFrames: number,
   stream: RandomStream,
-  times: number[],
-  positions: number[],
 ): number {
+  if (lostFrames === 0) return times.length;
+  const d = positions.length / times.length;
   let kept = 0;
-  for (let frame = 0; frame < frameTimes.length; frame++) {
-    if (lostFrames > 0 && frame > 0 && stream.uniform() < lostFrames) continue;
-    times.push(frameTimes[frame]);
-    for (let axis = 0; axis < d; axis++) positions.push(whole[frame * d + axis]);
+  for (let frame = 0; frame < times.length; frame++) {
+    if (frame > 0 && stream.uniform() < lostFrames) continue;
+    times[kept] = times[frame];
+    positions.copyWithin(kept * d, frame * d, (frame + 1) * d);
     kept++;
   }
   return kept;

@@ -15,6 +15,8 @@ import { choleskyInto } from './smallMatrices.js';
 export interface Recording {
   /** Largest time step. */
   readonly step: number;
+  /** Time the process runs before the first frame (before its exposure window). Default 0. */
+  readonly warmUp?: number;
   /** Length of the window a position is averaged over, time; it ends at the frame's time. 0: none. */
   readonly exposure: number;
   /** Standard deviation of the localization error per axis, length d. */
@@ -38,8 +40,8 @@ export type TrackSimulator = (
 
 /**
  * Prepares the recording of tracks. The simulator writes rows `first` (included) to `last` (excluded) of `out`
- * (shape (n, d)) at the times of the same rows. The process starts at `start` one exposure window before the first
- * frame's time; a null velocity is drawn from the kinetic temperature there.
+ * (shape (n, d)) at the times of the same rows. The process starts at `start` one exposure window and the
+ * warm-up before the first frame's time; a null velocity is drawn from the kinetic temperature there.
  *
  * With an exposure the recorded position is the mean of the path over the window that ends at the frame's time
  * (trapezoid rule over the steps).
@@ -49,7 +51,7 @@ export type TrackSimulator = (
 export function createTrackSimulator(integrator: Integrator, recording: Recording): TrackSimulator {
   const { evaluator } = integrator;
   const d = evaluator.dimensions;
-  const { step, exposure, localizationError, localizationErrors = null } = recording;
+  const { step, warmUp = 0, exposure, localizationError, localizationErrors = null } = recording;
   const q = new Float64Array(d);
   const v = new Float64Array(d);
   const before = new Float64Array(d);
@@ -77,6 +79,10 @@ export function createTrackSimulator(integrator: Integrator, recording: Recordin
     if (evaluator.order === 'second') {
       if (velocity === null) drawVelocity(q, v, stream);
       else for (let axis = 0; axis < d; axis++) v[axis] = velocity[axis];
+    }
+    if (warmUp > 0) {
+      const steps = countSteps(warmUp, step);
+      integrator.advance(q, v, steps, warmUp / steps, stream);
     }
     for (let row = first; row < last; row++) {
       if (exposure > 0) {

@@ -94,16 +94,23 @@ function isClearlyPositive(matrix: Float64Array, d: number): boolean {
   return true;
 }
 
-/**
- * The exponential of a matrix's symmetric part plus its antisymmetric part, in place: the `log-matrix` link.
- */
+/** The exponential of a matrix's symmetric part plus its antisymmetric part, in place: the `log-matrix` link. */
 export function exponentiateSymmetricPart(matrix: Float64Array, d: number): void {
+  applyToSymmetricPart(matrix, d, Math.exp);
+}
+
+/** The way back from `exponentiateSymmetricPart`; the symmetric part must be positive definite. */
+export function takeLogarithmOfSymmetricPart(matrix: Float64Array, d: number): void {
+  applyToSymmetricPart(matrix, d, Math.log);
+}
+
+function applyToSymmetricPart(matrix: Float64Array, d: number, f: (eigenvalue: number) => number): void {
   eigenSymmetricInto(matrix, d, eigenvalues, eigenvectors);
   for (let i = 0; i < d; i++) {
     for (let j = i; j < d; j++) {
       let sum = 0;
       for (let k = 0; k < d; k++)
-        sum += eigenvectors[i * d + k] * Math.exp(eigenvalues[k]) * eigenvectors[j * d + k];
+        sum += eigenvectors[i * d + k] * f(eigenvalues[k]) * eigenvectors[j * d + k];
       const rotation = 0.5 * (matrix[i * d + j] - matrix[j * d + i]);
       matrix[i * d + j] = sum + rotation;
       matrix[j * d + i] = sum - rotation;

@@ -1,7 +1,8 @@
 /**
- * Cubic splines as one polynomial per cell: what the integrators evaluate millions of times a second.
+ * Splines up to degree 3 as one cubic per cell: what the integrators evaluate millions of times a second.
  */
 
+import { SPLINE_DEGREE } from '../fields/basis/splineBasis.js';
 import type { Basis, BasisSpec } from '../fields/Basis.js';
 
 type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
@@ -22,7 +23,7 @@ const FROM_NODES = [
 ];
 
 /**
- * Compiles weighted sums of tensor cubic B-splines. Inside a cell of the knot grid each sum is one cubic per axis, so
+ * Compiles weighted sums of tensor B-splines. Inside a cell of the knot grid each sum is at most cubic per axis, so
  * its values at 4 points per axis determine it exactly (up to rounding).
  *
  * @param weights  one array of k weights per sum
@@ -34,7 +35,8 @@ export function compileSplineCells(
   weights: readonly (readonly number[])[],
 ): SumEvaluator | null {
   const d = basis.dimensions;
-  const cells = spec.counts.map((count, axis) => (spec.periods[axis] > 0 ? count : count - 3));
+  const degree = spec.degree ?? SPLINE_DEGREE;
+  const cells = spec.counts.map((count, axis) => (spec.periods[axis] > 0 ? count : count - degree));
   if (cells.some((count) => count < 1)) return null;
   const cellCount = cells.reduce((product, count) => product * count, 1);
   const perSum = 4 ** d;

@@ -36,7 +36,7 @@ function refusal(change: Record<string, unknown>): UsageError {
 describe('a scenario written by hand', () => {
   it('is read with its defaults filled in', () => {
     const scenario = parseScenario(JSON.parse(JSON.stringify(GOOD)));
-    expect(scenario.continuation).toEqual({ kind: 'hold', width: null, stiffness: null });
+    expect(scenario.continuation).toEqual({ kind: 'hold', width: null, towards: {}, stiffness: null });
     expect(scenario.observation.exposure).toBe(0);
     expect(scenario.reading).toBe('ito');
   });
