@@ -16,7 +16,7 @@ export type BasisSpec =
       readonly scale: readonly number[];
     }
   /**
-   * Tensor product of uniform B-splines of degree 3, `counts[a]` functions along axis `a` between `low` and `high`.
+   * Tensor product of uniform B-splines of `degree` (1 to 3; absent: 3), `counts[a]` functions along axis `a` between `low` and `high`.
    * On a periodic axis (`periods[a]` > 0) they wrap and low/high span one period; elsewhere a place outside
    * the box is evaluated at the nearest point of the box.
    */
@@ -26,6 +26,7 @@ export type BasisSpec =
       readonly low: readonly number[];
       readonly high: readonly number[];
       readonly periods: readonly number[];
+      readonly degree?: number;
     }
   /** Tensor product of 1, cos, sin, … up to wave number `waves` per periodic axis (2·waves + 1 functions each);
    *  on an open axis constant. */

@@ -54,10 +54,13 @@ const SPECS: readonly [string, BasisSpec, number][] = [
   ['open spline', spline1(7, -1, 2), 1],
   ['open spline of 3 functions (degree 2)', spline1(3, -1, 2), 1],
   ['open spline of 2 functions (degree 1)', spline1(2, -1, 2), 1],
+  ['open spline of degree 1', { ...spline1(7, -1, 2), degree: 1 }, 1],
   ['periodic spline', spline1(6, 0, 3, 3), 1],
+  ['periodic spline of degree 1', { ...spline1(6, 0, 3, 3), degree: 1 }, 1],
   ['periodic spline of 3 functions', spline1(3, 0, 3, 3), 1],
   ['periodic spline of 2 functions', spline1(2, 0, 3, 3), 1],
   ['tensor spline with a periodic axis', MIXED, 3],
+  ['tensor spline of degree 2', { ...MIXED, degree: 2 }, 3],
   ['polynomial', { kind: 'polynomial', degree: 4, centre: [0.3, -1], scale: [2, 0.7] }, 2],
   [
     'polynomial in three dimensions',
@@ -95,6 +98,23 @@ describe('B-splines', () => {
     const open = createBasis(spline1(7, -1, 2), 1);
     for (const edge of [-1, 2, -1e12, 1e12]) {
       expect(valuesAt(open, [edge]).reduce((sum, value) => sum + value, 0)).toBeCloseTo(1, 14);
+    }
+  });
+
+  it('of degree 1 interpolate linearly between one value per knot, also across the end of a period', () => {
+    const knotValues = [2, -1, 0.5, 4, 3, -2];
+    for (const [period, knots] of [
+      [0, [0, 0.2, 0.4, 0.6, 0.8, 1]],
+      [1.2, [0, 0.2, 0.4, 0.6, 0.8, 1, 1.2]],
+    ] as const) {
+      const basis = createBasis({ ...spline1(6, 0, period || 1, period), degree: 1 }, 1);
+      const valueAt = (place: number) =>
+        valuesAt(basis, [place]).reduce((sum, value, i) => sum + value * knotValues[i], 0);
+      for (let cell = 0; cell + 1 < knots.length; cell++) {
+        const [left, right] = [knotValues[cell], knotValues[(cell + 1) % 6]];
+        for (const t of [0, 0.3, 0.9])
+          expect(valueAt(knots[cell] + 0.2 * t)).toBeCloseTo(left + t * (right - left), 12);
+      }
     }
   });
 

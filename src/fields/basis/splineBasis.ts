@@ -1,6 +1,7 @@
 /**
- * Tensor product of uniform B-splines. Along an open axis n functions of degree 3 stand on n − 3 cells of the box
- * (fewer than 4 functions: one cell of lower degree); along a periodic axis n functions stand on n cells and wrap.
+ * Tensor product of uniform B-splines, of degree 3 unless the spec names another. Along an open axis n functions of
+ * degree 3 stand on n − 3 cells of the box (fewer than 4 functions: one cell of lower degree), of degree 1 on n − 1
+ * cells: one on each knot. Along a periodic axis n functions stand on n cells and wrap.
  * The functions sum to one everywhere. Outside the box of an open axis the place is moved to its edge, so fields are
  * held there and their derivatives vanish.
  *
@@ -12,7 +13,8 @@ import type { Basis, BasisSpec } from '../Basis.js';
 
 type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
 
-const DEGREE = 3;
+/** The degree of a spline whose spec names none, and the highest. */
+export const SPLINE_DEGREE = 3;
 
 /** One axis: writes local function numbers and values (or derivatives) for a coordinate; returns how many. */
 interface SplineAxis {
@@ -24,7 +26,13 @@ interface SplineAxis {
 
 export function createSplineBasis(spec: SplineSpec, dimensions: number): Basis {
   const axes = Array.from({ length: dimensions }, (_, axis) =>
-    createAxis(spec.counts[axis], spec.low[axis], spec.high[axis], spec.periods[axis]),
+    createAxis(
+      spec.counts[axis],
+      spec.low[axis],
+      spec.high[axis],
+      spec.periods[axis],
+      spec.degree ?? SPLINE_DEGREE,
+    ),
   );
   const functionCount = axes.reduce((product, axis) => product * axis.count, 1);
   const support = axes.reduce((product, axis) => product * axis.support, 1);
@@ -69,12 +77,12 @@ export function createSplineBasis(spec: SplineSpec, dimensions: number): Basis {
   };
 }
 
-function createAxis(count: number, low: number, high: number, period: number): SplineAxis {
+function createAxis(count: number, low: number, high: number, period: number, highest: number): SplineAxis {
   const periodic = period > 0;
-  const degree = periodic ? DEGREE : Math.min(DEGREE, count - 1);
+  const degree = periodic ? highest : Math.min(highest, count - 1);
   const cells = periodic ? count : count - degree;
   const perLength = cells / (periodic ? period : high - low);
-  const weights = new Float64Array(DEGREE + 1);
+  const weights = new Float64Array(highest + 1);
   const support = Math.min(count, degree + 1);
 
   return {
