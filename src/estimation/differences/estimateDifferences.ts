@@ -17,8 +17,8 @@ import { type MomentSolution, type PenaltyGroup, solvePenalizedMoments } from '.
 import {
   collectDiffusionMoments,
   collectDriftMoments,
-  type DiffusionMoments,
   driftBasis,
+  type ErrorSums,
 } from './firstOrder.js';
 import { createIntervalCorrection } from './intervalCorrection.js';
 import { layOutSecondOrder } from './forceFriction.js';
@@ -71,8 +71,7 @@ export function estimateDifferences(tracks: TrackSet, plan: EstimationPlan): Est
     moments = diffusion;
   }
   const noiseGroups: PenaltyGroup[] = [];
-  if (isPenalized(plan.noise))
-    pushGroup(noiseGroups, noiseBasis, 0, moments.size / noiseBasis.functionCount);
+  if (isPenalized(plan.noise)) pushGroup(noiseGroups, noiseBasis, 0, moments.size / noiseBasis.functionCount);
   const noise = solvePenalizedMoments(moments, noiseGroups);
 
   const parameters = joined(motion.parameters, noise.parameters);
@@ -114,12 +113,12 @@ const NO_MOTION: MotionPart = {
 };
 
 /** Localization variance per axis with the effect of each block on it, shape (B, d). */
-interface ErrorVariance {
+export interface ErrorVariance {
   readonly variance: Float64Array;
   readonly influences: Float64Array;
 }
 
-const UNCONVERGED: Warning = {
+export const UNCONVERGED: Warning = {
   code: 'not-converged',
   message:
     'localization error and friction did not settle on each other; give the localization error with --localization-error, or record more positions',
@@ -139,7 +138,7 @@ function pushGroup(groups: PenaltyGroup[], basis: Basis, offset: number, copies:
   });
 }
 
-function joined(first: Float64Array, second: Float64Array): Float64Array {
+export function joined(first: Float64Array, second: Float64Array): Float64Array {
   const out = new Float64Array(first.length + second.length);
   out.set(first);
   out.set(second, first.length);
@@ -200,7 +199,7 @@ function joinFactors(motion: MotionPart, noise: MomentSolution): Estimate['smoot
 }
 
 /** First order: the localization variance is minus the covariance of neighbouring residuals. */
-function firstOrderError(moments: DiffusionMoments, plan: EstimationPlan, d: number): ErrorVariance {
+export function firstOrderError(moments: ErrorSums, plan: EstimationPlan, d: number): ErrorVariance {
   const blocks = plan.blocks.count;
   const influences = new Float64Array(blocks * d);
   if (plan.localizationError)
@@ -222,7 +221,11 @@ function firstOrderError(moments: DiffusionMoments, plan: EstimationPlan, d: num
 }
 
 /** Standard deviation of the localization error per axis, with its standard error over the blocks. */
-function describeError(error: ErrorVariance, plan: EstimationPlan, d: number): Estimate['localizationError'] {
+export function describeError(
+  error: ErrorVariance,
+  plan: EstimationPlan,
+  d: number,
+): Estimate['localizationError'] {
   return Array.from({ length: d }, (_, axis) => {
     let spread = 0;
     for (let block = 0; block < plan.blocks.count; block++) spread += error.influences[block * d + axis] ** 2;

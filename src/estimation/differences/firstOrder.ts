@@ -102,10 +102,38 @@ export function visitDriftRows(
   return rows;
 }
 
-export interface DiffusionMoments extends NoiseMoments {
+/** What the localization variance is read from, per block and axis. */
+export interface ErrorSums {
   /** Shape (B, d): −Σ e_k e_{k+1} Δ² and Σ ρ_{k+1} with ρ = 1 + μ_e′Δ; their ratio is the localization variance. */
   readonly errorSums: Float64Array;
   readonly errorWeights: Float64Array;
+}
+
+export interface DiffusionMoments extends NoiseMoments, ErrorSums {}
+
+/** Sums that a visitor of the diffusion rows fills by `add`. */
+export function createErrorSums(
+  tracks: TrackSet,
+  plan: EstimationPlan,
+  drift: Basis | null,
+  parameters: Float64Array,
+): ErrorSums & { add(row: number, neighbours: Float64Array): void } {
+  const { positions, dimensions: d, samplingInterval: dt } = tracks;
+  const { count, ofPosition } = plan.blocks;
+  const errorSums = new Float64Array(count * d);
+  const errorWeights = new Float64Array(count * d);
+  const slopeAt = createOwnSlopes(drift, parameters, positions, d);
+  return {
+    errorSums,
+    errorWeights,
+    add(row, neighbours) {
+      for (let axis = 0; axis < d; axis++) {
+        const slot = ofPosition[row] * d + axis;
+        errorSums[slot] -= neighbours[axis] * dt * dt;
+        errorWeights[slot] += 1 + slopeAt(row + 1, axis) * dt;
+      }
+    },
+  };
 }
 
 /**
@@ -121,7 +149,7 @@ export function collectDiffusionMoments(
   basis: Basis,
   parameters: Float64Array,
 ): DiffusionMoments {
-  const { positions, dimensions, samplingInterval: dt } = tracks;
+  const { positions, dimensions } = tracks;
   const { count: blockCount, ofPosition } = plan.blocks;
   const k = basis.functionCount;
   const components = noisePairs(plan.noise.form, dimensions).length;
@@ -130,18 +158,13 @@ export function collectDiffusionMoments(
   const vectors = Array.from({ length: blockCount }, () => new Float64Array(p));
   const total = new Float64Array(p * p);
   const sensitivity = new Float64Array(p * parameters.length);
-  const sums = new Float64Array(blockCount * dimensions);
-  const weights = new Float64Array(blockCount * dimensions);
-  const slopeAt = createOwnSlopes(drift, parameters, positions, dimensions);
+  const errors = createErrorSums(tracks, plan, drift, parameters);
   const indices = new Int32Array(basis.support);
   const values = new Float64Array(basis.support);
   visitDiffusionRows(tracks, plan.noise.form, drift, parameters, (row, products, neighbours, driftRowOf) => {
     const block = ofPosition[row];
     const found = basis.evaluateInto(positions, row * dimensions, indices, values);
-    for (let axis = 0; axis < dimensions; axis++) {
-      sums[block * dimensions + axis] -= neighbours[axis] * dt * dt;
-      weights[block * dimensions + axis] += 1 + slopeAt(row + 1, axis) * dt;
-    }
+    errors.add(row, neighbours);
     for (let component = 0; component < components; component++) {
       addBasisRow(
         matrices[block],
@@ -176,8 +199,8 @@ export function collectDiffusionMoments(
     vectors,
     instrumentGram: total,
     sensitivity,
-    errorSums: sums,
-    errorWeights: weights,
+    errorSums: errors.errorSums,
+    errorWeights: errors.errorWeights,
   };
 }
 

@@ -93,8 +93,8 @@ export function createIntervalCorrection(
         local.force[axis] = forceValues[axis][node];
         slopes[axis] = slopeValues[axis][node];
       }
-      spread(local.friction, frictionValues, node, frictionForm, d, false);
-      spread(local.noise, noiseValues, node, noiseForm, d, true);
+      spreadComponents(local.friction, frictionValues, node, frictionForm, d, false);
+      spreadComponents(local.noise, noiseValues, node, noiseForm, d, true);
       if (friction) correctSecondOrderInto(local, slopes, errorVariance, samplingInterval);
       else correctFirstOrderInto(local, slopes, errorVariance, samplingInterval);
       for (let axis = 0; axis < d; axis++)
@@ -212,7 +212,7 @@ function valuesAt(
 }
 
 /** Components of one node into a full d × d matrix. */
-function spread(
+export function spreadComponents(
   matrix: Float64Array,
   components: readonly Float64Array[],
   node: number,
@@ -228,7 +228,7 @@ function spread(
 }
 
 /** Replaces each component's value by how much it changed; a scalar changes by the mean over the axes. */
-function gatherChange(
+export function gatherChange(
   components: readonly Float64Array[],
   matrix: Float64Array,
   node: number,

@@ -51,34 +51,19 @@ export function solveForceFriction(
   const given = plan.localizationError && Float64Array.from(plan.localizationError, (error) => error * error);
   const lag = plan.exposure > 0 || !layout.friction ? 2 : 1;
   const moments = collectForceFrictionMoments(tracks, plan, layout, lag);
-  let regression: MomentSolution;
-  let variance: Float64Array = new Float64Array(d);
-  let errors: ErrorMoments;
-  let converged = true;
-  if (lag === 2) {
-    regression = solvePenalizedMoments(moments, groups);
-    errors = collectErrorMoments(tracks, plan, layout, regression.parameters);
-    variance = Float64Array.from(given ?? ratioPerAxis(errors, d));
-  } else {
-    // Without a known error, start from none: friction is then too low, but the residuals are close enough to begin.
-    variance = Float64Array.from(given ?? variance);
-    regression = solvePenalizedMoments(correctForError(moments, layout, variance, tracks), groups);
-    errors = collectErrorMoments(tracks, plan, layout, regression.parameters);
-    if (!given) {
-      converged = false;
-      for (let round = 0; round < ROUNDS && !converged; round++) {
-        const next = ratioPerAxis(errors, d);
-        converged = next.every(
-          (value, axis) => Math.abs(value - variance[axis]) <= TOLERANCE * residualScale(errors, axis, d),
-        );
-        variance = next;
-        // Strengths are chosen afresh once, when the variance has had its first correction.
-        const known = round === 0 ? undefined : regression.strengths;
-        regression = solvePenalizedMoments(correctForError(moments, layout, variance, tracks), groups, known);
-        errors = collectErrorMoments(tracks, plan, layout, regression.parameters);
-      }
-    }
-  }
+  let strengths: readonly number[] | undefined;
+  const { regression, errors, variance, converged } = settleErrorVariance<MomentSolution>(
+    given,
+    lag,
+    d,
+    (trial, settled) => {
+      const corrected = lag === 1 ? correctForError(moments, layout, trial, tracks) : moments;
+      const solution = solvePenalizedMoments(corrected, groups, settled ? strengths : undefined);
+      strengths = solution.strengths;
+      return solution;
+    },
+    (parameters) => collectErrorMoments(tracks, plan, layout, parameters),
+  );
   const shift = lag === 1 && !given ? errorShift(moments, layout, regression, tracks) : null;
   return {
     parameters: regression.parameters,
@@ -87,6 +72,42 @@ export function solveForceFriction(
     regression,
     converged,
   };
+}
+
+/**
+ * Regression and localization variance that agree with each other.
+ *
+ * @param given  localization variance per axis where it is known, length²
+ * @param lag  of the velocity instrument: with 2 the regression does not depend on the variance
+ * @param solve  the regression for a trial variance; `settled` is false until the variance has had its first correction,
+ *   when the smoothing is worth choosing afresh
+ * @param measure  what the residuals for given parameters say of the variance
+ */
+export function settleErrorVariance<Regression extends { readonly parameters: Float64Array }>(
+  given: Float64Array | null,
+  lag: 1 | 2,
+  d: number,
+  solve: (variance: Float64Array, settled: boolean) => Regression,
+  measure: (parameters: Float64Array) => ErrorMoments,
+): { regression: Regression; errors: ErrorMoments; variance: Float64Array; converged: boolean } {
+  // Without a known error, start from none: friction is then too low, but the residuals are close enough to begin.
+  let variance: Float64Array = Float64Array.from(given ?? new Float64Array(d));
+  let regression = solve(variance, false);
+  let errors = measure(regression.parameters);
+  if (given) return { regression, errors, variance, converged: true };
+  if (lag === 2) return { regression, errors, variance: ratioPerAxis(errors, d), converged: true };
+  let converged = false;
+  for (let round = 0; round < ROUNDS && !converged; round++) {
+    const next = ratioPerAxis(errors, d);
+    const last = variance;
+    converged = next.every(
+      (value, axis) => Math.abs(value - last[axis]) <= TOLERANCE * residualScale(errors, axis, d),
+    );
+    variance = next;
+    regression = solve(variance, round > 0);
+    errors = measure(regression.parameters);
+  }
+  return { regression, errors, variance, converged };
 }
 
 function ratioPerAxis(errors: ErrorMoments, d: number): Float64Array {
@@ -189,9 +210,12 @@ function errorShift(
 /**
  * Block effects on parameters θ and localization variances s² together. With θ = Θ(data, s²) and s² = Σ(data, θ),
  * ds² = (1 − Σ_θ Θ_s)⁻¹ (dΣ + Σ_θ dΘ) and dθ = dΘ + Θ_s ds².
+ *
+ * @param shift  Θ_s, shape (d, p); null where the regression does not depend on the variance
+ * @param given  whether the variance was known beforehand
  */
-function joinInfluences(
-  regression: MomentSolution,
+export function joinInfluences(
+  regression: Pick<MomentSolution, 'parameters' | 'influences'>,
   errors: ErrorMoments,
   variance: Float64Array,
   shift: Float64Array | null,
