@@ -37,11 +37,13 @@ function valuesAt(basis: Basis, place: readonly number[], axis: number | null = 
   return all;
 }
 
-function spline1(count: number, low: number, high: number, period = 0): BasisSpec {
+type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
+
+function spline1(count: number, low: number, high: number, period = 0): SplineSpec {
   return { kind: 'spline', counts: [count], low: [low], high: [high], periods: [period] };
 }
 
-const MIXED: BasisSpec = {
+const MIXED: SplineSpec = {
   kind: 'spline',
   counts: [6, 5, 4],
   low: [-1, 0, 2],
