@@ -7,8 +7,8 @@ import type { Scenario } from '../documents/Scenario.js';
 /** A test of a statement about the coefficients, as `test --json` prints it. */
 export interface ReportedTest {
   readonly hypothesis: string;
-  readonly statistic: number;
-  readonly p: number;
+  readonly statistic: number | null;
+  readonly p: number | null;
   readonly rejected: boolean;
   readonly parameters: Readonly<
     Record<string, { readonly value: number; readonly low: number; readonly high: number }>
@@ -19,7 +19,7 @@ export interface ReportedTest {
 /** A check of the model's own assumptions, as `challenge --json` prints it. */
 export interface ReportedChallenge {
   readonly name: string;
-  readonly p: number;
+  readonly p: number | null;
   readonly holds: boolean;
   readonly note: string;
 }

@@ -32,6 +32,7 @@ function wantsPower(exponent: number): boolean {
 export function formatNumber(value: number, digits = 3): string {
   if (Number.isNaN(value)) return 'unknown';
   if (!Number.isFinite(value)) return value > 0 ? 'infinite' : '−infinite';
+  if (value === 0) return '0';
   const exponent = leadingExponent(value);
   if (wantsPower(exponent)) {
     return withMinus(`${(value / 10 ** exponent).toFixed(digits - 1)} × ${formatPowerOfTen(exponent)}`);
@@ -39,6 +40,31 @@ export function formatNumber(value: number, digits = 3): string {
   const rounded = Number(value.toPrecision(digits));
   return withMinus(rounded.toFixed(Math.min(20, Math.max(0, digits - 1 - leadingExponent(rounded)))));
 }
+
+/** A number somebody chose, such as an interval of time: up to six digits, without zeros at the end. */
+export function formatSetting(value: number): string {
+  if (!Number.isFinite(value) || value === 0) return formatNumber(value, 1);
+  const rounded = Number(value.toPrecision(6));
+  const exponent = leadingExponent(rounded);
+  if (!wantsPower(exponent)) return withMinus(String(rounded));
+  return withMinus(`${Number((rounded / 10 ** exponent).toPrecision(6))} × ${formatPowerOfTen(exponent)}`);
+}
+
+/** The ends of a range, with the same decimal place and one power of ten: `−0.74 to 1.70 × 10⁻⁷`. */
+export function formatRange(low: number, high: number, digits = 3, between = ' to '): string {
+  if (!Number.isFinite(low) || !Number.isFinite(high))
+    return `${formatNumber(low, digits)}${between}${formatNumber(high, digits)}`;
+  const largest = Math.max(Math.abs(low), Math.abs(high));
+  const exponent = leadingExponent(largest);
+  const power = wantsPower(exponent) ? exponent : 0;
+  const scaled = Number((largest / 10 ** power).toPrecision(digits));
+  const decimals = Math.min(20, Math.max(0, digits - 1 - leadingExponent(scaled)));
+  const round = (value: number) => withMinus(avoidMinusZero((value / 10 ** power).toFixed(decimals)));
+  const text = `${round(low)}${between}${round(high)}`;
+  return power === 0 ? text : `${text} × ${formatPowerOfTen(power)}`;
+}
+
+const avoidMinusZero = (text: string) => (/^-0(\.0*)?$/.test(text) ? text.slice(1) : text);
 
 /** A whole number with thin spaces between thousands. */
 export function formatCount(value: number): string {
@@ -89,7 +115,7 @@ export function formatP(p: number): string {
 export function formatPercent(share: number): string {
   if (!Number.isFinite(share)) return 'unknown';
   const percent = share * 100;
-  return `${percent >= 10 || percent === 0 ? Math.round(percent) : Number(percent.toPrecision(2))} %`;
+  return `${percent >= 10 || percent === 0 ? Math.round(percent) : Number(percent.toPrecision(2))}\u00a0%`;
 }
 
 /** The power of ten taken out of an axis, so that its numbers stay short: 0 within 10⁻² … 10⁴. */
@@ -118,9 +144,15 @@ export function formatAxisLabel(name: string, quantity: Quantity, units: Units, 
   return units.length === null && units.time === null ? `${name} (table units)` : name;
 }
 
+/** A text followed by the unit of a quantity, on the same line. */
+export function joinUnit(text: string, quantity: Quantity, units: Units): string {
+  const unit = formatUnit(quantity, tameUnits(units));
+  return unit === '' ? text : `${text}\u00a0${unit.replaceAll(' ', '\u00a0')}`;
+}
+
 /** A number followed by the unit of its quantity. */
 export function formatQuantity(value: number, quantity: Quantity, units: Units, digits = 3): string {
-  return `${formatNumber(value, digits)} ${formatUnit(quantity, tameUnits(units))}`.trim();
+  return joinUnit(formatNumber(value, digits), quantity, units);
 }
 
 const SUFFIX = /^([a-z]+)_([xyz]+)$/;

@@ -5,15 +5,20 @@
 export const PAGE_SCRIPT = `
 'use strict';
 for (const plot of document.querySelectorAll('.plot[data-probes]')) {
-  const probes = JSON.parse(plot.dataset.probes);
   const svg = plot.querySelector('svg');
-  const output = plot.closest('figure').querySelector('output');
+  const output = plot.querySelector('output');
   const spot = document.createElementNS('http://www.w3.org/2000/svg', 'circle');
   spot.setAttribute('class', 'spot');
   spot.setAttribute('r', '4.5');
-  const columns = new Set(probes.map((probe) => probe[0]));
-  const isCurve = columns.size === probes.length;
+  let probes = null;
+  let isCurve = false;
   let current = -1;
+  const open = () => {
+    if (probes) return;
+    probes = JSON.parse(plot.dataset.probes);
+    isCurve = new Set(probes.map((probe) => probe[0])).size === probes.length;
+  };
+  const scale = () => svg.getBoundingClientRect().width / svg.viewBox.baseVal.width;
   const show = (index) => {
     current = index;
     const [x, y, text] = probes[index];
@@ -21,17 +26,22 @@ for (const plot of document.querySelectorAll('.plot[data-probes]')) {
     spot.setAttribute('cy', y);
     svg.append(spot);
     output.textContent = text;
+    const [left, top] = [x * scale(), y * scale()];
+    const room = plot.clientWidth - output.offsetWidth;
+    output.style.left = Math.max(0, Math.min(room, left - output.offsetWidth / 2)) + 'px';
+    const above = top - output.offsetHeight - 12;
+    output.style.top = (above < -20 ? top + 12 : above) + 'px';
   };
   const hide = () => {
     spot.remove();
     output.textContent = '';
     current = -1;
   };
-  plot.addEventListener('pointermove', (event) => {
+  const point = (event) => {
+    open();
     const box = svg.getBoundingClientRect();
-    const scale = svg.viewBox.baseVal.width / box.width;
-    const x = (event.clientX - box.left) * scale;
-    const y = (event.clientY - box.top) * scale;
+    const x = (event.clientX - box.left) / scale();
+    const y = (event.clientY - box.top) / scale();
     let best = 0;
     let least = Infinity;
     probes.forEach((probe, index) => {
@@ -39,16 +49,22 @@ for (const plot of document.querySelectorAll('.plot[data-probes]')) {
       if (distance < least) [best, least] = [index, distance];
     });
     show(best);
-  });
+  };
+  plot.addEventListener('pointermove', point);
+  plot.addEventListener('pointerdown', point);
   plot.addEventListener('pointerleave', () => { if (document.activeElement !== plot) hide(); });
   plot.addEventListener('blur', hide);
-  plot.addEventListener('focus', () => { if (current < 0) show(Math.floor(probes.length / 2)); });
+  plot.addEventListener('focus', () => {
+    open();
+    if (current < 0) show(Math.floor(probes.length / 2));
+  });
   const directions = { ArrowLeft: [-1, 0], ArrowRight: [1, 0], ArrowUp: [0, -1], ArrowDown: [0, 1] };
   plot.addEventListener('keydown', (event) => {
     if (event.key === 'Escape') { plot.blur(); return; }
     const direction = directions[event.key];
     if (!direction) return;
     event.preventDefault();
+    open();
     const from = probes[Math.max(current, 0)];
     let best = -1;
     let least = Infinity;

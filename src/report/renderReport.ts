@@ -4,8 +4,10 @@
 
 import { createHash } from 'node:crypto';
 import { openDrawing } from './charts/Drawing.js';
+import type { Figure } from './figure.js';
 import { formatCount } from './format.js';
 import { Html, html, tameText } from './html.js';
+import { PAGE_FILLS } from './legend.js';
 import { PAGE_SCRIPT } from './pageScript.js';
 import { PAGE_STYLE } from './pageStyle.js';
 import type { ReportInput } from './ReportInput.js';
@@ -20,12 +22,6 @@ import { writeSettings } from './sections/settings.js';
 import { writeTests } from './sections/tests.js';
 
 const hash = (text: string) => `'sha256-${createHash('sha256').update(text).digest('base64')}'`;
-
-/** Fills that several pictures share: hatching for places not visited, stripes for values hardly known. */
-const SHARED_FILLS = new Html(`<svg class="defs" aria-hidden="true"><defs>
-<pattern id="hatch" width="6" height="6" patternUnits="userSpaceOnUse" patternTransform="rotate(45)"><line x1="0" y1="0" x2="0" y2="6" stroke="var(--hatch)" stroke-width="1.6"/></pattern>
-<pattern id="veil" width="5" height="5" patternUnits="userSpaceOnUse" patternTransform="rotate(-45)"><line x1="0" y1="0" x2="0" y2="5" stroke="var(--veil)" stroke-width="4.4"/></pattern>
-</defs></svg>`);
 
 function writeHeader(context: PageContext, sections: readonly Section[]): Html {
   const { fit } = context;
@@ -42,20 +38,26 @@ function writeHeader(context: PageContext, sections: readonly Section[]): Html {
       : 'Drift and diffusion at each place';
   const space = ['one dimension', 'two dimensions', 'three dimensions'][fit.data.dimensions - 1] ?? '';
   return html`<header>
-<h1>${found}, from <bdi>${title}</bdi></h1>
+<p class="source"><bdi>${title}</bdi></p>
+<h1>${found}</h1>
 <p class="lead">${formatCount(fit.data.tracks)} tracks in ${space}, read as a Langevin equation of ${fit.model.order} order.</p>
 <nav aria-label="Sections"><ol>${sections.map((section) => html`<li><a href="#${section.id}">${section.title}</a></li>`)}</ol></nav>
 </header>`;
 }
 
+/** A page and, one by one, the pictures on it. */
+export interface DrawnReport {
+  readonly page: string;
+  readonly figures: readonly Figure[];
+}
+
 /**
- * Renders a page that needs nothing beside itself: style, pictures and one small script are inside, and its content
+ * Draws a page that needs nothing beside itself: style, pictures and one small script are inside, and its content
  * security policy forbids everything else. Text from the user's files appears as text alone.
  *
  * @param input  a fit, with the results of other commands where they are to be shown
- * @returns a complete HTML document
  */
-export async function renderReport(input: ReportInput): Promise<string> {
+export async function drawReport(input: ReportInput): Promise<DrawnReport> {
   const context = createContext(input, await openDrawing());
   const sections = [
     writeRecorded(context),
@@ -68,7 +70,7 @@ export async function renderReport(input: ReportInput): Promise<string> {
     writeCautions(context),
   ].filter((section) => section !== null);
   const policy = `default-src 'none'; style-src ${hash(PAGE_STYLE)}; script-src ${hash(PAGE_SCRIPT)}; base-uri 'none'; form-action 'none'`;
-  return html`<!doctype html>
+  const page = html`<!doctype html>
 <html lang="en">
 <head>
 <meta charset="utf-8">
@@ -79,7 +81,7 @@ export async function renderReport(input: ReportInput): Promise<string> {
 <style>${new Html(PAGE_STYLE)}</style>
 </head>
 <body>
-${SHARED_FILLS}
+${PAGE_FILLS}
 ${writeHeader(context, sections)}
 <main>
 ${sections.map((section, i) => html`<section id="${section.id}"><h2><span class="number">${i + 1}</span>${section.title}</h2>\n${section.body}</section>\n`)}
@@ -89,4 +91,10 @@ ${sections.map((section, i) => html`<section id="${section.id}"><h2><span class=
 </body>
 </html>
 `.text;
+  return { page, figures: context.figures };
+}
+
+/** The page alone, a complete HTML document: see `drawReport`. */
+export async function renderReport(input: ReportInput): Promise<string> {
+  return (await drawReport(input)).page;
 }

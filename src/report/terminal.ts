@@ -155,7 +155,7 @@ export function formatFitSummary(fit: FitDocument, style: SummaryStyle = PLAIN_S
       const isColumn = (column: { name: string }) => column.name === component.column;
       const here = atMiddle.find(isColumn);
       const all = everywhere.columns.find(isColumn);
-      const summary = all && summarizePrecision(all, everywhere.visited);
+      const summary = all && summarizePrecision(all, everywhere.columns, everywhere.visited);
       const unit = formatUnit(part.quantity, units);
       const interval = here
         ? formatInterval(here.values[0] ?? NaN, here.low[0] ?? NaN, here.high[0] ?? NaN)

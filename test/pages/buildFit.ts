@@ -68,6 +68,35 @@ export interface FitShape {
   readonly survey?: Record<string, unknown>;
 }
 
+/** What a survey would say, with displacements that are correlated as a model of the order makes them. */
+function describeSurvey({ model, interval, positions, tracks, localizationError }: FitShape) {
+  const isSecond = model.order === 'second';
+  const memory = 6 * interval;
+  // R₀ of the motion is 1; localization error adds 2 s² at lag 0 and takes s² away at lag 1
+  const error = 0.12;
+  const covariances = Array.from({ length: 25 }, (_, lag) => {
+    const motion = lag === 0 ? 1 : isSecond ? 0.92 * Math.exp(-(lag * interval) / memory) : 0;
+    return motion + (lag === 0 ? 2 * error : lag === 1 ? -error : 0);
+  });
+  return {
+    tracks,
+    positions,
+    dimensions: model.dimensions,
+    interval,
+    missingFrames: 37,
+    duration: (positions / tracks) * interval,
+    recommendedOrder: model.order,
+    relaxationTime: isSecond ? memory : null,
+    relaxationTimeInterval: isSecond ? { low: 0.93 * memory, high: 1.08 * memory, level: 0.95 } : null,
+    frictionTimesInterval: isSecond ? 1 / 6 : null,
+    localizationError: Array.from({ length: model.dimensions }, () => localizationError),
+    expectedPrecision: isSecond ? { friction: 0.017, noise: 0.009 } : null,
+    displacementCovariances: Array.from({ length: model.dimensions }, (_, axis) =>
+      covariances.map((value, lag) => value * (lag > 1 ? 1 - 0.1 * axis : 1)),
+    ),
+  };
+}
+
 export function buildFit(shape: FitShape): FitDocument {
   const { model, grid } = shape;
   const d = model.dimensions;
@@ -158,12 +187,7 @@ export function buildFit(shape: FitShape): FitDocument {
     },
     visited: { low: [...grid.low], high: [...grid.high], cells: [...shape.cells], counts, threshold },
     trackSample,
-    survey: {
-      missingFrames: 37,
-      recommendedOrder: model.order,
-      relaxationTime: model.order === 'second' ? 6 * shape.interval : null,
-      ...shape.survey,
-    },
+    survey: { ...describeSurvey(shape), ...shape.survey } as FitDocument['survey'],
     diagnostics: { splinesPerAxis: [...grid.splines], penalty: 0.013 },
     warnings: [],
   });

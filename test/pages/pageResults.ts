@@ -2,6 +2,7 @@
 
 import type { ResimulationResult, ResimulationSeries } from '../../src/checks/ResimulationResult.js';
 import { type Scenario, scenarioSchema } from '../../src/documents/Scenario.js';
+import type { ReportedChallenge, ReportedTest } from '../../src/report/ReportInput.js';
 import { randomStream } from '../../src/numerics/random/RandomStream.js';
 import { bump } from './pageFits.js';
 
@@ -134,6 +135,59 @@ export function exampleResimulation(consistent = true): ResimulationResult {
   };
 }
 
+/** Tests of three statements, as `test --json` prints them. */
+export function exampleTests(): ReportedTest[] {
+  return [
+    {
+      hypothesis: 'uniform-friction',
+      statistic: 183.4,
+      p: 1e-12,
+      rejected: true,
+      parameters: {},
+      note: 'Friction varies by a factor of 2.5 (2.2 to 2.9) over the visited region, most along x.',
+    },
+    {
+      hypothesis: 'conservative-force',
+      statistic: 41.2,
+      p: 0.0004,
+      rejected: true,
+      parameters: {},
+      note: 'The curl of the force is 1.4 s⁻² on average, 11 times its standard error.',
+    },
+    {
+      hypothesis: 'law',
+      statistic: 7.7,
+      p: 0.36,
+      rejected: false,
+      parameters: {
+        g0: { value: 0.41, low: 0.37, high: 0.45 },
+        a: { value: 0.88, low: 0.71, high: 1.05 },
+      },
+      note: 'friction = g0 + a exp(-((x - 0.35)/0.22)^2/2) fits as well as the spline.',
+    },
+  ];
+}
+
+/** The four challenges, as `challenge --json` prints them. */
+export function exampleChallenges(): ReportedChallenge[] {
+  return [
+    { name: 'memory', p: 0.44, holds: true, note: 'Residuals are not correlated beyond two frames.' },
+    {
+      name: 'speed-dependent-friction',
+      p: 0.002,
+      holds: false,
+      note: 'Friction falls by 18 % from slow to fast quarters of the steps.',
+    },
+    {
+      name: 'gaussian-noise',
+      p: 0.61,
+      holds: true,
+      note: 'Excess kurtosis of the residuals is 0.03 ± 0.06.',
+    },
+    { name: 'stationarity', p: 0.27, holds: true, note: 'First and second half give the same coefficients.' },
+  ];
+}
+
 /** A scenario in two dimensions. */
 export function exampleScenario(): Scenario {
   return scenarioSchema.parse({
@@ -150,11 +204,35 @@ export function exampleScenario(): Scenario {
     },
     start: { kind: 'normal', mean: [0, 0], spread: [1, 1] },
     observation: { tracks: 40, frames: 500, interval: 0.05, localizationError: [0.002, 0.002] },
-    warnings: [
-      {
-        code: 'confining-force',
-        message: 'The force confines in every direction, so positions settle to a steady law.',
+    units: { length: 'm', time: 's' },
+    standing: {
+      conditions: [
+        {
+          name: 'friction-positive',
+          title: 'Friction is positive and bounded away from zero',
+          verdict: 'holds',
+          value: 0.4,
+          place: [0.9, 0.1],
+          note: 'The smallest friction is 0.40 1/s, at x = 0.9, y = 0.1.',
+        },
+        {
+          name: 'confinement',
+          title: 'The force confines at large distance',
+          verdict: 'unknown',
+          value: null,
+          place: null,
+          note: 'Outside the visited box the force is a continuation; x is open.',
+        },
+      ],
+      relaxation: {
+        time: 2.4,
+        low: 2.1,
+        high: 2.8,
+        samples: { value: 410, low: 350, high: 480 },
+        confidence: 0.95,
+        note: 'Measured on simulated positions.',
       },
-    ],
+    },
+    warnings: [{ code: 'open-axis', message: 'x is open: a long run may leave the visited region.' }],
   });
 }

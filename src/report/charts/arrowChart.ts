@@ -3,7 +3,7 @@
 import { addToPicture, type Chart, type Drawing, FONT_SIZE } from './Drawing.js';
 import { escapeHtml } from '../html.js';
 import { chooseMapHeight, describePlane, MAP_MARGINS, type PlaneGrid } from './mapChart.js';
-import { roundStepUp } from './ticks.js';
+import { formatTick, roundStepUp } from './ticks.js';
 
 export interface ArrowOptions {
   readonly width: number;
@@ -58,8 +58,8 @@ export function drawArrows(drawing: Drawing, grid: PlaneGrid, options: ArrowOpti
   if (sizes.length === 0) sizes.push(...cells.map((cell) => cell.size));
   sizes.sort((a, b) => a - b);
   const reference = sizes[Math.floor(0.95 * (sizes.length - 1))] || 1;
-  const factor = (1.05 * spacing) / reference;
-  const longest = 1.8 * spacing;
+  const factor = (0.95 * spacing) / reference;
+  const longest = 1.4 * spacing;
 
   const visited = [];
   for (let index = 0; index < columns * rows; index++) {
@@ -77,12 +77,14 @@ export function drawArrows(drawing: Drawing, grid: PlaneGrid, options: ArrowOpti
     x: {
       label: options.xLabel(xExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       domain: [edge(0, 0), edge(0, columns)],
       ticks: 5,
     },
     y: {
       label: options.yLabel(yExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       domain: [edge(1, 0), edge(1, rows)],
       ticks: 5,
     },

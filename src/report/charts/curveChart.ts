@@ -5,7 +5,7 @@
 
 import { axisExponent } from '../format.js';
 import type { Chart, Drawing } from './Drawing.js';
-import { findRange } from './ticks.js';
+import { findRange, formatTick } from './ticks.js';
 
 export interface Curve {
   /** Place along the line; increasing. */
@@ -111,6 +111,7 @@ export function drawCurve(drawing: Drawing, curve: Curve, options: CurveOptions)
     else unvisited.push({ x1: Math.max(first, row.x - half), x2 });
   });
   const visited = rows.filter((row) => row.visited);
+  const ticks = options.height < 200 ? 3 : 5;
   const drawn = drawing.draw({
     width: options.width,
     height: options.height,
@@ -122,18 +123,20 @@ export function drawCurve(drawing: Drawing, curve: Curve, options: CurveOptions)
       label: options.xLabel(xExponent),
       labelAnchor: 'right',
       labelArrow: 'none',
+      tickFormat: formatTick,
       ticks: options.width / 80,
     },
     y: {
       label: options.yLabel(yExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       domain: [...domain],
       nice: true,
-      ticks: 5,
+      ticks,
       tickSize: 0,
     },
     marks: [
-      Plot.gridY({ stroke: 'var(--rule)', strokeOpacity: 1, ticks: 5 }),
+      Plot.gridY({ stroke: 'var(--rule)', strokeOpacity: 1, ticks }),
       Plot.rectY(unvisited, {
         x1: 'x1',
         x2: 'x2',

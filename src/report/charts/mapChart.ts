@@ -1,8 +1,8 @@
 /** A quantity over a plane as cells of a few colour classes; unvisited cells hatched, poorly known ones striped. */
 
 import { axisExponent } from '../format.js';
-import { type Chart, type Drawing, FONT_SIZE } from './Drawing.js';
-import { stepDecimals } from './ticks.js';
+import type { Chart, Drawing } from './Drawing.js';
+import { formatTick } from './ticks.js';
 
 /** Colours of values, from low to high. */
 export const VALUE_COLOURS = Array.from({ length: 7 }, (_, i) => `var(--value-${i})`);
@@ -31,8 +31,8 @@ export interface MapOptions {
   readonly classOf: (index: number) => number | null;
   /** CSS colour of each class. */
   readonly colours: readonly string[];
-  /** Cells to stripe because little is known there. */
-  readonly uncertain?: (index: number) => boolean;
+  /** How uncertain cell `i` is: 0 well known, 1 striped lightly, 2 striped heavily. */
+  readonly uncertainty?: (index: number) => 0 | 1 | 2;
   readonly describe: (index: number) => string;
 }
 
@@ -91,8 +91,9 @@ export function drawMap(drawing: Drawing, grid: PlaneGrid, options: MapOptions):
   const classes = joinCells(grid, (index) => (isVisited(index) ? options.classOf(index) : null));
   const sides = { x1: 'x1', x2: 'x2', y1: 'y1', y2: 'y2' } as const;
   const unvisited = joinCells(grid, (index) => (isVisited(index) ? null : 0)).get(0) ?? [];
-  const uncertain =
-    joinCells(grid, (index) => (isVisited(index) && options.uncertain?.(index) ? 0 : null)).get(0) ?? [];
+  const uncertain = joinCells(grid, (index) =>
+    isVisited(index) ? options.uncertainty?.(index) || null : null,
+  );
   const drawn = drawing.draw({
     width: options.width,
     height: chooseMapHeight(grid, options.width),
@@ -100,27 +101,29 @@ export function drawMap(drawing: Drawing, grid: PlaneGrid, options: MapOptions):
     x: {
       label: options.xLabel(xExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       domain: [edge(0, 0), edge(0, columns)],
       ticks: 5,
     },
     y: {
       label: options.yLabel(yExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       domain: [edge(1, 0), edge(1, rows)],
       ticks: 5,
     },
     marks: [
       Plot.rect(unvisited, { ...sides, fill: 'url(#hatch)' }),
       ...[...classes].map(([key, cells]) =>
-        // A hair of stroke in the same colour closes the seams between neighbouring shapes.
+        // Smoothed edges would leave seams between neighbouring shapes.
         Plot.rect(cells, {
           ...sides,
           fill: options.colours[key] ?? 'none',
-          stroke: options.colours[key] ?? 'none',
-          strokeWidth: 0.6,
+          shapeRendering: 'crispEdges',
         }),
       ),
-      Plot.rect(uncertain, { ...sides, fill: 'url(#veil)' }),
+      Plot.rect(uncertain.get(1) ?? [], { ...sides, fill: 'url(#veil-light)' }),
+      Plot.rect(uncertain.get(2) ?? [], { ...sides, fill: 'url(#veil)' }),
       Plot.frame({ stroke: 'var(--rule)' }),
     ],
   });
@@ -135,38 +138,4 @@ export function drawMap(drawing: Drawing, grid: PlaneGrid, options: MapOptions):
     }
   }
   return { svg: drawn.svg, probes };
-}
-
-/**
- * A strip of the colour classes with their edges.
- *
- * @param edges  one more than there are colours
- * @param label  what the numbers are, with their unit
- */
-export function drawClassLegend(
-  edges: readonly (number | string)[],
-  colours: readonly string[],
-  open: { below: boolean; above: boolean } = { below: false, above: false },
-): string {
-  const width = 372;
-  const left = 22;
-  const step = (width - 2 * left) / Math.max(colours.length, 1);
-  const numbers = edges.filter((edge) => typeof edge === 'number');
-  const decimals = stepDecimals(numbers);
-  const boxes = colours.map(
-    (colour, i) =>
-      `<rect x="${(left + i * step).toFixed(1)}" y="2" width="${step.toFixed(1)}" height="12" fill="${colour}"/>`,
-  );
-  const labels = edges.map((edge, i) => {
-    const text = typeof edge === 'string' ? edge : edge.toFixed(decimals).replace('-', '−');
-    const sign = i === 0 && open.below ? '≤ ' : i === edges.length - 1 && open.above ? '≥ ' : '';
-    return { x: left + i * step, text: sign + text };
-  });
-  // Every second edge is enough where numbers are long.
-  const widest = Math.max(...labels.map((label) => label.text.length)) * FONT_SIZE * 0.56 + 8;
-  const every = Math.max(1, Math.ceil(widest / step));
-  const texts = labels
-    .filter((_, i) => i % every === 0)
-    .map((label) => `<text x="${label.x.toFixed(1)}" y="28">${label.text}</text>`);
-  return `<svg class="legend-strip" viewBox="0 0 ${width} 32" font-size="11" text-anchor="middle" fill="currentColor" aria-hidden="true">${boxes.join('')}<rect x="${left}" y="2" width="${(step * colours.length).toFixed(1)}" height="12" fill="none" stroke="var(--rule)"/>${texts.join('')}</svg>`;
 }

@@ -4,6 +4,7 @@ import type { ResimulationSeries } from '../../checks/ResimulationResult.js';
 import { axisExponent, formatNumber, formatPowerOfTen } from '../format.js';
 import { tameText } from '../html.js';
 import type { Chart, Drawing } from './Drawing.js';
+import { formatTick } from './ticks.js';
 
 /** A label that may end in a unit in brackets, with a power of ten put into the brackets. */
 function labelWithPower(label: string, exponent: number): string {
@@ -43,10 +44,16 @@ export function drawSeries(
     marginBottom: 40,
     marginTop: 30,
     marginRight: 16,
-    x: { label: labelWithPower(series.xLabel, xExponent), labelArrow: 'none', ticks: size.width / 80 },
+    x: {
+      label: labelWithPower(series.xLabel, xExponent),
+      labelArrow: 'none',
+      tickFormat: formatTick,
+      ticks: size.width / 80,
+    },
     y: {
       label: labelWithPower(series.yLabel, yExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       nice: true,
       ticks: 5,
       tickSize: 0,

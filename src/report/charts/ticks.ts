@@ -43,3 +43,12 @@ export function stepDecimals(edges: readonly number[]): number {
   }
   return 10;
 }
+
+/** A tick of an axis: as many decimals as all ticks of the axis need, thin spaces between thousands, a true minus. */
+export function formatTick(value: number, _index: number, ticks: readonly number[] = []): string {
+  const decimals = ticks.length > 1 ? stepDecimals(ticks) : 0;
+  const text = ticks.length > 1 ? value.toFixed(decimals) : String(value);
+  const [whole = '', fraction] = text.replace('-', '−').split('.');
+  const grouped = whole.length > 4 ? whole.replace(/\B(?=(\d{3})+(?!\d))/g, '\u202f') : whole;
+  return fraction === undefined ? grouped : `${grouped}.${fraction}`;
+}

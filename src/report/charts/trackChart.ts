@@ -3,6 +3,7 @@
 import { axisExponent, formatNumber } from '../format.js';
 import type { Chart, Drawing } from './Drawing.js';
 import { chooseMapHeight, describePlane, MAP_MARGINS, type PlaneGrid } from './mapChart.js';
+import { formatTick } from './ticks.js';
 
 /** One sampled track: rows of horizontal and vertical value, already in table units. */
 export interface TrackLine {
@@ -58,7 +59,7 @@ function chooseStrokes(count: number) {
   return { strokeWidth: many ? 0.8 : 1.25, strokeOpacity: many ? 0.75 : 0.95 };
 }
 
-/** Tracks against time (one dimension); the range of the visited cells is left white, the rest hatched. */
+/** Tracks against time, in one dimension. */
 export function drawTracksInTime(
   drawing: Drawing,
   tracks: readonly TrackLine[],
@@ -76,8 +77,20 @@ export function drawTracksInTime(
     height: options.height,
     ...MAP_MARGINS,
     marginLeft: 52,
-    x: { label: options.xLabel(xExponent), labelArrow: 'none', ticks: options.width / 80 },
-    y: { label: options.yLabel(yExponent), labelArrow: 'none', nice: true, ticks: 5, tickSize: 0 },
+    x: {
+      label: options.xLabel(xExponent),
+      labelArrow: 'none',
+      tickFormat: formatTick,
+      ticks: options.width / 80,
+    },
+    y: {
+      label: options.yLabel(yExponent),
+      labelArrow: 'none',
+      tickFormat: formatTick,
+      nice: true,
+      ticks: 5,
+      tickSize: 0,
+    },
     marks: [
       Plot.gridY({ stroke: 'var(--rule)', strokeOpacity: 1, ticks: 5 }),
       ...pieces.map((rows, i) =>
@@ -122,12 +135,14 @@ export function drawTracksInPlane(
     x: {
       label: options.xLabel(xExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       domain: [edge(0, 0), edge(0, columns)],
       ticks: 5,
     },
     y: {
       label: options.yLabel(yExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       domain: [edge(1, 0), edge(1, rows)],
       ticks: 5,
     },

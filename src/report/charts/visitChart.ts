@@ -1,7 +1,8 @@
 /** How many positions were recorded in each cell of one axis. */
 
-import { axisExponent, formatCount } from '../format.js';
+import { axisExponent } from '../format.js';
 import type { Chart, Drawing } from './Drawing.js';
+import { formatTick } from './ticks.js';
 
 export interface VisitOptions {
   readonly width: number;
@@ -11,7 +12,7 @@ export interface VisitOptions {
   readonly describe: (index: number) => string;
 }
 
-/** @param counts  positions in each of the equal cells between low and high; cells under `threshold` are drawn pale */
+/** @param counts  positions in each of the equal cells between low and high; the ground of cells under `threshold` is hatched */
 export function drawVisits(
   drawing: Drawing,
   axis: {
@@ -40,23 +41,32 @@ export function drawVisits(
     marginBottom: 40,
     marginTop: 28,
     marginRight: 16,
-    x: { label: options.xLabel(xExponent), labelArrow: 'none', ticks: options.width / 80 },
+    x: {
+      label: options.xLabel(xExponent),
+      labelArrow: 'none',
+      tickFormat: formatTick,
+      ticks: options.width / 80,
+    },
     y: {
       label: options.yLabel(yExponent),
       labelArrow: 'none',
+      tickFormat: formatTick,
       nice: true,
       ticks: 4,
       tickSize: 0,
-      tickFormat: (tick: number) => (yExponent === 0 ? formatCount(tick) : String(tick)),
     },
     marks: [
       Plot.gridY({ stroke: 'var(--rule)', strokeOpacity: 1, ticks: 4 }),
+      Plot.rectY(
+        bars.filter((bar) => bar.count < axis.threshold),
+        { x1: 'x1', x2: 'x2', y1: 0, y2: Math.max(...bars.map((bar) => bar.y)), fill: 'url(#hatch)' },
+      ),
       Plot.rectY(bars, {
         x1: 'x1',
         x2: 'x2',
         y1: 0,
         y2: 'y',
-        fill: (bar: { count: number }) => (bar.count >= axis.threshold ? 'var(--bar)' : 'var(--rule)'),
+        fill: (bar: { count: number }) => (bar.count >= axis.threshold ? 'var(--bar)' : 'var(--rare)'),
         insetLeft: 0.5,
         insetRight: 0.5,
       }),

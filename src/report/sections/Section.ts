@@ -3,10 +3,11 @@
 import { evaluateFit, type EvaluatedColumn } from '../../uncertainty/evaluateFit.js';
 import type { Units } from '../../units.js';
 import type { Drawing } from '../charts/Drawing.js';
-import { formatAxisLabel, tameUnits } from '../format.js';
+import type { Figure, FigureTable } from '../figure.js';
+import { formatAxisLabel, formatQuantity, tameUnits } from '../format.js';
 import { type Html, tameText } from '../html.js';
 import type { ReportInput } from '../ReportInput.js';
-import { gatherVisitedPlaces, layLine, layPlane, type Plane } from './visitedGrid.js';
+import { cellCentre, findMiddle, gatherVisitedPlaces, layLine, layPlane, type Plane } from './visitedGrid.js';
 
 export interface Section {
   /** Anchor of the section. */
@@ -20,13 +21,22 @@ export interface PageContext extends ReportInput {
   readonly units: Units;
   /** Names of the coordinates, fit for axes. */
   readonly coordinates: readonly string[];
+  /** The pictures drawn so far. */
+  readonly figures: Figure[];
   /** What has been evaluated so far. */
   readonly evaluated: Map<string, Evaluated>;
 }
 
 export function createContext(input: ReportInput, drawing: Drawing): PageContext {
   const coordinates = input.fit.data.coordinates.map((name) => tameText(name, 16));
-  return { ...input, drawing, units: tameUnits(input.fit.data.units), coordinates, evaluated: new Map() };
+  return {
+    ...input,
+    drawing,
+    units: tameUnits(input.fit.data.units),
+    coordinates,
+    figures: [],
+    evaluated: new Map(),
+  };
 }
 
 /** Widths of pictures, in drawing units: on broad pages with two in a row, and everywhere else. */
@@ -38,7 +48,41 @@ export function labelPosition(context: PageContext, axis: number): (exponent: nu
   return (exponent) => formatAxisLabel(context.coordinates[axis] ?? '', 'position', context.units, exponent);
 }
 
-interface Evaluated {
+/** Where a line or plane along `axes` lies, e.g. `at y = 1.2 µm`; empty where the axes are all there are. */
+export function describeElsewhere(context: PageContext, axes: readonly number[]): string {
+  const middle = findMiddle(context.fit.visited);
+  const others = context.coordinates.flatMap((name, axis) => {
+    if (axes.includes(axis)) return [];
+    const place = cellCentre(context.fit.visited, axis, middle[axis] ?? 0);
+    return [`${name} = ${formatQuantity(place, 'position', context.units)}`];
+  });
+  return others.length === 0 ? '' : `at ${others.join(', ')}`;
+}
+
+/** Pairs of axes that span the planes to draw, in two or three dimensions. */
+export function listPlanes(dimensions: number): [number, number][] {
+  if (dimensions < 2) return [];
+  return dimensions === 2
+    ? [[0, 1]]
+    : [
+        [0, 1],
+        [0, 2],
+        [1, 2],
+      ];
+}
+
+/** Places as columns of a table: one for each coordinate. */
+export function tabulatePlaces(context: PageContext, places: Float64Array): FigureTable {
+  const d = context.fit.data.dimensions;
+  return context.coordinates.map((name, axis) => ({
+    name,
+    values: Array.from({ length: places.length / d }, (_, i) => places[i * d + axis] ?? Number.NaN),
+  }));
+}
+
+export const capitalize = (text: string): string => `${text[0]?.toUpperCase() ?? ''}${text.slice(1)}`;
+
+export interface Evaluated {
   readonly columns: readonly EvaluatedColumn[];
   readonly byName: ReadonlyMap<string, EvaluatedColumn>;
   readonly visited: Uint8Array;
@@ -64,9 +108,9 @@ export function evaluateLine(
   context: PageContext,
   axis: number,
   count: number,
-): Evaluated & { x: Float64Array } {
+): Evaluated & { x: Float64Array; places: Float64Array } {
   const { x, places } = layLine(context.fit.visited, axis, count);
-  return { ...evaluateOnce(context, `line ${axis} ${count}`, places), x };
+  return { ...evaluateOnce(context, `line ${axis} ${count}`, places), x, places };
 }
 
 /** The coefficients in the cells of the plane of two axes through the middle of the visited region. */

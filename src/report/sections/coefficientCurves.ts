@@ -1,15 +1,23 @@
-/** Coefficients along lines through the middle of the visited region: pictures and the same values as a table. */
+/** Pictures of the coefficients along lines through the middle of the visited region. */
 
 import type { EvaluatedColumn } from '../../uncertainty/evaluateFit.js';
-import { formatUnit } from '../../units.js';
 import type { Chart } from '../charts/Drawing.js';
 import { chooseRange, drawCurve } from '../charts/curveChart.js';
-import { drawFigure, keyEntry } from '../figure.js';
-import { formatAxisLabel, formatInterval, formatNumber, formatQuantity } from '../format.js';
-import { type Html, html, userText } from '../html.js';
+import { drawFigure } from '../figure.js';
+import { formatAxisLabel, formatInterval, formatNumber, joinUnit } from '../format.js';
+import { type Html, html } from '../html.js';
+import type { LegendPart } from '../legend.js';
 import { type Component, nameComponent, type QuantityPart } from './coefficientParts.js';
-import { BROAD_WIDTH, evaluateLine, labelPosition, NARROW_WIDTH, type PageContext } from './Section.js';
-import { cellCentre, findMiddle } from './visitedGrid.js';
+import {
+  BROAD_WIDTH,
+  capitalize,
+  describeElsewhere,
+  evaluateLine,
+  labelPosition,
+  NARROW_WIDTH,
+  type PageContext,
+  tabulatePlaces,
+} from './Section.js';
 
 /** Places along a line: enough for smooth curves, and a multiple of the usual cell counts. */
 const PLACES = 128;
@@ -17,26 +25,26 @@ const PLACES = 128;
 /** Value and interval at one place, in words. */
 export function describeValue(
   context: PageContext,
-  part: QuantityPart,
-  column: EvaluatedColumn,
+  part: Pick<QuantityPart, 'quantity'>,
+  column: Pick<EvaluatedColumn, 'values' | 'low' | 'high'>,
   i: number,
 ): string {
   const at = (values: Float64Array) => values[i] ?? Number.NaN;
-  const unit = formatUnit(part.quantity, context.units);
-  return `${formatInterval(at(column.values), at(column.low), at(column.high))}${unit === '' ? '' : ` ${unit}`}`;
+  return joinUnit(
+    formatInterval(at(column.values), at(column.low), at(column.high)),
+    part.quantity,
+    context.units,
+  );
 }
 
-/** Where a line along `axis` runs, e.g. `at y = 1.2 µm`; empty in one dimension. */
-function describeLine(context: PageContext, axis: number): string {
-  const middle = findMiddle(context.fit.visited);
-  const others = context.coordinates.flatMap((name, b) =>
-    b === axis
-      ? []
-      : [
-          `${name} = ${formatQuantity(cellCentre(context.fit.visited, b, middle[b] ?? 0), 'position', context.units)}`,
-        ],
-  );
-  return others.length === 0 ? '' : `at ${others.join(', ')}`;
+/** Key to the curves: it stands in each figure in one dimension, and once above all in more. */
+export function listCurveMarks(): LegendPart[] {
+  return [
+    { sample: 'line', text: 'estimate' },
+    { sample: 'band', text: 'interval at a place' },
+    { sample: 'band-wide', text: 'band for the whole curve' },
+    { sample: 'hatched', text: 'not visited' },
+  ];
 }
 
 /** One picture per axis in `axes`. */
@@ -49,11 +57,18 @@ export function drawComponentCurves(
 ): Html {
   const { drawing, units, fit, coordinates } = context;
   const lines = axes.flatMap((axis) => {
-    const { x, byName, visited } = evaluateLine(context, axis, PLACES);
-    const column = byName.get(component.column);
+    const line = evaluateLine(context, axis, PLACES);
+    const column = line.byName.get(component.column);
     if (!column) return [];
     const { values: value, low, high, bandLow, bandHigh } = column;
-    return [{ axis, column, curve: { x, value, low, high, bandLow, bandHigh, visited } }];
+    return [
+      {
+        axis,
+        line,
+        column,
+        curve: { x: line.x, value, low, high, bandLow, bandHigh, visited: line.visited },
+      },
+    ];
   });
   // Sections of one coefficient share their vertical range, so that they can be compared.
   const ranges = lines.map(({ curve }) => chooseRange(curve));
@@ -61,7 +76,7 @@ export function drawComponentCurves(
     Math.min(...ranges.map(([low]) => low)),
     Math.max(...ranges.map(([, high]) => high)),
   ] as const;
-  return html`${lines.map(({ axis, column, curve }) => {
+  return html`${lines.map(({ axis, line, column, curve }) => {
     const name = nameComponent(part, component);
     const draw = (width: number): Chart =>
       drawCurve(drawing, curve, {
@@ -76,51 +91,27 @@ export function drawComponentCurves(
           return `${place}: ${describeValue(context, part, column, i)}`;
         },
       });
-    const along = fit.data.dimensions === 1 ? '' : ` along ${coordinates[axis] ?? ''}`;
-    const title =
-      fit.data.dimensions === 1
-        ? `${name} along ${coordinates[axis] ?? ''}`
-        : `Section${along} ${describeLine(context, axis)}`;
-    const upper = `${title[0]?.toUpperCase()}${title.slice(1)}`;
     const isBroad = fit.data.dimensions === 1;
-    return drawFigure({
-      title: upper,
-      label: `${name} with intervals${along}`,
-      key: isBroad
-        ? html`${keyEntry('line', 'estimate')}${keyEntry('band', 'interval at a place')}${keyEntry('band-wide', 'band for the whole curve')}${keyEntry('hatched', 'not visited')}`
-        : null,
+    const along = `along ${coordinates[axis] ?? ''}`;
+    const elsewhere = describeElsewhere(context, [axis]);
+    const title = isBroad ? capitalize(`${name} ${along}`) : `${capitalize(along)}, ${elsewhere}`;
+    return drawFigure(context.figures, {
+      name: `${component.column} along ${coordinates[axis]}`,
+      title,
+      fileTitle: capitalize(`${name} ${along}${isBroad ? '' : `, ${elsewhere}`}`),
+      label: `${name} with intervals ${along}`,
+      legend: isBroad ? listCurveMarks() : [],
+      sharedLegend: isBroad ? [] : listCurveMarks(),
       chart: isBroad ? { broad: draw(BROAD_WIDTH), narrow: draw(NARROW_WIDTH) } : draw(NARROW_WIDTH),
+      table: [
+        ...tabulatePlaces(context, line.places),
+        { name: component.column, values: column.values },
+        { name: `${component.column}_low`, values: column.low },
+        { name: `${component.column}_high`, values: column.high },
+        { name: `${component.column}_band_low`, values: column.bandLow },
+        { name: `${component.column}_band_high`, values: column.bandHigh },
+        { name: 'visited', values: line.visited },
+      ],
     });
   })}`;
-}
-
-/** The values along the sections as a table, folded away. */
-export function drawLineTable(context: PageContext, part: QuantityPart): Html {
-  const { fit, units, coordinates } = context;
-  const rows = fit.data.dimensions === 1 ? 16 : 8;
-  const unit = formatUnit(part.quantity, units);
-  const position = formatUnit('position', units);
-  const tables = coordinates.map((name, axis) => {
-    const line = evaluateLine(context, axis, rows);
-    const { byName, visited } = line;
-    const body = Array.from(line.x, (x, i) => {
-      if (visited[i] !== 1) return null;
-      return html`<tr><td>${formatNumber(x, 4)}</td>${part.components.map((component) => {
-        const column = byName.get(component.column);
-        if (!column) return null;
-        const at = (values: Float64Array) => values[i] ?? Number.NaN;
-        return html`<td>${formatInterval(at(column.values), at(column.low), at(column.high))}</td><td>${formatNumber(at(column.bandLow))} to ${formatNumber(at(column.bandHigh))}</td>`;
-      })}</tr>`;
-    });
-    const heads = part.components.map(
-      (component) =>
-        html`<th>${nameComponent(part, component)}${unit === '' ? '' : ` (${unit})`}</th><th>band</th>`,
-    );
-    const caption =
-      fit.data.dimensions === 1
-        ? null
-        : html`<caption>Along ${userText(name)}, ${describeLine(context, axis)}</caption>`;
-    return html`<div class="scroll"><table>${caption}<thead><tr><th>${userText(name)}${position === '' ? '' : ` (${position})`}</th>${heads}</tr></thead><tbody>${body}</tbody></table></div>`;
-  });
-  return html`<details${fit.data.dimensions === 1 ? html` open` : null}><summary>Values as a table</summary>${tables}</details>`;
 }

@@ -9,14 +9,26 @@ export function halfWidth(column: EvaluatedColumn, i: number): number {
 }
 
 /**
- * The size against which errors of a column are judged at place `i`: the value itself for quantities that are
- * positive, the largest size over the visited places for those that change sign (force, drift, off-diagonals).
+ * The size against which errors of a column are judged at place `i`: the value itself for quantities that are positive;
+ * for those that change sign the largest there is over the visited places: the longest vector for force and drift, the
+ * largest entry for off-diagonals.
+ *
+ * @param columns  all columns at the same places
  */
-export function createScale(column: EvaluatedColumn, visited: ArrayLike<number>): (index: number) => number {
+export function createScale(
+  column: EvaluatedColumn,
+  columns: readonly EvaluatedColumn[],
+  visited: ArrayLike<number>,
+): (index: number) => number {
   if (isPositiveColumn(column.name)) return (i) => Math.abs(column.values[i] ?? Number.NaN);
+  const quantity = parseColumnName(column.name)?.quantity;
+  const related = columns.filter(({ name }) => parseColumnName(name)?.quantity === quantity);
+  const isVector = quantity === 'force' || quantity === 'drift';
   let largest = 0;
   for (let i = 0; i < column.values.length; i++) {
-    if (visited[i] === 1) largest = Math.max(largest, Math.abs(column.values[i] ?? 0));
+    if (visited[i] !== 1) continue;
+    const sizes = related.map(({ values }) => Math.abs(values[i] ?? 0));
+    largest = Math.max(largest, isVector ? Math.hypot(...sizes) : Math.max(...sizes));
   }
   return () => largest;
 }
@@ -31,18 +43,24 @@ export function isPositiveColumn(name: string): boolean {
 export interface PrecisionSummary {
   readonly low: number;
   readonly high: number;
-  /** Median over the visited places of half-width over scale. */
+  /** Median over the visited places of the half-width of the interval, in the unit of the column. */
+  readonly medianHalfWidth: number;
+  /** Median over the visited places of half-width over scale; NaN where the scale is zero. */
   readonly medianError: number;
-  /** Share of the visited places where the half-width is less than half the scale. */
+  /** Share of the visited places where the interval is narrower than the scale. */
   readonly shareKnown: number;
+  /** Does the value change by less than round-off over the region? */
+  readonly isUniform: boolean;
 }
 
 /** Range and precision over the visited places; null where there are none. */
 export function summarizePrecision(
   column: EvaluatedColumn,
+  columns: readonly EvaluatedColumn[],
   visited: ArrayLike<number>,
 ): PrecisionSummary | null {
-  const scale = createScale(column, visited);
+  const scale = createScale(column, columns, visited);
+  const halves: number[] = [];
   const errors: number[] = [];
   let low = Number.POSITIVE_INFINITY;
   let high = Number.NEGATIVE_INFINITY;
@@ -51,15 +69,22 @@ export function summarizePrecision(
     if (visited[i] !== 1 || !Number.isFinite(value)) continue;
     low = Math.min(low, value);
     high = Math.max(high, value);
+    halves.push(halfWidth(column, i));
     errors.push(halfWidth(column, i) / scale(i));
   }
   if (errors.length === 0) return null;
-  errors.sort((a, b) => a - b);
   const known = errors.filter((error) => error < 0.5).length;
   return {
     low,
     high,
-    medianError: errors[Math.floor(errors.length / 2)] ?? Number.NaN,
+    medianHalfWidth: findMedian(halves),
+    medianError: findMedian(errors),
     shareKnown: known / errors.length,
+    isUniform: high - low <= 1e-6 * Math.max(Math.abs(low), Math.abs(high)),
   };
+}
+
+function findMedian(values: number[]): number {
+  values.sort((a, b) => a - b);
+  return values[Math.floor(values.length / 2)] ?? Number.NaN;
 }

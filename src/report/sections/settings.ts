@@ -3,6 +3,7 @@
 import { formatNumber } from '../format.js';
 import { html, tameText } from '../html.js';
 import type { PageContext, Section } from './Section.js';
+import { writeList } from './settingList.js';
 
 /** A setting as text: nested settings are written as JSON. */
 function writeValue(value: unknown): string {
@@ -10,32 +11,56 @@ function writeValue(value: unknown): string {
   if (typeof value === 'string') return tameText(value, 200);
   if (typeof value === 'boolean') return value ? 'yes' : 'no';
   if (typeof value === 'number') return String(value);
-  const text = JSON.stringify(value);
-  return text === '{}' || text === '[]' ? 'none' : tameText(text, 300);
+  if (Array.isArray(value)) {
+    if (value.length === 0) return 'none';
+    if (value.every((item) => typeof item === 'number')) return tameText(value.join(', '), 300);
+  } else if (Object.values(value).every((item) => item === null)) return 'none';
+  return tameText(JSON.stringify(value), 300);
 }
 
 /** `frictionForm` as `friction form`. */
 const spellName = (name: string) => tameText(name.replace(/([a-z])([A-Z])/g, '$1 $2').toLowerCase(), 60);
 
-function drawList(entries: readonly (readonly [string, unknown])[]) {
-  return html`<dl class="settings">${entries.map(([name, value]) => html`<div><dt>${spellName(name)}</dt><dd>${writeValue(value)}</dd></div>`)}</dl>`;
-}
+const listEntries = (entries: readonly (readonly [string, unknown])[]) =>
+  writeList(entries.map(([name, value]) => [spellName(name), writeValue(value)] as const));
+
+/** Keys of the study that say nothing for the order that was fitted. */
+const IDLE = {
+  first: ['force', 'friction', 'noise', 'frictionForm'],
+  second: ['drift', 'diffusion'],
+} as const;
 
 export function writeSettings(context: PageContext): Section {
-  const { fit } = context;
+  const { fit, resimulation, scenario } = context;
+  const idle: readonly string[] = IDLE[fit.model.order];
   const diagnostics = Object.entries(fit.diagnostics);
   const seconds = Object.values(fit.timing).reduce((sum, value) => sum + value, 0);
-  const body = html`<h3>Sources</h3>
-<dl class="settings single">${fit.sources.map((source) => html`<div><dt>${tameText(source.path.split(/[\\/]/).pop() ?? source.path, 90)}</dt><dd class="hash">SHA-256 ${tameText(source.sha256, 64)}</dd></div>`)}</dl>
-<h3>Study</h3>${drawList(Object.entries(fit.study))}
-${diagnostics.length > 0 ? html`<h3>What the estimator says of itself</h3><details><summary>${diagnostics.length} entries</summary>${drawList(diagnostics)}</details>` : null}
-<h3>Program</h3>${drawList([
+  const sources = fit.sources.map((source): [string, ReturnType<typeof html>] => [
+    tameText(source.path.split(/[\\/]/).pop() ?? source.path, 90),
+    html`<span class="hash">SHA-256 ${tameText(source.sha256, 64)}</span>`,
+  ]);
+  const seeds: [string, unknown][] = [
+    ['seed of the fit', fit.study.seed],
+    ['replicates of the fit', fit.uncertainty.replicates.length],
+    ...(resimulation
+      ? ([
+          ['seed of the re-simulation', resimulation.seed],
+          ['simulated recordings', resimulation.replicates],
+        ] as [string, unknown][])
+      : []),
+    ...(scenario && typeof scenario.provenance.seed === 'number'
+      ? ([['seed behind the scenario', scenario.provenance.seed]] as [string, unknown][])
+      : []),
+  ];
+  const body = html`<h3>Sources</h3>${writeList(sources, true)}
+<h3>Study</h3>${listEntries(Object.entries(fit.study).filter(([name]) => !idle.includes(name)))}
+<h3>Seeds and program</h3>${listEntries([
+    ...seeds,
     ['program', fit.program],
     ['fit written', fit.created],
-    ['time taken', `${formatNumber(seconds)} s`],
+    ['time taken', `${formatNumber(seconds, 2)} s`],
     ['uncertainty', fit.uncertainty.method],
-    ['replicates', fit.uncertainty.replicates.length],
-    ['seed', fit.study.seed],
-  ])}`;
+  ])}
+${diagnostics.length > 0 ? html`<h3>What the estimator says of itself</h3>${listEntries(diagnostics)}` : null}`;
   return { id: 'settings', title: 'Settings, sources and seeds', body };
 }

@@ -1,30 +1,67 @@
 /** Statements tested on the coefficients, and the model's own assumptions tried against the data. */
 
-import { formatInterval, formatNumber, formatP } from '../format.js';
+import { formatInterval, formatNumber } from '../format.js';
 import { type Html, html, tameText } from '../html.js';
+import type { ReportedTest } from '../ReportInput.js';
+import { sayAssumption, sayChallenges, sayP, sayStatement, sayTests } from '../statements.js';
 import type { PageContext, Section } from './Section.js';
 
-function drawTests(context: PageContext): Html | null {
-  if (!context.tests || context.tests.length === 0) return null;
-  return html`<div class="scroll"><table><thead><tr><th class="words">Statement</th><th>p</th><th>Verdict</th><th>Statistic</th><th class="words">In words</th></tr></thead><tbody>${context.tests.map(
-    (test) =>
-      html`<tr><th class="words">${tameText(test.hypothesis, 80)}${Object.entries(test.parameters).map(
-        ([name, { value, low, high }]) =>
-          html`<span class="tag">${tameText(name, 30)} = ${formatInterval(value, low, high)}</span>`,
-      )}</th><td>${formatP(test.p)}</td><td>${test.rejected ? html`<span class="no">rejected</span>` : html`<span class="yes">not rejected</span>`}</td><td>${formatNumber(test.statistic)}</td><td class="words">${tameText(test.note, 600)}</td></tr>`,
-  )}</tbody></table></div>`;
+interface Finding {
+  readonly tone: 'good' | 'bad' | 'strong' | 'open';
+  readonly verdict: string;
+  readonly statement: string;
+  readonly figures: string;
+  readonly note: string;
+  readonly more?: Html | null;
 }
 
-function drawChallenges(context: PageContext): Html | null {
-  if (!context.challenges || context.challenges.length === 0) return null;
-  return html`<h3>Assumptions of the model</h3><div class="scroll"><table><thead><tr><th class="words">Assumption tried</th><th>p</th><th>Verdict</th><th class="words">In words</th></tr></thead><tbody>${context.challenges.map(
-    (check) =>
-      html`<tr><th class="words">${tameText(check.name, 80)}</th><td>${formatP(check.p)}</td><td>${check.holds ? html`<span class="yes">holds</span>` : html`<span class="no">fails</span>`}</td><td class="words">${tameText(check.note, 600)}</td></tr>`,
-  )}</tbody></table></div>`;
+/** One finding a line: verdict, statement, p, and the note. */
+function drawFindings(findings: readonly Finding[]): Html {
+  return html`<ul class="findings">${findings.map(
+    ({ tone, verdict, statement, figures, note, more }) =>
+      html`<li class="${tone}"><span class="outcome">${verdict}</span><div><p><strong>${statement}.</strong> ${tameText(note, 600)}</p>${more}</div><span class="figures">${figures}</span></li>`,
+  )}</ul>`;
+}
+
+function drawParameters({ parameters }: ReportedTest): Html | null {
+  const entries = Object.entries(parameters);
+  if (entries.length === 0) return null;
+  return html`<p class="tag">${entries.map(
+    ([name, { value, low, high }], i) =>
+      html`${i > 0 ? '; ' : ''}<bdi>${tameText(name, 40)}</bdi> = ${formatInterval(value, low, high)}`,
+  )}</p>`;
 }
 
 export function writeTests(context: PageContext): Section | null {
-  const [tests, challenges] = [drawTests(context), drawChallenges(context)];
-  if (!tests && !challenges) return null;
-  return { id: 'tests', title: 'Tests and challenges', body: html`${tests}${challenges}` };
+  const { tests = [], challenges = [] } = context;
+  if (tests.length === 0 && challenges.length === 0) return null;
+  const tested =
+    tests.length === 0
+      ? null
+      : html`<p>${sayTests(tests)} “Not rejected” does not mean proven: the recording may be too small to tell.</p>${drawFindings(
+          tests.map((test) => ({
+            tone: test.rejected ? 'strong' : 'open',
+            verdict: test.rejected ? 'rejected' : 'not rejected',
+            statement: sayStatement(test),
+            figures:
+              test.statistic === null
+                ? sayP(test.p)
+                : `${sayP(test.p)}, statistic ${formatNumber(test.statistic)}`,
+            note: test.note,
+            more: drawParameters(test),
+          })),
+        )}`;
+  const challenged =
+    challenges.length === 0
+      ? null
+      : html`<h3>Assumptions of the model</h3><p>${sayChallenges(challenges)}</p>${drawFindings(
+          challenges.map((check) => ({
+            tone: check.holds ? 'good' : 'bad',
+            verdict: check.holds ? 'holds' : 'fails',
+            statement: sayAssumption(check),
+            figures: sayP(check.p),
+            note: check.note,
+          })),
+        )}`;
+  return { id: 'tests', title: 'Tests and challenges', body: html`${tested}${challenged}` };
 }
