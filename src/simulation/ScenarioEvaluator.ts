@@ -48,17 +48,19 @@ export interface ScenarioEvaluator {
 
 /**
  * @param draw  coefficient vector that replaces those of the basis fields (a member of the ensemble), model order
+ * @param floors  whether negative friction and noise are replaced by zero, as every simulation does
  * @throws UsageError  where a formula cannot be read, or a basis does not match its coefficients
  */
 export async function createScenarioEvaluator(
   scenario: Scenario,
-  draw: readonly number[] | null = null,
+  draw: ArrayLike<number> | null = null,
+  floors = true,
 ): Promise<ScenarioEvaluator> {
   const usesFormulas = Object.values(scenario.coefficients).some(
     (entry) => entry !== undefined && 'formulas' in entry,
   );
   const readFormula = usesFormulas ? await loadFormulaReader() : null;
-  return assembleEvaluator(scenario, draw, readFormula);
+  return assembleEvaluator(scenario, draw, readFormula, floors);
 }
 
 /** The same for scenarios without formulas, at once. */
@@ -66,13 +68,14 @@ export function createBasisEvaluator(
   scenario: Scenario,
   draw: ArrayLike<number> | null = null,
 ): ScenarioEvaluator {
-  return assembleEvaluator(scenario, draw, null);
+  return assembleEvaluator(scenario, draw, null, true);
 }
 
 function assembleEvaluator(
   scenario: Scenario,
   draw: ArrayLike<number> | null,
   readFormula: FormulaReader | null,
+  floors: boolean,
 ): ScenarioEvaluator {
   const { dimensions: d, order } = scenario;
   const slots: Slot[] = [];
@@ -96,11 +99,12 @@ function assembleEvaluator(
   const bathForm: BathForm = forms.includes('matrix') ? 'matrix' : forms.includes('axes') ? 'axes' : 'scalar';
   const bathSize = bathForm === 'matrix' ? d * d : bathForm === 'axes' ? d : 1;
   const floored = { friction: 0, noise: 0 };
-  const writeFriction = order === 'second' ? createBathWriter(frictionSlot, raw, d, bathForm) : null;
-  const writeNoise = createBathWriter(noiseSlot, raw, d, bathForm);
+  const writeFriction = order === 'second' ? createBathWriter(frictionSlot, raw, d, bathForm, floors) : null;
+  const writeNoise = createBathWriter(noiseSlot, raw, d, bathForm, floors);
   const targets =
     scenario.continuation.kind === 'fade' ? findFadeTargets(scenario, slots, writers, raw) : null;
   const { kind, width, stiffness } = scenario.continuation;
+  const restoring = kind === 'hold' ? 0 : (stiffness ?? 0);
 
   const place = new Float64Array(d);
   const excess = new Float64Array(d);
@@ -118,8 +122,8 @@ function assembleEvaluator(
       for (let i = 0; i < total; i++) raw[i] = targets[i] + weight * (raw[i] - targets[i]);
     }
     for (let axis = 0; axis < d; axis++) force[axis] = raw[forceSlot.offset + axis];
-    if (outside && kind === 'confine') {
-      for (let axis = 0; axis < d; axis++) force[axis] -= (stiffness ?? 0) * excess[axis];
+    if (outside && restoring > 0) {
+      for (let axis = 0; axis < d; axis++) force[axis] -= restoring * excess[axis];
     }
     if (writeFriction !== null && writeFriction(friction)) floored.friction++;
     if (writeNoise(noise)) floored.noise++;
@@ -290,6 +294,7 @@ function createBathWriter(
   raw: Float64Array,
   d: number,
   bathForm: BathForm,
+  floors: boolean,
 ): (out: Float64Array) => boolean {
   const { name, coefficient, offset } = slot;
   const form: FieldForm = coefficient.form;
@@ -298,7 +303,7 @@ function createBathWriter(
     return (out) => {
       fillMatrix(name, raw, offset, d, out);
       if (isLogMatrix) exponentiateSymmetricPart(out, d);
-      return clampToPositive(out, d);
+      return floors && clampToPositive(out, d);
     };
   }
   const stride = bathForm === 'matrix' ? d + 1 : 1; // along the diagonal of a matrix, or from axis to axis
@@ -309,7 +314,7 @@ function createBathWriter(
     if (bathForm === 'matrix') out.fill(0);
     for (let axis = 0; axis < size; axis++) {
       let value = raw[offset + axis * perAxis];
-      if (value < 0) {
+      if (floors && value < 0) {
         value = 0;
         negative = true;
       }

@@ -3,7 +3,8 @@
  *
  *   hold     the value at the nearest point of the visited box
  *   fade     from that value to a constant (given, or the mean over the box), within `width` of the edge
- *   confine  hold, with the force −stiffness · (distance beyond the edge) along each axis (drift at first order)
+ *   confine  hold, with the force −stiffness · (distance beyond the edge) along each axis (drift at first order);
+ *            a fading scenario may have a stiffness too
  */
 
 import type { Scenario } from '../documents/Scenario.js';

@@ -100,7 +100,16 @@ function checkScenario(scenario: Scenario, name: string): void {
 
   if (start.kind === 'points') {
     if (start.points.length === 0) refuse('start.points', 'is empty; give at least one position');
-    start.points.forEach((point, index) => checkLength(`start.points[${index}]`, point));
+    start.points.forEach((point, index) => {
+      checkLength(`start.points[${index}]`, point);
+      axes.forEach(({ kind, low, high }, axis) => {
+        if (kind === 'walls' && (point[axis] < (low ?? -Infinity) || point[axis] > (high ?? Infinity)))
+          refuse(
+            `start.points[${index}][${axis}]`,
+            `${point[axis]} lies outside the walls at ${low} and ${high}`,
+          );
+      });
+    });
     if (start.velocities.length > 0 && start.velocities.length !== start.points.length) {
       refuse('start.velocities', `has ${start.velocities.length} entries for ${start.points.length} points`);
     }

@@ -94,8 +94,8 @@ export function measureLengthScale(scenario: Scenario): number {
   return low.reduce((least, value, axis) => Math.min(least, high[axis] - value || Infinity), Infinity);
 }
 
-/** Box in which coefficients are probed. */
-function probeBox(scenario: Scenario): { low: number[]; high: number[] } {
+/** Box in which coefficients are probed: the visited box, the domain, or where tracks start. */
+export function probeBox(scenario: Scenario): { low: number[]; high: number[] } {
   const { axes, visited, start } = scenario;
   const low: number[] = [];
   const high: number[] = [];

@@ -11,8 +11,8 @@ import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
 import { createIntegrator } from './createIntegrator.js';
 import { recommendedStep } from './recommendedStep.js';
 import { createScenarioEvaluator, type ScenarioEvaluator } from './ScenarioEvaluator.js';
+import { drawStartPlace } from './startDraw.js';
 import { createTrackSimulator, type TrackSimulator } from './simulateTrack.js';
-import { readWalls, reflect } from './walls.js';
 
 export interface SimulationOptions {
   /** Each replaces the scenario's own number. */
@@ -151,7 +151,6 @@ export const simulateTracksTask: Task<SharedWork, TrackRange, TrackPiece> = {
     const times = new Float64Array((last - first) * frames);
     const positions = new Float64Array((last - first) * frames * d);
     let rows = 0;
-    const walls = readWalls(scenario);
     const floored = { friction: 0, noise: 0 };
     const evaluators = new Map<number, { evaluator: ScenarioEvaluator; simulate: TrackSimulator }>();
     const start = new Float64Array(d);
@@ -168,8 +167,7 @@ export const simulateTracksTask: Task<SharedWork, TrackRange, TrackPiece> = {
         evaluators.set(draw, prepared);
       }
       const stream = randomStream(seed, 'simulate', track);
-      const velocity = drawStart(scenario, start, stream);
-      if (walls !== null) reflect(start, new Float64Array(d), walls); // a normal law knows nothing of walls
+      const velocity = drawStartPlace(scenario, start, stream);
       const whole = positions.subarray(rows * d, (rows + frames) * d);
       prepared.simulate(frameTimes, 0, frames, start, velocity, whole, stream);
       times.set(frameTimes, rows);
@@ -184,20 +182,6 @@ export const simulateTracksTask: Task<SharedWork, TrackRange, TrackPiece> = {
     return { counts, times: times.slice(0, rows), positions: positions.slice(0, rows * d), floored };
   },
 };
-
-/** Draws where a track begins; returns its velocity where the scenario gives one. */
-function drawStart(scenario: Scenario, start: Float64Array, stream: RandomStream): readonly number[] | null {
-  const { kind, points, velocities, mean, spread } = scenario.start;
-  if (kind === 'points') {
-    const index = stream.integer(points.length);
-    for (let axis = 0; axis < start.length; axis++) start[axis] = points[index][axis];
-    return velocities.length > 0 ? velocities[index] : null;
-  }
-  for (let axis = 0; axis < start.length; axis++) {
-    start[axis] = mean[axis] + spread[axis] * (kind === 'normal' ? stream.normal() : stream.uniform());
-  }
-  return null;
-}
 
 /**
  * Moves the frames that are not lost to the front, in place; the first is always kept, so that no track vanishes.

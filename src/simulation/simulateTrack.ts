@@ -5,11 +5,8 @@
 
 import { NumericalError } from '../errors.js';
 import type { RandomStream } from '../numerics/random/RandomStream.js';
-import { bathVariance } from './secondOrderIntegrator.js';
-import { createMatrixBathStep } from './matrixBathStep.js';
 import type { Integrator } from './Integrator.js';
-import type { ScenarioEvaluator } from './ScenarioEvaluator.js';
-import { choleskyInto } from './smallMatrices.js';
+import { createVelocityDraw } from './startDraw.js';
 
 /** What the recording does to the process. */
 export interface Recording {
@@ -114,41 +111,4 @@ function escapeError(time: number, step: number): NumericalError {
     `a simulated position stopped being finite after time ${Number(time.toPrecision(4))} with step ${Number(step.toPrecision(4))}; use a smaller step, or a force that keeps the particles together`,
     { time, step },
   );
-}
-
-/**
- * Draws velocities from the law friction and noise would settle on with the place held fixed: covariance C with
- * Γ C + C Γᵀ = N (per axis N/(2Γ)). Where friction is next to nothing the variance is bounded by what the noise adds
- * within 100 times the time of the strongest friction seen.
- */
-function createVelocityDraw(
-  evaluator: ScenarioEvaluator,
-): (q: Float64Array, v: Float64Array, stream: RandomStream) => void {
-  const { dimensions: d, bathSize, bathForm } = evaluator;
-  const force = new Float64Array(d);
-  const friction = new Float64Array(bathSize);
-  const noise = new Float64Array(bathSize);
-  const bath = createMatrixBathStep(d);
-  const lower = new Float64Array(d * d);
-  let strongest = 0;
-  return (q, v, stream) => {
-    evaluator.evaluateInto(q, force, friction, noise);
-    for (let i = 0; i < bathSize; i++) strongest = Math.max(strongest, friction[i]);
-    const horizon = strongest > 0 ? 100 / strongest : 1;
-    v.fill(0);
-    if (bathForm === 'matrix') {
-      bath.prepare(friction, noise, horizon);
-      choleskyInto(bath.covariance, d, lower);
-      for (let j = 0; j < d; j++) {
-        const xi = stream.normal();
-        for (let i = j; i < d; i++) v[i] += lower[i * d + j] * xi;
-      }
-      return;
-    }
-    for (let axis = 0; axis < d; axis++) {
-      const i = bathSize === 1 ? 0 : axis;
-      const decay = Math.exp(-friction[i] * horizon);
-      v[axis] = Math.sqrt(bathVariance(friction[i], noise[i], horizon, decay)) * stream.normal();
-    }
-  };
 }

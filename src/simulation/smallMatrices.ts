@@ -135,3 +135,12 @@ export function choleskyInto(matrix: Float64Array, d: number, lower: Float64Arra
     }
   }
 }
+
+/** Spectral norm of the antisymmetric part of a matrix of one to three rows. */
+export function rotationNorm(matrix: Float64Array, d: number): number {
+  let square = 0;
+  for (let i = 0; i < d; i++) {
+    for (let j = i + 1; j < d; j++) square += (0.5 * (matrix[i * d + j] - matrix[j * d + i])) ** 2;
+  }
+  return Math.sqrt(square);
+}
