@@ -3,8 +3,13 @@
 import { UsageError } from '../errors.js';
 import { estimateDifferences } from './differences/estimateDifferences.js';
 import type { Estimator } from './Estimate.js';
+import { estimateLikelihood } from './likelihood/estimateLikelihood.js';
+import { estimateKernel } from './kernel/estimateKernel.js';
 
-const ESTIMATORS: Readonly<Record<string, Estimator>> = { differences: estimateDifferences };
+const ESTIMATORS: Readonly<Record<string, Estimator>> = {
+  differences: estimateDifferences,
+  kernel: estimateKernel,
+};
 
 /**
  * The estimator of that name.

@@ -51,15 +51,37 @@ export function frictionPrecisionBound(input: PrecisionBoundInput): PrecisionBou
     );
   }
   const errorKnown = input.errorKnown ?? errorOverDisplacement === 0;
-  // Lengths in √T·Δ and times in Δ, so T = 1; parameters log Γ, log N and s².
+  const size = errorKnown ? 2 : 3;
+  const perPosition = informationPerPosition(frictionTimesInterval, errorOverDisplacement);
+  const information = Matrix.zeros(size, size);
+  for (let row = 0; row < size; row++) {
+    for (let column = 0; column < size; column++)
+      information.set(row, column, positions * axes * perPosition[row * 3 + column]);
+  }
+  const covariance = inverse(information);
+  return { friction: Math.sqrt(covariance.get(0, 0)), noise: Math.sqrt(covariance.get(1, 1)) };
+}
+
+/**
+ * Fisher information that one position (per axis) brings about log friction, log noise and the localization error
+ * variance, the latter in units of the squared thermal displacement per frame.
+ *
+ * @param frequencies  midpoints over half a turn
+ * @returns shape (3, 3)
+ */
+export function informationPerPosition(
+  frictionTimesInterval: number,
+  errorOverDisplacement: number,
+  frequencies = FREQUENCIES,
+): Float64Array {
+  // Lengths in √T·Δ and times in Δ, so T = 1.
   const friction = Math.log(frictionTimesInterval);
   const noise = Math.log(2 * frictionTimesInterval);
   const variance = errorOverDisplacement ** 2;
-  const size = errorKnown ? 2 : 3;
-  const information = Matrix.zeros(size, size);
+  const information = new Float64Array(9);
   const slopes = [0, 0, 0];
-  for (let i = 0; i < FREQUENCIES; i++) {
-    const cosine = Math.cos((Math.PI * (i + 0.5)) / FREQUENCIES);
+  for (let i = 0; i < frequencies; i++) {
+    const cosine = Math.cos((Math.PI * (i + 0.5)) / frequencies);
     const level = spectrum(friction, noise, variance, cosine);
     slopes[0] =
       (spectrum(friction + STEP, noise, variance, cosine) -
@@ -67,16 +89,13 @@ export function frictionPrecisionBound(input: PrecisionBoundInput): PrecisionBou
       (2 * STEP * level);
     slopes[1] = (level - 2 * variance * (1 - cosine)) / level; // the process part is proportional to the noise
     slopes[2] = (2 * (1 - cosine)) / level;
-    for (let row = 0; row < size; row++) {
-      for (let column = 0; column < size; column++) {
-        information.set(row, column, information.get(row, column) + slopes[row] * slopes[column]);
-      }
+    for (let row = 0; row < 3; row++) {
+      for (let column = 0; column < 3; column++)
+        information[row * 3 + column] += slopes[row] * slopes[column];
     }
   }
-  // (n/4π) ∫ over one turn = (n/2) × mean over half a turn
-  information.mul((positions * axes) / (2 * FREQUENCIES));
-  const covariance = inverse(information);
-  return { friction: Math.sqrt(covariance.get(0, 0)), noise: Math.sqrt(covariance.get(1, 1)) };
+  // (1/4π) ∫ over one turn = (1/2) × mean over half a turn
+  return information.map((value) => value / (2 * frequencies));
 }
 
 function spectrum(logFriction: number, logNoise: number, variance: number, cosine: number): number {

@@ -1,0 +1,228 @@
+/**
+ * The likelihood estimator: state-space quasi-likelihood of the recorded positions, with the coefficients of each step
+ * read at the place the filter predicts. Friction, noise and diffusion are exponentials of their weighted sums, hence
+ * positive by construction; roughness penalties are chosen by marginal likelihood.
+ */
+
+import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
+import { UsageError, type Warning } from '../../errors.js';
+import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
+import { withParameters } from '../../fields/modelParameters.js';
+import type { TrackSet } from '../../tracks/TrackSet.js';
+import { templateModel } from '../differences/estimateDifferences.js';
+import type { Estimate, EstimationPlan } from '../Estimate.js';
+import { createLocalInformation, expectInformation } from './expectedInformation.js';
+import { createFirstOrderPass } from './firstOrderPass.js';
+import { type FieldSlot, layOutLikelihood, type LikelihoodLayout } from './layout.js';
+import type { PassSetting } from './PathPass.js';
+import { type RankedPenalty, type ScoringSolution, solveScores } from './scoring.js';
+import { createSecondOrderPass } from './secondOrderPass.js';
+import { findStart } from './startValues.js';
+
+const FLOOR = 1e-7; // smallest localization error variance, relative to the mean squared displacement per step
+const WIDEST = 40; // |log| of positive coefficients and variances stays below; nothing recorded spans e^40
+
+/**
+ * Estimates the model by likelihood.
+ *
+ * @throws UsageError  for forms and settings it does not cover
+ * @throws DataError  where no track ever moves
+ * @throws NumericalError  where the data cannot tell the functions apart
+ */
+export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Estimate {
+  checkCovered(plan);
+  const model = withLogLinks(templateModel(tracks, plan));
+  const errorEstimated = plan.localizationError === null && tracks.localizationErrors === null;
+  const zero = { force: plan.force.basis === null, friction: plan.friction.basis === null };
+  const layout = layOutLikelihood(model, zero, errorEstimated);
+  const setting: PassSetting = {
+    blockOfPosition: plan.blocks.ofPosition,
+    blocks: plan.blocks.count,
+    knownError: plan.localizationError,
+  };
+  const floors = measureFloors(tracks);
+  const pass = (plan.order === 'second' ? createSecondOrderPass : createFirstOrderPass)(
+    tracks,
+    layout,
+    setting,
+  );
+  const local = createLocalInformation(plan.order);
+  const groups = listPenalties(layout, plan);
+  const solution = solveScores(
+    {
+      size: layout.size,
+      blocks: plan.blocks.count,
+      groups,
+      evaluate: (parameters, scores) => pass.run(parameters, scores),
+      information: (parameters) => expectInformation(tracks, layout, setting, local, parameters),
+      confine: (parameters) => confine(parameters, layout, floors),
+    },
+    findStart(tracks, plan, layout, floors),
+  );
+  const { parameters } = solution;
+  return {
+    model: withParameters(model, parameters.subarray(0, layout.modelSize)),
+    parameters,
+    influences: blockInfluences(solution, plan.blocks.count),
+    smoothingFactor: factorOfSmoothing(solution, groups),
+    toModelParameters: (raw) => raw.slice(0, layout.modelSize),
+    localizationError: describeErrors(tracks, plan, layout, solution, floors),
+    diagnostics: {
+      estimator: 'likelihood',
+      converged: solution.converged,
+      iterations: solution.iterations,
+      logLikelihood: solution.logLikelihood,
+      parameters: layout.size,
+      effectiveParameters: solution.effectiveParameters,
+      roughnessStrengths: Array.from(solution.strengths),
+    },
+    warnings: solution.converged ? [] : [UNCONVERGED],
+  };
+}
+
+const UNCONVERGED: Warning = {
+  code: 'not-converged',
+  message:
+    'the likelihood had not settled when the iterations ran out; take the result with care, use fewer functions, or compare with --estimator differences',
+};
+
+function checkCovered(plan: EstimationPlan): void {
+  if (plan.friction.form === 'matrix' || plan.noise.form === 'matrix') {
+    throw new UsageError(
+      '--estimator likelihood takes scalar and axes forms; use --estimator differences for matrix',
+      {
+        option: '--estimator',
+      },
+    );
+  }
+  if (plan.exposure > 0) {
+    throw new UsageError('--estimator likelihood takes no --exposure; use --estimator differences', {
+      option: '--exposure',
+    });
+  }
+}
+
+function withLogLinks(model: Model): Model {
+  const positive = (field: CoefficientField): CoefficientField => ({ ...field, link: 'log' });
+  if (model.order === 'first') return { ...model, diffusion: positive(model.diffusion) };
+  return { ...model, friction: positive(model.friction), noise: positive(model.noise) };
+}
+
+/** Smallest localization error variance per axis: far below anything that would show. */
+function measureFloors({ dimensions, positions, trackOffsets }: TrackSet): Float64Array {
+  const sums = new Float64Array(dimensions);
+  let count = 0;
+  for (let track = 0; track < trackOffsets.length - 1; track++) {
+    for (let row = trackOffsets[track] + 1; row < trackOffsets[track + 1]; row++) {
+      for (let axis = 0; axis < dimensions; axis++)
+        sums[axis] += (positions[row * dimensions + axis] - positions[(row - 1) * dimensions + axis]) ** 2;
+      count++;
+    }
+  }
+  return sums.map((sum) => Math.max((FLOOR * sum) / Math.max(count, 1), Number.MIN_VALUE));
+}
+
+function confine(parameters: Float64Array, layout: LikelihoodLayout, floors: Float64Array): void {
+  for (const slot of [layout.friction, layout.noise]) {
+    if (!slot || slot.basis < 0) continue;
+    const end = slot.offset + slot.components * slot.functionCount;
+    for (let i = slot.offset; i < end; i++)
+      parameters[i] = Math.min(Math.max(parameters[i], -WIDEST), WIDEST);
+  }
+  if (layout.errorOffset < 0) return;
+  for (let axis = 0; axis < layout.dimensions; axis++) {
+    const i = layout.errorOffset + axis;
+    parameters[i] = Math.min(Math.max(parameters[i], Math.log(floors[axis])), WIDEST);
+  }
+}
+
+function listPenalties(layout: LikelihoodLayout, plan: EstimationPlan): RankedPenalty[] {
+  const groups: RankedPenalty[] = [];
+  const push = (slot: FieldSlot | null, smoothing: EstimationPlan['force']['smoothing']): void => {
+    if (!slot || slot.basis < 0 || smoothing === 'none') return;
+    const roughness = layout.bases[slot.basis].roughness();
+    if (!roughness) return;
+    const k = slot.functionCount;
+    const { realEigenvalues } = decompose(roughness, k);
+    const largest = Math.max(...realEigenvalues);
+    groups.push({
+      offsets: Array.from({ length: slot.components }, (_, component) => slot.offset + component * k),
+      roughness,
+      functionCount: k,
+      rank: realEigenvalues.filter((value) => value > 1e-9 * largest).length,
+    });
+  };
+  push(layout.force, plan.force.smoothing);
+  push(layout.friction, plan.friction.smoothing);
+  push(layout.noise, plan.noise.smoothing);
+  return groups;
+}
+
+function decompose(flat: Float64Array, k: number): EigenvalueDecomposition {
+  return new EigenvalueDecomposition(Matrix.from1DArray(k, k, flat), { assumeSymmetric: true });
+}
+
+/** One-step effect of every block, (I + S)⁻¹ s_b; shape (B, p). */
+function blockInfluences({ scores, inverse, parameters }: ScoringSolution, blocks: number): Float64Array {
+  const p = parameters.length;
+  return Float64Array.from(Matrix.from1DArray(blocks, p, scores).mmul(inverse).to1DArray());
+}
+
+/** Smoothing bias as a random effect, (I + S)⁻¹ S^{1/2}; see `penalizedMoments` for the source. */
+function factorOfSmoothing(
+  { inverse, strengths, parameters }: ScoringSolution,
+  groups: readonly RankedPenalty[],
+): Estimate['smoothingFactor'] {
+  const p = parameters.length;
+  const columns: Float64Array[] = [];
+  groups.forEach(({ offsets, functionCount: k, roughness }, g) => {
+    const { realEigenvalues, eigenvectorMatrix } = decompose(roughness, k);
+    const largest = Math.max(...realEigenvalues);
+    for (const offset of offsets) {
+      for (let e = 0; e < k; e++) {
+        if (realEigenvalues[e] <= 1e-9 * largest) continue;
+        const size = Math.sqrt(strengths[g] * realEigenvalues[e]);
+        columns.push(
+          Float64Array.from({ length: p }, (_, i) => {
+            let sum = 0;
+            for (let j = 0; j < k; j++) sum += inverse.get(i, offset + j) * eigenvectorMatrix.get(j, e);
+            return size * sum;
+          }),
+        );
+      }
+    }
+  });
+  if (columns.length === 0) return null;
+  const values = new Float64Array(p * columns.length);
+  columns.forEach((column, c) => {
+    for (let i = 0; i < p; i++) values[i * columns.length + c] = column[i];
+  });
+  return { values, columns: columns.length };
+}
+
+function describeErrors(
+  tracks: TrackSet,
+  plan: EstimationPlan,
+  layout: LikelihoodLayout,
+  { parameters, inverse }: ScoringSolution,
+  floors: Float64Array,
+): Estimate['localizationError'] {
+  const d = layout.dimensions;
+  return Array.from({ length: d }, (_, axis) => {
+    if (layout.errorOffset < 0)
+      return { value: plan.localizationError?.[axis] ?? rootMeanSquare(tracks, axis), standardError: 0 };
+    const i = layout.errorOffset + axis;
+    const variance = Math.exp(parameters[i]);
+    const value = variance > 2 * floors[axis] ? Math.sqrt(variance) : 0;
+    const varianceError = variance * Math.sqrt(Math.max(inverse.get(i, i), 0));
+    // Near zero the square root flattens: the error of s is then what makes s² one standard error.
+    return { value, standardError: varianceError / (value + Math.sqrt(value * value + varianceError)) };
+  });
+}
+
+function rootMeanSquare({ localizationErrors, dimensions, times }: TrackSet, axis: number): number {
+  if (!localizationErrors) return 0;
+  let sum = 0;
+  for (let i = axis; i < localizationErrors.length; i += dimensions) sum += localizationErrors[i] ** 2;
+  return Math.sqrt(sum / Math.max(times.length, 1));
+}

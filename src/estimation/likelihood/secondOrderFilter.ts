@@ -1,0 +1,154 @@
+/** The forward half of the second-order likelihood: the Kalman filter over one track, written to the tape. */
+
+import type { PathObserver } from './PathPass.js';
+import { readCoefficients } from './readCoefficients.js';
+import type { PassState } from './secondOrderState.js';
+import { growTape, type Tape, UPDATE_SIZE } from './tape.js';
+import { transitionInto } from './transition.js';
+
+const LONGEST_X = 0.5; // Γh of one substep: coefficients are frozen and force slopes summed as series over it
+const LONGEST_PHASE = 0.5; // √|K| h of one substep
+const LONGEST_PATH = 0.7; // cells of the finest basis a substep may cross
+const MOST_SUBSTEPS = 64;
+
+/**
+ * Filters the rows `start` (included) to `end` (excluded).
+ *
+ * @returns their log-likelihood, the first two positions not counted
+ */
+export function filterTrack(
+  state: PassState,
+  parameters: Float64Array,
+  start: number,
+  end: number,
+  observer: PathObserver | undefined,
+): number {
+  const { tracks, layout, tape, diffuse, cellWidths, transition, place, filtered, errorVariance } = state;
+  const { positions, times, localizationErrors } = tracks;
+  const pointErrors = layout.errorOffset < 0 && state.setting.knownError === null ? localizationErrors : null;
+  const d = layout.dimensions;
+  const innovations = observer?.innovations;
+  let logLikelihood = 0;
+  let node = 0;
+  for (let axis = 0; axis < d; axis++) {
+    const at = start * d + axis;
+    filtered[axis * 5] = positions[at];
+    filtered[axis * 5 + 1] = 0;
+    tape.startErrorVariance[axis] = pointErrors ? pointErrors[at] * pointErrors[at] : errorVariance[axis];
+    filtered[axis * 5 + 2] = tape.startErrorVariance[axis];
+    filtered[axis * 5 + 3] = 0;
+    filtered[axis * 5 + 4] = diffuse[axis];
+    if (innovations) innovations[at] = NaN;
+  }
+  // What the last step read decides how finely the next is divided: known before its position is.
+  growTape(tape, 0, 0);
+  for (let axis = 0; axis < d; axis++) place[axis] = filtered[axis * 5];
+  readCoefficients(state, parameters, 0);
+  let steepness = measureSteepness(tape, 0, d);
+
+  for (let row = start + 1; row < end; row++) {
+    const interval = times[row] - times[row - 1];
+    let reach = 0;
+    if (row > start + 1) {
+      for (let axis = 0; axis < d; axis++)
+        reach = Math.max(reach, Math.abs(filtered[axis * 5 + 1]) / cellWidths[axis]);
+    }
+    const substeps = Math.min(
+      MOST_SUBSTEPS,
+      Math.max(1, Math.ceil(interval * Math.max(steepness, reach / LONGEST_PATH) - 1e-9)),
+    );
+    const h = interval / substeps;
+    growTape(tape, node + substeps, row - start);
+    tape.firstNode[row - start] = node;
+    for (let sub = 0; sub < substeps; sub++, node++) {
+      const lastFriction = tape.friction[(node > 0 ? node - 1 : 0) * d];
+      const half = h / (2 + lastFriction * h * 0.5); // (1 − e^{−Γh/2})/Γ to second order
+      for (let axis = 0; axis < d; axis++) place[axis] = filtered[axis * 5] + filtered[axis * 5 + 1] * half;
+      readCoefficients(state, parameters, node);
+      tape.step[node] = h;
+      for (let axis = 0; axis < d; axis++) {
+        const at = node * d + axis;
+        const base = axis * 5;
+        for (let i = 0; i < 5; i++) tape.state[at * 5 + i] = filtered[base + i];
+        tape.centre[at] = place[axis];
+        const noise = tape.noise[at];
+        // Not yet with the diffuse velocity of a start, which would swamp them.
+        if (row > start + 1 && tape.frictionSlope[at] !== 0) addFrictionSlope(tape, at, h, filtered, base);
+        const force = tape.force[at];
+        transitionInto(tape.friction[at], tape.slope[at], h, transition);
+        const aqq = transition[0];
+        const aqv = transition[1];
+        const avq = transition[2];
+        const avv = transition[3];
+        const u = filtered[base] - place[axis];
+        const v = filtered[base + 1];
+        const pqq = filtered[base + 2];
+        const pqv = filtered[base + 3];
+        const pvv = filtered[base + 4];
+        filtered[base] = place[axis] + aqq * u + aqv * v + force * transition[4];
+        filtered[base + 1] = avq * u + avv * v + force * transition[5];
+        filtered[base + 2] = aqq * aqq * pqq + 2 * aqq * aqv * pqv + aqv * aqv * pvv + noise * transition[6];
+        filtered[base + 3] =
+          aqq * avq * pqq + (aqq * avv + aqv * avq) * pqv + aqv * avv * pvv + noise * transition[7];
+        filtered[base + 4] = avq * avq * pqq + 2 * avq * avv * pqv + avv * avv * pvv + noise * transition[8];
+      }
+    }
+    steepness = measureSteepness(tape, node - 1, d);
+    const counted = row > start + 1;
+    for (let axis = 0; axis < d; axis++) {
+      const at = row * d + axis;
+      const base = axis * 5;
+      const spread = pointErrors ? pointErrors[at] * pointErrors[at] : errorVariance[axis];
+      const innovation = positions[at] - filtered[base];
+      const variance = filtered[base + 2] + spread;
+      const gainQ = filtered[base + 2] / variance;
+      const gainV = filtered[base + 3] / variance;
+      const slot = ((row - start) * d + axis) * UPDATE_SIZE;
+      tape.update[slot] = innovation;
+      tape.update[slot + 1] = variance;
+      tape.update[slot + 2] = gainQ;
+      tape.update[slot + 3] = gainV;
+      tape.update[slot + 4] = filtered[base + 1];
+      tape.update[slot + 5] = filtered[base + 4];
+      if (counted) logLikelihood -= (Math.log(variance) + (innovation * innovation) / variance) / 2;
+      if (innovations) innovations[at] = counted ? innovation / Math.sqrt(variance) : NaN;
+      const left = spread / variance;
+      filtered[base] += gainQ * innovation;
+      filtered[base + 1] += gainV * innovation;
+      filtered[base + 4] -= gainV * filtered[base + 3];
+      filtered[base + 2] *= left;
+      filtered[base + 3] *= left;
+    }
+  }
+  tape.firstNode[end - start] = node;
+  return logLikelihood;
+}
+
+/**
+ * What a friction that varies over the uncertain path adds to force and slope of a step: the mean of −Γ(q)v is
+ * −Γ(m)v̄ − Γ′ Cov(q, v), and its derivative along q is −Γ′v̄. The covariance is the mean over the step, to first
+ * order in Γh.
+ */
+function addFrictionSlope(tape: Tape, at: number, h: number, filtered: Float64Array, base: number): void {
+  const x = tape.friction[at] * h;
+  const covariance =
+    filtered[base + 3] * (1 - x / 2) +
+    ((filtered[base + 4] * h) / 2) * (1 - x) +
+    ((tape.noise[at] * h * h) / 6) * (1 - 0.75 * x);
+  tape.force[at] -= tape.frictionSlope[at] * covariance;
+  tape.slope[at] += tape.frictionSlope[at] * filtered[base + 1];
+}
+
+/** Steps per time that Γh and √|K| h ask for at a node. */
+function measureSteepness(tape: Tape, node: number, d: number): number {
+  let steepness = 0;
+  for (let axis = 0; axis < d; axis++) {
+    const at = node * d + axis;
+    steepness = Math.max(
+      steepness,
+      tape.friction[at] / LONGEST_X,
+      Math.sqrt(Math.abs(tape.slope[at])) / LONGEST_PHASE,
+    );
+  }
+  return Math.min(steepness, 1e300);
+}

@@ -1,0 +1,82 @@
+/**
+ * The likelihood pass at second order, axis by axis: a Kalman filter of position and velocity whose coefficients are
+ * read, step by step, where the filter expects the particle to be half a step on; and the adjoint of that filter, which
+ * gives the score.
+ *
+ * Reading the coefficients at a place predicted from the past alone keeps the innovations a martingale difference, so
+ * that the score has mean zero at the true coefficients; reading them along the smoothed path would let the future leak
+ * in. The adjoint recursion is the disturbance smoother in other words: its result is the derivative of the
+ * log-likelihood with the places held, by Fisher's identity the expected complete-data score.
+ *
+ * The first two positions of a track start the filter (diffuse velocity) and are not counted.
+ *
+ * Source  Kalman, J. Basic Eng. 82 (1960) 35; disturbance smoother: de Jong, J. Am. Stat. Assoc. 84 (1989) 181; scores
+ *         from it: Koopman & Shephard, Biometrika 79 (1992) 823; martingale estimating functions: Bibby & Sørensen,
+ *         Bernoulli 1 (1995) 17.
+ */
+
+import { countTracks, type TrackSet } from '../../tracks/TrackSet.js';
+import type { LikelihoodLayout } from './layout.js';
+import type { PassSetting, PathPass } from './PathPass.js';
+import { readErrorVariances } from './errorVariances.js';
+import { smoothTrack } from './secondOrderAdjoint.js';
+import { filterTrack } from './secondOrderFilter.js';
+import type { PassState } from './secondOrderState.js';
+import { SLOPE_SIZE, TRANSITION_SIZE } from './transition.js';
+import { createReader } from './readCoefficients.js';
+import { measureCells } from './measureCells.js';
+
+const DIFFUSE = 1e4; // start variance of a velocity relative to the mean squared secant velocity
+
+/** Prepares the pass; it keeps scratch space of its own. */
+export function createSecondOrderPass(
+  tracks: TrackSet,
+  layout: LikelihoodLayout,
+  setting: PassSetting,
+): PathPass {
+  const d = layout.dimensions;
+  const state: PassState = {
+    ...createReader(layout),
+    tracks,
+    setting,
+    diffuse: measureDiffuse(tracks),
+    cellWidths: measureCells(layout),
+    transition: new Float64Array(TRANSITION_SIZE),
+    slopes: new Float64Array(SLOPE_SIZE),
+    filtered: new Float64Array(5 * d),
+    adjoint: new Float64Array(5 * d),
+    errorVariance: new Float64Array(d),
+  };
+  return {
+    run(parameters, scores, observer) {
+      scores?.fill(0);
+      readErrorVariances(layout, setting, parameters, state.errorVariance);
+      let logLikelihood = 0;
+      for (let track = 0; track < countTracks(tracks); track++) {
+        const start = tracks.trackOffsets[track];
+        const end = tracks.trackOffsets[track + 1];
+        if (end - start < 3) continue;
+        logLikelihood += filterTrack(state, parameters, start, end, observer);
+        if (scores || observer?.velocities || observer?.places)
+          smoothTrack(state, start, end, scores, observer);
+      }
+      return logLikelihood;
+    },
+  };
+}
+
+function measureDiffuse({ dimensions, positions, times, trackOffsets }: TrackSet): Float64Array {
+  const sums = new Float64Array(dimensions);
+  let count = 0;
+  for (let track = 0; track < trackOffsets.length - 1; track++) {
+    for (let row = trackOffsets[track] + 1; row < trackOffsets[track + 1]; row++) {
+      const interval = times[row] - times[row - 1];
+      for (let axis = 0; axis < dimensions; axis++) {
+        const step = positions[row * dimensions + axis] - positions[(row - 1) * dimensions + axis];
+        sums[axis] += (step / interval) ** 2;
+      }
+      count++;
+    }
+  }
+  return sums.map((sum) => DIFFUSE * (sum > 0 ? sum / count : 1));
+}

@@ -1,0 +1,194 @@
+/**
+ * Where the iteration starts. Displacement covariances give friction, noise and localization error as if they were
+ * constant, robustly at any noise; the differences estimate gives their course over space and the force, and is kept
+ * within a factor of those constants.
+ */
+
+import { Matrix, solve } from 'ml-matrix';
+import { DataError, NumericalError } from '../../errors.js';
+import type { CoefficientField } from '../../fields/CoefficientField.js';
+import { createBasis } from '../../fields/createBasis.js';
+import { createModelEvaluator } from '../../fields/evaluateModel.js';
+import { modelFields } from '../../fields/modelParameters.js';
+import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
+import { estimateDifferences } from '../differences/estimateDifferences.js';
+import type { Estimate, EstimationPlan } from '../Estimate.js';
+import { estimateDisplacementCovariances } from '../../momenta/displacementCovariances.js';
+import { fitDisplacementModel, type ModelKind } from '../../momenta/fitDisplacementModel.js';
+import type { FieldSlot, LikelihoodLayout } from './layout.js';
+
+const MOST_PLACES = 6000; // at which the start is read off
+const REACH = 4; // factor from the constant beyond which the course that differences give is cut off
+const SMOOTHNESS = 1e-3; // penalty on the logarithms read off, relative to their weight
+
+/**
+ * Start values of the whole parameter vector.
+ *
+ * @param floors  length d: smallest localization error variance the fit considers, length²
+ */
+export function findStart(
+  tracks: TrackSet,
+  plan: EstimationPlan,
+  layout: LikelihoodLayout,
+  floors: Float64Array,
+): Float64Array {
+  const parameters = new Float64Array(layout.size);
+  const estimate = tryDifferences(tracks, plan);
+  const constants = findConstants(tracks, plan);
+  const d = layout.dimensions;
+  const places = samplePlaces(tracks);
+  if (estimate) parameters.set(modelFields(estimate.model)[0].coefficients.flat(), layout.force.offset);
+  const evaluator = estimate && createModelEvaluator(estimate.model);
+  if (layout.friction)
+    setPositive(parameters, layout.friction, d, places, evaluator?.frictionInto, constants.friction);
+  setPositive(parameters, layout.noise, d, places, evaluator?.noiseInto, constants.noise);
+  if (layout.errorOffset >= 0) {
+    for (let axis = 0; axis < d; axis++) {
+      const variance = constants.errorVariance[axis];
+      parameters[layout.errorOffset + axis] = Math.log(Math.max(variance, 30 * floors[axis]));
+    }
+  }
+  return parameters;
+}
+
+function tryDifferences(tracks: TrackSet, plan: EstimationPlan): Estimate | null {
+  try {
+    return estimateDifferences(tracks, plan);
+  } catch (error) {
+    // Runs too short for differences, or moments that tell nothing apart: the likelihood may still cope.
+    if (error instanceof DataError || error instanceof NumericalError) return null;
+    throw error;
+  }
+}
+
+interface Constants {
+  /** Length d each: friction (1/time), noise (or diffusion), localization error variance (length²). */
+  readonly friction: Float64Array;
+  readonly noise: Float64Array;
+  readonly errorVariance: Float64Array;
+}
+
+/** One number per axis from the displacement covariances. */
+function findConstants(tracks: TrackSet, plan: EstimationPlan): Constants {
+  const { dimensions: d, samplingInterval: interval } = tracks;
+  const covariances = estimateDisplacementCovariances(tracks);
+  const friction = new Float64Array(d);
+  const noise = new Float64Array(d);
+  const errorVariance = new Float64Array(d);
+  const kinds: readonly ModelKind[] =
+    plan.order === 'second' ? ['second-free', 'second-trapped'] : ['first-free', 'first-trapped'];
+  let moving = false;
+  for (let axis = 0; axis < d; axis++) {
+    const given = plan.localizationError ? plan.localizationError[axis] ** 2 : meanSquareError(tracks, axis);
+    const fits = kinds.flatMap((kind) => fitDisplacementModel(covariances, axis, kind, given) ?? []);
+    fits.sort((a, b) => b.logLikelihood - a.logLikelihood);
+    const variance = Math.max(covariances.covariances[axis][0], 0) || 0;
+    if (variance > 0) moving = true;
+    const model = fits[0]?.model;
+    // Without a fit: half the displacement variance is motion, a third of a velocity is lost per frame.
+    let rate = 0.3;
+    let thermal = variance / 2;
+    let diffusion = variance / 4;
+    if (model && 'friction' in model) {
+      rate = model.friction;
+      thermal = model.velocityVariance;
+    } else if (model) {
+      diffusion = model.diffusion;
+    }
+    friction[axis] = Math.min(Math.max(rate, 1e-3), 5) / interval;
+    noise[axis] =
+      plan.order === 'second' ? (2 * friction[axis] * thermal) / (interval * interval) : diffusion / interval;
+    errorVariance[axis] = fits[0]?.errorVariance ?? 0;
+  }
+  if (!moving) {
+    throw new DataError(
+      'no track ever moves, so there is nothing to estimate; check the columns and the tracking',
+    );
+  }
+  const typical = Math.max(...noise);
+  for (let axis = 0; axis < d; axis++) if (!(noise[axis] > 0)) noise[axis] = 1e-6 * typical;
+  return { friction, noise, errorVariance };
+}
+
+/** Mean of the table's own error variances along an axis, or null where it has none. */
+function meanSquareError({ localizationErrors, dimensions, times }: TrackSet, axis: number): number | null {
+  if (!localizationErrors) return null;
+  let sum = 0;
+  for (let i = axis; i < localizationErrors.length; i += dimensions) sum += localizationErrors[i] ** 2;
+  return sum / Math.max(times.length, 1);
+}
+
+/** Coordinates of at most `MOST_PLACES` recorded positions, evenly through the recording. */
+function samplePlaces(tracks: TrackSet): Float64Array {
+  const d = tracks.dimensions;
+  const n = countPositions(tracks);
+  const count = Math.min(n, MOST_PLACES);
+  const places = new Float64Array(count * d);
+  for (let i = 0; i < count; i++) {
+    const row = Math.floor((i * n) / count);
+    for (let axis = 0; axis < d; axis++) places[i * d + axis] = tracks.positions[row * d + axis];
+  }
+  return places;
+}
+
+function setPositive(
+  parameters: Float64Array,
+  slot: FieldSlot,
+  d: number,
+  places: Float64Array,
+  evaluate: ((places: ArrayLike<number>, offset: number, out: Float64Array) => void) | undefined,
+  constants: Float64Array,
+): void {
+  if (slot.basis < 0) return;
+  const matrix = new Float64Array(d * d);
+  for (let component = 0; component < slot.components; component++) {
+    const constant =
+      slot.components === d ? constants[component] : constants.reduce((sum, value) => sum + value, 0) / d;
+    const logarithms = new Float64Array(places.length / d).fill(Math.log(constant));
+    if (evaluate) {
+      for (let place = 0; place < logarithms.length; place++) {
+        evaluate(places, place * d, matrix);
+        const ratio = matrix[component * d + component] / constant;
+        logarithms[place] += Math.log(Math.min(Math.max(ratio, 1 / REACH), REACH));
+      }
+    }
+    const projected = projectLogarithms(slot.field, d, places, logarithms);
+    parameters.set(projected, slot.offset + component * slot.functionCount);
+  }
+}
+
+/** Coefficients whose weighted sum comes closest to the values at the places, slightly smoothed. */
+function projectLogarithms(
+  field: CoefficientField,
+  d: number,
+  places: Float64Array,
+  values: Float64Array,
+): Float64Array {
+  const basis = createBasis(field.basis, d);
+  const k = basis.functionCount;
+  const indices = new Int32Array(basis.support);
+  const weights = new Float64Array(basis.support);
+  const gram = Matrix.zeros(k, k);
+  const right = Matrix.zeros(k, 1);
+  for (let place = 0; place < values.length; place++) {
+    const count = basis.evaluateInto(places, place * d, indices, weights);
+    for (let i = 0; i < count; i++) {
+      const row = indices[i];
+      right.set(row, 0, right.get(row, 0) + weights[i] * values[place]);
+      for (let j = 0; j < count; j++)
+        gram.set(row, indices[j], gram.get(row, indices[j]) + weights[i] * weights[j]);
+    }
+  }
+  const scale = gram.trace() / k;
+  const roughness = basis.roughness();
+  // A pull towards the mean keeps functions that no place reaches finite.
+  const mean = values.reduce((sum, value) => sum + value, 0) / values.length;
+  const constant = basis.spec.kind === 'spline' || basis.spec.kind === 'constant';
+  for (let i = 0; i < k; i++) {
+    gram.set(i, i, gram.get(i, i) + 1e-6 * scale);
+    if (constant) right.set(i, 0, right.get(i, 0) + 1e-6 * scale * mean);
+    if (roughness)
+      for (let j = 0; j < k; j++) gram.set(i, j, gram.get(i, j) + SMOOTHNESS * scale * roughness[i * k + j]);
+  }
+  return Float64Array.from(solve(gram, right).to1DArray());
+}
