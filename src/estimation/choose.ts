@@ -7,6 +7,7 @@ import { estimateLikelihood } from './likelihood/estimateLikelihood.js';
 import { estimateKernel } from './kernel/estimateKernel.js';
 
 const ESTIMATORS: Readonly<Record<string, Estimator>> = {
+  likelihood: estimateLikelihood,
   differences: estimateDifferences,
   kernel: estimateKernel,
 };
