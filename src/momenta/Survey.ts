@@ -16,6 +16,7 @@ export interface Survey extends Recording {
     readonly cells: number;
     readonly visitedCells: number;
     readonly medianVisits: number;
+    /** Share of the positions in places entered fewer than five times, 0 to 1. */
     readonly rareShare: number;
   };
   /** Per axis: root mean square displacement per frame, localization error included, length. */
@@ -61,11 +62,15 @@ export interface Survey extends Recording {
   readonly memoryEvidence: { readonly gain: number; readonly standardErrors: number | null };
   /** Smallest relative standard deviations to expect for constant coefficients; null at first order. */
   readonly expectedPrecision: PrecisionBound | null;
+  /** Tracks that hardly move compared with the others. */
+  readonly immobileTracks: number;
   /** Steps that look like wrong links. */
   readonly suspectJumps: number;
-  /** Correlation of simultaneous displacements of different tracks; null where too few are simultaneous. */
+  /** Correlation of what different tracks do at the same time; null where too few are simultaneous. */
   readonly commonDriftCorrelation: number | null;
-  /** The same in its standard errors. */
+  /** The same in the standard errors it has for independent tracks. */
   readonly commonDriftStandardErrors: number | null;
+  /** Probability of a correlation as large for independent tracks. */
+  readonly commonDriftChance: number | null;
   readonly warnings: Warning[];
 }

@@ -3,6 +3,7 @@
  * single slow passage say little about a place; several passages do.
  */
 
+import { median } from '../numerics/statistics/quantile.js';
 import { countTracks, type TrackSet } from '../tracks/TrackSet.js';
 import { findCell, type VisitedRegion } from '../tracks/visitedRegion.js';
 
@@ -11,7 +12,7 @@ export interface VisitCount {
   readonly cells: number;
   /** Median number of entries of those cells. */
   readonly medianVisits: number;
-  /** Share of those cells with fewer than five entries, 0 to 1. */
+  /** Share of the positions that lie in cells with fewer than five entries, 0 to 1. */
   readonly rareShare: number;
 }
 
@@ -24,19 +25,28 @@ export function countVisits(tracks: TrackSet, visited: VisitedRegion): VisitCoun
   const perAxis = COARSE_CELLS[dimensions - 1];
   const grid = { low: visited.low, high: visited.high, cells: new Array<number>(dimensions).fill(perAxis) };
   const visits = new Int32Array(perAxis ** dimensions);
+  const counts = new Int32Array(visits.length);
   for (let track = 0; track < countTracks(tracks); track++) {
     let before = -1;
     for (let row = trackOffsets[track]; row < trackOffsets[track + 1]; row++) {
       const cell = findCell(grid, periods, positions, row * dimensions);
-      if (cell >= 0 && cell !== before) visits[cell]++;
+      if (cell >= 0) {
+        counts[cell]++;
+        if (cell !== before) visits[cell]++;
+      }
       before = cell;
     }
   }
-  const entered = visits.filter((count) => count > 0).sort();
-  const rare = entered.filter((count) => count < FEW_VISITS).length;
+  let inside = 0;
+  let rare = 0;
+  for (let cell = 0; cell < counts.length; cell++) {
+    inside += counts[cell];
+    if (visits[cell] < FEW_VISITS) rare += counts[cell];
+  }
+  const entered = visits.filter((count) => count > 0);
   return {
     cells: entered.length,
-    medianVisits: entered.length > 0 ? entered[entered.length >> 1] : 0,
-    rareShare: entered.length > 0 ? rare / entered.length : 0,
+    medianVisits: entered.length > 0 ? median(entered) : 0,
+    rareShare: inside > 0 ? rare / inside : 0,
   };
 }

@@ -1,7 +1,8 @@
 /**
- * What was recorded, counted: track lengths, missing frames, gaps, uneven steps, tracks that never move.
+ * What was recorded, counted: track lengths, missing frames, gaps, uneven steps.
  */
 
+import { quantileSorted } from '../numerics/statistics/quantile.js';
 import { INTERVAL_TOLERANCE } from '../tracks/runs.js';
 import { countPositions, countTracks, type TrackSet } from '../tracks/TrackSet.js';
 
@@ -32,12 +33,7 @@ export interface Recording {
   readonly unevenSteps: number;
   /** All steps from one position to the next. */
   readonly steps: number;
-  /** Tracks that spread less than a fourteenth as wide as is usual (variance below 1/200 of the median). */
-  readonly immobileTracks: number;
 }
-
-const IMMOBILE_VARIANCE = 0.005; // free motion of the usual length stays this narrow with negligible probability
-const IMMOBILE_POSITIONS = 5;
 
 /** Counts over all tracks. */
 export function describeRecording(tracks: TrackSet): Recording {
@@ -82,45 +78,12 @@ export function describeRecording(tracks: TrackSet): Recording {
     longestGap,
     unevenSteps,
     steps,
-    immobileTracks: countImmobileTracks(tracks),
   };
 }
 
-/** Minimum, quartiles and maximum (linear interpolation between order statistics); zeros for no values. */
+/** Minimum, quartiles and maximum; zeros for no values. */
 function findQuantiles(values: Float64Array): Quantiles {
   const sorted = values.slice().sort();
-  const at = (share: number): number => {
-    if (sorted.length === 0) return 0;
-    const place = share * (sorted.length - 1);
-    const below = Math.floor(place);
-    const above = Math.ceil(place);
-    return sorted[below] + (place - below) * (sorted[above] - sorted[below]);
-  };
+  const at = (share: number): number => (sorted.length > 0 ? quantileSorted(sorted, share) : 0);
   return { least: at(0), lowerQuartile: at(0.25), median: at(0.5), upperQuartile: at(0.75), most: at(1) };
-}
-
-/** Tracks whose positions spread by far less than those of the usual track, or not at all. */
-function countImmobileTracks(tracks: TrackSet): number {
-  const { dimensions, positions, trackOffsets } = tracks;
-  const spreads: number[] = [];
-  for (let track = 0; track < countTracks(tracks); track++) {
-    const start = trackOffsets[track];
-    const count = trackOffsets[track + 1] - start;
-    if (count < IMMOBILE_POSITIONS) continue;
-    let spread = 0;
-    for (let axis = 0; axis < dimensions; axis++) {
-      const origin = positions[start * dimensions + axis];
-      let sum = 0;
-      let squares = 0;
-      for (let row = start; row < start + count; row++) {
-        const offset = positions[row * dimensions + axis] - origin;
-        sum += offset;
-        squares += offset * offset;
-      }
-      spread += Math.max(squares - (sum * sum) / count, 0) / count;
-    }
-    spreads.push(spread);
-  }
-  const median = findQuantiles(Float64Array.from(spreads)).median;
-  return spreads.filter((spread) => spread <= IMMOBILE_VARIANCE * median).length;
 }

@@ -10,7 +10,9 @@ import { estimateCommonDrift } from './commonDrift.js';
 import { countVisits } from './countVisits.js';
 import { describeRecording } from './describeRecording.js';
 import { type DisplacementCovariances, estimateDisplacementCovariances } from './displacementCovariances.js';
-import type { DisplacementFit, ParameterName } from './fitDisplacementModel.js';
+import type { DisplacementFit } from './displacementLikelihood.js';
+import type { ParameterName } from './displacementParameters.js';
+import { countImmobileTracks } from './immobileTracks.js';
 import { frictionPrecisionBound, type PrecisionBound } from './precisionBound.js';
 import type { Survey } from './Survey.js';
 import { findSuspectJumps } from './suspectJumps.js';
@@ -24,7 +26,9 @@ export interface SurveyOptions {
 
 const LEVEL = 0.95;
 const NORMAL_QUANTILE = 1.959964; // of LEVEL, two-sided
-const FORGOTTEN = 3; // friction × interval beyond which e⁻³ = 5 % of a velocity is left: too little to measure it by
+// Friction × interval at which e⁻³ = 5 % of a velocity is left: too little to measure it by, and diffusion at first
+// order is right to 2 %. Values nearer than their standard error count as beyond, or chance would pick the order.
+const FORGOTTEN = 3;
 
 /**
  * Surveys a recording.
@@ -42,12 +46,12 @@ export function surveyTracks(tracks: TrackSet, options: SurveyOptions = {}): Sur
   const covariances = estimateDisplacementCovariances(tracks);
   const known = listKnownErrors(tracks, options.localizationError ?? 'auto');
   const memory = estimateVelocityMemory(covariances, known.variances);
-  const logFriction =
-    memory.logFriction !== null && memory.logFriction.value < Math.log(FORGOTTEN) ? memory.logFriction : null;
+  const { logFriction: found } = memory;
+  const logFriction = found !== null && found.value + found.error < Math.log(FORGOTTEN) ? found : null;
   const order = logFriction === null ? 'first' : 'second';
   const fits = order === 'second' ? memory.second : memory.first;
   const frictionTimesInterval = logFriction === null ? null : Math.exp(logFriction.value);
-  const drift = estimateCommonDrift(tracks);
+  const drift = estimateCommonDrift(tracks, covariances);
   const axes = fits.map((fit, axis) => describeAxis(fit, known.variances[axis], interval));
   const visits = countVisits(tracks, visited);
   const survey: Omit<Survey, 'warnings'> = {
@@ -94,9 +98,14 @@ export function surveyTracks(tracks: TrackSet, options: SurveyOptions = {}): Sur
       countPositions(tracks),
       known.source !== 'estimated',
     ),
+    immobileTracks: countImmobileTracks(
+      tracks,
+      frictionTimesInterval === null ? null : interval / frictionTimesInterval,
+    ),
     suspectJumps: findSuspectJumps(tracks).length,
     commonDriftCorrelation: drift.correlation,
     commonDriftStandardErrors: drift.standardErrors,
+    commonDriftChance: drift.chance,
   };
   return { ...survey, warnings: warnOfRecording(survey) };
 }

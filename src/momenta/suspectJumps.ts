@@ -6,6 +6,7 @@
  * and the bulk's tail is extrapolated as an exponential, so that heavy but smooth tails are none either.
  */
 
+import { median } from '../numerics/statistics/quantile.js';
 import { INTERVAL_TOLERANCE } from '../tracks/runs.js';
 import { countTracks, type TrackSet } from '../tracks/TrackSet.js';
 
@@ -53,11 +54,11 @@ function measureSteps(tracks: TrackSet, tolerance: number, order: 1 | 2): Float6
         order === 1 ? step : positions[at + 2 * dimensions] - positions[at + dimensions] - step,
       );
     }
-    const median = findMedian(values.slice());
-    if (!(median > 0)) continue;
+    const usual = median(values);
+    if (!(usual > 0)) continue;
     for (let i = 0; i < rows.length; i++) {
       const before = Number.isNaN(size[rows[i]]) ? 0 : size[rows[i]];
-      size[rows[i]] = Math.hypot(before, values[i] / median);
+      size[rows[i]] = Math.hypot(before, values[i] / usual);
     }
   }
   return size;
@@ -67,7 +68,7 @@ function findOutliers(size: Float64Array, tracks: TrackSet, order: 1 | 2): numbe
   const rows: number[] = [];
   for (let row = 0; row < size.length; row++) if (!Number.isNaN(size[row])) rows.push(row);
   if (rows.length < FEWEST_STEPS) return [];
-  const overall = findMedian(Float64Array.from(rows, (row) => size[row]));
+  const overall = median(Float64Array.from(rows, (row) => size[row]));
   const ratios = new Float64Array(rows.length);
   const { trackOffsets } = tracks;
   let track = 0;
@@ -83,7 +84,7 @@ function findOutliers(size: Float64Array, tracks: TrackSet, order: 1 | 2): numbe
         continue;
       if (found < neighbours.length) neighbours[found++] = size[other];
     }
-    const local = found >= NEIGHBOURS ? findMedian(neighbours.slice(0, found)) : overall;
+    const local = found >= NEIGHBOURS ? median(neighbours.subarray(0, found)) : overall;
     ratios[i] = size[row] / Math.max(local, LOCAL_FLOOR * overall);
   }
   const sorted = ratios.slice().sort();
@@ -93,11 +94,4 @@ function findOutliers(size: Float64Array, tracks: TrackSet, order: 1 | 2): numbe
   const reach = tailStart + scale * (Math.log(TAIL_SHARE * rows.length) + BEYOND);
   const limit = Math.max(SMALLEST_RATIO, reach);
   return rows.filter((_, i) => ratios[i] > limit);
-}
-
-/** Median by sorting; the array is reordered. NaN for none. */
-function findMedian(values: Float64Array): number {
-  if (values.length === 0) return NaN;
-  values.sort();
-  return (values[Math.floor((values.length - 1) / 2)] + values[Math.ceil((values.length - 1) / 2)]) / 2;
 }

@@ -9,7 +9,9 @@
  */
 
 import type { DisplacementCovariances } from './displacementCovariances.js';
-import { type DisplacementFit, fitDisplacementModel, type ModelKind } from './fitDisplacementModel.js';
+import type { DisplacementFit } from './displacementLikelihood.js';
+import type { ModelKind } from './displacementParameters.js';
+import { fitDisplacementModel } from './fitDisplacementModel.js';
 
 export interface VelocityMemory {
   /** Best first-order fit per axis; null where an axis does not move. */

@@ -7,9 +7,10 @@ import type { Survey } from './Survey.js';
 const COARSE = 1; // friction × interval at which only e⁻¹ of a velocity reaches the next frame
 const DROWNED = 0.7; // error over displacement: 6 s² then exceeds the second difference of the motion for ΓΔ ≤ 1
 const IMPRECISE = 0.25; // relative standard deviation of friction under which a field cannot be resolved
+const FAINT_MEMORY = 1; // log-likelihood, after the cost of parameters: chance exceeds it in half a per cent of recordings
 const FEW_RELAXATIONS = 3; // of the velocity, per track
 const FEW_POSITIONS = 10; // per track
-const RARE_SHARE = 0.3; // of the cells entered
+const RARE_SHARE = 0.15; // of the positions
 const GAPPY = 0.05; // share of frames missing
 const UNEVEN = 0.01; // share of steps
 const CHANCE = 1e-4; // probability at which a common drift stops being chance
@@ -55,7 +56,7 @@ function warnOfSampling(survey: Omit<Survey, 'warnings'>): Warning[] {
     });
   }
   const evidence = survey.memoryEvidence;
-  if (x === null && evidence.gain > 0) {
+  if (x === null && evidence.gain > FAINT_MEMORY) {
     warnings.push({
       code: 'velocity-memory-unclear',
       message:
@@ -114,7 +115,7 @@ function warnOfLengths(survey: Omit<Survey, 'warnings'>): Warning[] {
   if (survey.visited.rareShare > RARE_SHARE) {
     warnings.push({
       code: 'few-visits',
-      message: `${percent(survey.visited.rareShare)} of the places were entered fewer than five times; trust the bands there, and prefer simple shapes`,
+      message: `${percent(survey.visited.rareShare)} of the positions lie in places entered fewer than five times; trust the bands there, and prefer simple shapes`,
     });
   }
   return warnings;
@@ -131,18 +132,12 @@ function warnOfJumps({ suspectJumps, steps }: Omit<Survey, 'warnings'>): Warning
 }
 
 function warnOfCommonDrift(survey: Omit<Survey, 'warnings'>): Warning[] {
-  const { commonDriftCorrelation: correlation, commonDriftStandardErrors: errors } = survey;
-  // The standard error comes from 30 blocks of frames.
-  if (
-    correlation !== null &&
-    errors !== null &&
-    correlation > DRIFT_CORRELATION &&
-    studentTail(errors, 29) < CHANCE
-  ) {
+  const { commonDriftCorrelation: correlation, commonDriftChance: chance } = survey;
+  if (correlation !== null && chance !== null && correlation > DRIFT_CORRELATION && chance < CHANCE) {
     return [
       {
         code: 'common-drift',
-        message: `tracks move together (correlation of simultaneous displacements ${show(correlation)}); subtract the drift of stage or sample first`,
+        message: `tracks move together (correlation ${show(correlation)} between tracks at the same time); subtract the drift of stage or sample first`,
       },
     ];
   }
