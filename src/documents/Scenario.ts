@@ -149,7 +149,7 @@ export const scenarioSchema = z.strictObject({
         .nullable()
         .default(null)
         .describe(
-          'restoring force per mass and length beyond the edge, 1/time² (second order); restoring drift per length, 1/time (first order)',
+          'restoring force per mass and length beyond the edge, 1/time² (second order), or drift per length, 1/time (first order): needed to confine, possible with fade',
         ),
     })
     .default({ kind: 'hold', width: null, towards: {}, stiffness: null })

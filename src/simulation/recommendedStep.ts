@@ -18,7 +18,7 @@ export interface StepAdvice {
 
 const FRICTION_SHARE = 0.1; // of 1/Γ: diffusion errs by (Γh)²/12
 const FORCE_SHARE = 0.06; // of 1/ω: the temperature of an oscillator errs by (ωh)²/4
-const DRIFT_SHARE = 0.1; // of 1/|μ′|, first order: the variance of a trap errs by about (μ′h)²/6
+const DRIFT_SHARE = 0.05; // of 1/|μ′|, first order: the variance of a trap errs by (μ′h)²/6, a displacement by twice that
 const VARIATION_SHARE = 0.1; // of the length over which coefficients change, per step
 const PLACES = 400;
 const HIGH_SHARE = 0.98; // share of the probed places that must be covered; fitted edges may be wild
@@ -28,7 +28,7 @@ const HIGH_SHARE = 0.98; // share of the probed places that must be covered; fit
  *
  * Second order  h ≤ 0.1/Γ, h ≤ 0.06/√|∂F|, and thermal motion per step ≤ 0.1 of the length over which force gradient,
  *               friction or noise change by their own size
- * First order   h ≤ 0.1/|∂μ|, and √(2Dh) ≤ 0.1 of that length for the diffusion
+ * First order   h ≤ 0.05/|∂μ|, and √(2Dh) ≤ 0.1 of that length for the diffusion
  *
  * The step never exceeds the interval between frames.
  */

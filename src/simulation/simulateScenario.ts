@@ -8,10 +8,12 @@ import { UsageError, type Warning } from '../errors.js';
 import { type MapTasks, mapTasksSerially, type Task } from '../numerics/MapTasks.js';
 import { type RandomStream, randomStream } from '../numerics/random/RandomStream.js';
 import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
+import { controlStep, type StepControl } from './controlStep.js';
 import { createIntegrator } from './createIntegrator.js';
 import { recommendedStep } from './recommendedStep.js';
 import { createScenarioEvaluator, type ScenarioEvaluator } from './ScenarioEvaluator.js';
-import { drawStartPlace } from './startDraw.js';
+import { createStartDraw, drawStartPlace } from './startDraw.js';
+import { assessConditions, STANDING_CODE, warnOfConditions } from './standingConditions.js';
 import { createTrackSimulator, type TrackSimulator } from './simulateTrack.js';
 
 export interface SimulationOptions {
@@ -22,6 +24,8 @@ export interface SimulationOptions {
   readonly seed: number;
   /** Draws the coefficients of each track from the scenario's ensemble. */
   readonly ensemble?: boolean;
+  /** Halves the time step until no average errs by more than this share, as far as a simulation of its own shows. */
+  readonly tolerance?: number;
   readonly mapTasks?: MapTasks;
   readonly onProgress?: (done: number, total: number) => void;
 }
@@ -31,6 +35,8 @@ export interface SimulationResult {
   readonly warnings: readonly Warning[];
   /** Time step that was used. */
   readonly step: number;
+  /** What halving the step showed; null where no tolerance was asked for. */
+  readonly stepControl: StepControl | null;
 }
 
 interface SharedWork {
@@ -66,7 +72,7 @@ export async function simulateScenario(
   scenario: Scenario,
   options: SimulationOptions,
 ): Promise<SimulationResult> {
-  const { seed, mapTasks = mapTasksSerially, ensemble = false } = options;
+  const { seed, tolerance, mapTasks = mapTasksSerially, ensemble = false } = options;
   const observation = {
     ...scenario.observation,
     tracks: checkCount('--tracks', options.tracks ?? scenario.observation.tracks),
@@ -84,8 +90,15 @@ export async function simulateScenario(
     });
   }
   const run: Scenario = { ...scenario, observation, ensemble: ensemble ? scenario.ensemble : null };
-  const warnings: Warning[] = scenario.warnings.map(({ code, message }) => ({ code, message }));
-  const step = chooseStep(run, await createScenarioEvaluator(run), warnings);
+  const warnings: Warning[] = scenario.warnings
+    .filter(({ code }) => !code.startsWith(STANDING_CODE)) // told anew, for the file may have been changed
+    .map(({ code, message }) => ({ code, message }));
+  const evaluator = await createScenarioEvaluator(run);
+  warnings.push(...warnOfConditions(await assessConditions(run)));
+  const chosen = chooseStep(run, evaluator, warnings);
+  const stepControl =
+    tolerance === undefined ? null : tryHalving(run, evaluator, chosen, tolerance, seed, warnings);
+  const step = stepControl?.step ?? chosen;
 
   const perPiece = Math.max(1, Math.floor(ROWS_PER_PIECE / observation.frames));
   const ranges: TrackRange[] = [];
@@ -103,7 +116,7 @@ export async function simulateScenario(
       message: `${word} was negative in ${count} steps and taken as zero there; see where the fit leaves it unsupported`,
     });
   }
-  return { tracks: joinPieces(run, pieces), warnings, step };
+  return { tracks: joinPieces(run, pieces), warnings, step, stepControl };
 }
 
 function checkCount(option: string, value: number): number {
@@ -132,6 +145,41 @@ export function chooseStep(scenario: Scenario, evaluator: ScenarioEvaluator, war
     });
   }
   return step;
+}
+
+/** Step-size control on demand. */
+function tryHalving(
+  scenario: Scenario,
+  evaluator: ScenarioEvaluator,
+  step: number,
+  tolerance: number,
+  seed: number,
+  warnings: Warning[],
+): StepControl {
+  if (!(tolerance > 0 && tolerance < 1)) {
+    throw new UsageError(`--tolerance is a share and must be above 0 and below 1, got ${tolerance}`, {
+      option: '--tolerance',
+      value: tolerance,
+    });
+  }
+  const { interval, frames } = scenario.observation;
+  const control = controlStep(createIntegrator(scenario, evaluator), {
+    step,
+    tolerance,
+    seed,
+    interval,
+    duration: frames * interval,
+    drawStart: createStartDraw(scenario, evaluator),
+  });
+  if (!control.converged) {
+    warnings.push({
+      code: 'coarse-step',
+      message: `after ${control.halvings} halvings, at the time step ${Number(control.step.toPrecision(3))}, the mean ${control.average} still errs by about ${Number((100 * control.error).toPrecision(2))} % ± ${Number((100 * control.errorDeviation).toPrecision(1))} %; use a larger tolerance`,
+    });
+  }
+  evaluator.floored.friction = 0;
+  evaluator.floored.noise = 0;
+  return control;
 }
 
 /** The worker's part: a range of tracks. */
