@@ -13,10 +13,11 @@ export interface FieldPlan {
   readonly basis: BasisSpec | null;
   readonly form: FieldForm;
   /**
-   * `none`: no roughness penalty, so that smooth averages of the coefficient are free of smoothing bias (tests of
-   * hypotheses ask for this); default: penalised, with the strength chosen from the data.
+   * `light`: a roughness penalty so weak that smooth averages of the coefficient are free of smoothing bias, yet
+   * functions that hardly any data reach are held in place (tests of hypotheses ask for this); no bias is accounted
+   * for. Default: penalised with a strength chosen from the data.
    */
-  readonly smoothing?: 'penalized' | 'none';
+  readonly smoothing?: 'penalized' | 'light';
 }
 
 /** What to estimate. At first order `force` plans the drift, `noise` the diffusion, and `friction` is unused. */

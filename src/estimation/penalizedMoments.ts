@@ -31,6 +31,8 @@ export interface PenaltyGroup {
   /** Shape (k, k), k the length of each stretch. */
   readonly roughness: Float64Array;
   readonly functionCount: number;
+  /** Relative strength that is not for the data to choose; its bias is taken as negligible. */
+  readonly fixedStrength?: number;
 }
 
 export interface MomentSolution {
@@ -78,17 +80,20 @@ export function solvePenalizedMoments(
   const folds = foldMoments(
     moments,
     whiten,
-    groups.length > 0 && !known ? Math.min(FOLDS, moments.matrices.length) : 1,
+    !known && groups.some((group) => group.fixedStrength === undefined)
+      ? Math.min(FOLDS, moments.matrices.length)
+      : 1,
   );
   const information = crossProduct(folds.totalMatrix);
   const groupScales = groups.map((group) => informationScale(information, group));
   const ridge = parameterScales(information, groups).map((scale) => RIDGE * scale);
 
-  const strengths = known ? [...known] : groups.map(() => 1e-2);
+  const strengths = groups.map((group, g) => group.fixedStrength ?? known?.[g] ?? 1e-2);
   if (folds.parts.length > 1) {
     const judge = crossValidation(folds, groups, groupScales, ridge);
     for (let sweep = 0; sweep < (groups.length > 1 ? 2 : 1); sweep++) {
       for (let g = 0; g < groups.length; g++) {
+        if (groups[g].fixedStrength !== undefined) continue;
         let best = Infinity;
         let chosen = strengths[g];
         for (const trial of STRENGTHS) {
@@ -287,7 +292,7 @@ function smoothingFactorOf(
   influences: Float64Array,
   p: number,
 ): MomentSolution['smoothingFactor'] {
-  if (groups.length === 0) return null;
+  if (groups.every((group) => group.fixedStrength !== undefined)) return null;
   const blocks = influences.length / p;
   const rows = Matrix.from1DArray(blocks, p, influences);
   const observed = rows.mmul(information).mul(rows).sum();
@@ -295,6 +300,7 @@ function smoothingFactorOf(
   const scale = Math.sqrt(observed / Math.max(modelled, Number.MIN_VALUE));
   const columns: Float64Array[] = [];
   groups.forEach((group, g) => {
+    if (group.fixedStrength !== undefined) return;
     const k = group.functionCount;
     const { values, vectors } = symmetricEigen(group.roughness, k);
     for (const offset of group.offsets) {

@@ -14,12 +14,7 @@ import { withParameters } from '../../fields/modelParameters.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { Estimate, EstimationPlan, FieldPlan } from '../Estimate.js';
 import { type MomentSolution, type PenaltyGroup, solvePenalizedMoments } from '../penalizedMoments.js';
-import {
-  collectDiffusionMoments,
-  collectDriftMoments,
-  driftBasis,
-  type ErrorSums,
-} from './firstOrder.js';
+import { collectDiffusionMoments, collectDriftMoments, driftBasis, type ErrorSums } from './firstOrder.js';
 import { createIntervalCorrection } from './intervalCorrection.js';
 import { layOutSecondOrder } from './forceFriction.js';
 import { checkSecondOrderRuns, collectNoiseMoments, type NoiseMoments } from './residuals.js';
@@ -42,9 +37,9 @@ export function estimateDifferences(tracks: TrackSet, plan: EstimationPlan): Est
   const layout = layOutSecondOrder(plan, dimensions);
   const drift = driftBasis(plan, dimensions);
   const groups: PenaltyGroup[] = [];
-  if (layout.force && isPenalized(plan.force)) pushGroup(groups, layout.force, 0, dimensions);
-  if (second && layout.friction && isPenalized(plan.friction))
-    pushGroup(groups, layout.friction, layout.frictionOffset, layout.frictionComponents);
+  if (layout.force) pushGroup(groups, layout.force, 0, dimensions, plan.force);
+  if (second && layout.friction)
+    pushGroup(groups, layout.friction, layout.frictionOffset, layout.frictionComponents, plan.friction);
 
   let motion: MotionPart = NO_MOTION;
   let moments: NoiseMoments;
@@ -71,7 +66,7 @@ export function estimateDifferences(tracks: TrackSet, plan: EstimationPlan): Est
     moments = diffusion;
   }
   const noiseGroups: PenaltyGroup[] = [];
-  if (isPenalized(plan.noise)) pushGroup(noiseGroups, noiseBasis, 0, moments.size / noiseBasis.functionCount);
+  pushGroup(noiseGroups, noiseBasis, 0, moments.size / noiseBasis.functionCount, plan.noise);
   const noise = solvePenalizedMoments(moments, noiseGroups);
 
   const parameters = joined(motion.parameters, noise.parameters);
@@ -124,17 +119,23 @@ export const UNCONVERGED: Warning = {
     'localization error and friction did not settle on each other; give the localization error with --localization-error, or record more positions',
 };
 
-function isPenalized(field: FieldPlan): boolean {
-  return field.smoothing !== 'none';
-}
+/** Of the information per parameter: smooths a function only where it has a hundredth of the others' data. */
+export const LIGHT_SMOOTHING = 0.01;
 
-function pushGroup(groups: PenaltyGroup[], basis: Basis, offset: number, copies: number): void {
+function pushGroup(
+  groups: PenaltyGroup[],
+  basis: Basis,
+  offset: number,
+  copies: number,
+  field: FieldPlan,
+): void {
   const roughness = basis.roughness();
   if (!roughness) return;
   groups.push({
     offsets: Array.from({ length: copies }, (_, copy) => offset + copy * basis.functionCount),
     roughness,
     functionCount: basis.functionCount,
+    fixedStrength: field.smoothing === 'light' ? LIGHT_SMOOTHING : undefined,
   });
 }
 

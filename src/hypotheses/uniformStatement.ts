@@ -1,0 +1,31 @@
+/** Uniformity: a coefficient is the same everywhere; what it is is left to the data. */
+
+import type { Model } from '../fields/CoefficientField.js';
+import { distinctColumnNames, readColumns } from './readColumns.js';
+import { identity, type Statement } from './Statement.js';
+
+/** c_j(q) = φ_j for every distinct component of friction, noise or diffusion. */
+export function createUniformStatement(
+  model: Model,
+  coefficient: 'friction' | 'noise' | 'diffusion',
+): Statement {
+  const names = distinctColumnNames(model, coefficient);
+  return {
+    parameterNames: names,
+    columnNames: names,
+    residualNames: names,
+    extraNames: [],
+    columns: (at, places) => readColumns(at, names, places),
+    extras: () => [],
+    combination: () => identity(names.length),
+    target: (parameters, places) =>
+      names.map((_, j) => new Float64Array(places.length / model.dimensions).fill(parameters[j])),
+    starts: (columns) => [Float64Array.from(columns, meanOf)],
+  };
+}
+
+function meanOf(values: Float64Array): number {
+  let sum = 0;
+  for (let i = 0; i < values.length; i++) sum += values[i];
+  return sum / values.length;
+}
