@@ -40,7 +40,9 @@ export type ResimulationSeriesKind =
   | 'displacement'
   | 'mean-squared-displacement'
   | 'velocity-autocorrelation'
-  | 'kinetic-temperature';
+  | 'kinetic-temperature'
+  | 'residence-time'
+  | 'first-passage-time';
 
 /** A curve of the recording with the band of the simulated ones; all arrays have one length. */
 export interface ResimulationSeries {
@@ -64,10 +66,26 @@ export interface ResimulationSeries {
   readonly high: readonly (number | null)[];
 }
 
+/** A mean residence or first-passage time. */
+export interface ResimulationTime {
+  /** As in the statistics: `residence-time:left`, `first-passage-time:left-right`. */
+  readonly name: string;
+  /** Time; null where no end was seen. */
+  readonly recorded: number | null;
+  /** Ends seen in the recording. */
+  readonly events: number;
+  /** 2.5 %, 50 % and 97.5 % points of the simulated means; null where a simulation saw no end. */
+  readonly low: number | null;
+  readonly median: number | null;
+  readonly high: number | null;
+}
+
 export interface ResimulationResult {
   readonly replicates: number;
   readonly seed: number;
   readonly statistics: readonly ResimulationStatistic[];
+  /** Mean residence and first-passage times; empty where no region was given. */
+  readonly times: readonly ResimulationTime[];
   /** Empty where no refit was asked for. */
   readonly refit: readonly RefitCoefficient[];
   /** Joint p-value of all statistics together. */

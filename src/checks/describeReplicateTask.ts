@@ -2,7 +2,8 @@
 
 import type { Task } from '../numerics/MapTasks.js';
 import { type Design, simulateDesign } from './simulateDesign.js';
-import { type FeatureLayout, measureFeatures } from './trackFeatures.js';
+import type { FeatureLayout } from './featureLayout.js';
+import { measureFeatures } from './measureFeatures.js';
 
 interface SharedWork {
   readonly design: Design;

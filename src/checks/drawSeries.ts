@@ -11,7 +11,7 @@ import {
   findBlock,
   SPEED_BINS,
   speedBinCentres,
-} from './trackFeatures.js';
+} from './featureLayout.js';
 
 /**
  * Turns features into curves: densities of occupancy, speed and displacement, mean squared displacement and velocity
@@ -55,7 +55,7 @@ export function drawSeries(
     const width =
       (layout.periods[axis] > 0 ? layout.periods[axis] : layout.high[axis] - low) / layout.binsPerAxis;
     const x = Array.from({ length: layout.binsPerAxis }, (_, bin) => low + (bin + 0.5) * width);
-    const labels: [string, string] = [label(coordinate, 'position', units), 'share per length'];
+    const labels: [string, string] = [label(coordinate, 'position', units), density('length', units)];
     const offset = occupancy.offset + axis * layout.binsPerAxis;
     add(
       'occupancy',
@@ -69,11 +69,46 @@ export function drawSeries(
     );
   });
 
+  const temperature = findBlock(layout, 'curve:kinetic-temperature');
+  coordinates.forEach((coordinate, axis) => {
+    if (temperature === undefined) return;
+    const low = layout.low[axis];
+    const width =
+      (layout.periods[axis] > 0 ? layout.periods[axis] : layout.high[axis] - low) / layout.binsPerAxis;
+    const x = Array.from({ length: layout.binsPerAxis }, (_, bin) => low + (bin + 0.5) * width);
+    add(
+      'kinetic-temperature',
+      `kinetic-temperature-${coordinate}`,
+      `Kinetic temperature along ${coordinate}, from frame to frame`,
+      axis,
+      [label(coordinate, 'position', units), label('mean squared velocity', 'temperature', units)],
+      x,
+      temperature.offset + axis * layout.binsPerAxis,
+      same,
+    );
+  });
+
+  layout.passages?.kinds.forEach(({ name, title }, kind) => {
+    const block = findBlock(layout, name);
+    const levels = layout.passages?.levels[kind] ?? [];
+    if (block === undefined || !(levels[levels.length - 1] > levels[0])) return;
+    add(
+      name.startsWith('residence') ? 'residence-time' : 'first-passage-time',
+      name,
+      capitalize(title),
+      null,
+      [label('time', 'time', units), 'share that lasts longer'],
+      levels,
+      block.offset + 1,
+      same,
+    );
+  });
+
   const speed = findBlock(layout, 'curve:speed');
   if (speed !== undefined) {
     const x = speedBinCentres(layout);
     const width = x[1] - x[0];
-    const labels: [string, string] = [label('speed', 'velocity', units), 'share per speed'];
+    const labels: [string, string] = [label('speed', 'velocity', units), density('speed', units)];
     // The last bin also holds all faster steps, so its density means nothing.
     add(
       'speed',
@@ -95,7 +130,7 @@ export function drawSeries(
       const row = (Math.max(0, lagIndex - 1) * layout.dimensions + axis) * DISPLACEMENT_BINS;
       const x = edges.slice(1).map((edge, bin) => (edge + edges[bin]) / 2);
       const title = `Displacement along ${coordinate} over ${lag} frame${lag > 1 ? 's' : ''}`;
-      const labels: [string, string] = [label('displacement', 'position', units), 'share per length'];
+      const labels: [string, string] = [label('displacement', 'position', units), density('length', units)];
       // The outermost bins reach to infinity and are left out of the picture.
       add(
         'displacement',
@@ -149,6 +184,10 @@ export function drawSeries(
   return series;
 }
 
+function capitalize(text: string): string {
+  return text[0].toUpperCase() + text.slice(1);
+}
+
 function same(value: number): number {
   return value;
 }
@@ -156,6 +195,11 @@ function same(value: number): number {
 function label(word: string, quantity: Quantity, units: Units): string {
   const unit = formatUnit(quantity, units);
   return unit === '' ? word : `${word} (${unit})`;
+}
+
+function density(of: 'length' | 'speed', { length, time }: Units): string {
+  if (length === null || (of === 'speed' && time === null)) return `share per ${of}`;
+  return `share per ${of} (${of === 'speed' ? `${time} ` : ''}${length}⁻¹)`;
 }
 
 type Curve = (number | null)[];

@@ -6,19 +6,17 @@ import type { FitDocument } from '../documents/FitDocument.js';
 import { DataError, UsageError, type Warning } from '../errors.js';
 import { modelFields, modelParameters } from '../fields/modelParameters.js';
 import { type MapTasks, mapTasksSerially } from '../numerics/MapTasks.js';
+import { quantileSorted } from '../numerics/statistics/quantile.js';
 import type { TrackSet } from '../tracks/TrackSet.js';
 import { compareFeatures } from './compareFeatures.js';
 import { drawSeries } from './drawSeries.js';
 import { describeReplicateTask } from './describeReplicateTask.js';
-import type { RefitCoefficient, ResimulationResult } from './ResimulationResult.js';
+import type { RefitCoefficient, ResimulationResult, ResimulationTime } from './ResimulationResult.js';
 import { createDesign, type Design, simulateDesign } from './simulateDesign.js';
-import {
-  type FeatureBlock,
-  type FeatureLayout,
-  findBlock,
-  measureFeatures,
-  planFeatures,
-} from './trackFeatures.js';
+import { type FeatureBlock, type FeatureLayout, findBlock, planFeatures } from './featureLayout.js';
+import { measureFeatures } from './measureFeatures.js';
+import { collectPassages } from './passages.js';
+import { checkRegions, type Region } from './Region.js';
 
 export interface ResimulationOptions {
   /** Simulated recordings; at least 19, so that a p-value can reach 0.05. */
@@ -27,6 +25,8 @@ export interface ResimulationOptions {
   readonly mapTasks?: MapTasks;
   /** The fit's own estimator: tracks in, coefficient vector of the model out. Null where it finds none. */
   readonly refit?: (tracks: TrackSet) => Promise<ArrayLike<number> | null>;
+  /** Regions whose residence times, and the first-passage times between them, are compared too. */
+  readonly regions?: readonly Region[];
   /** How many simulated recordings are refitted. */
   readonly refits?: number;
   readonly onProgress?: (done: number, total: number) => void;
@@ -59,7 +59,7 @@ const TITLES: Readonly<Record<string, string>> = {
  * all statistics, with its simulated p-value: a right model is called inconsistent in at most 5 % of studies.
  *
  * @param tracks  the recording the fit was made from
- * @throws UsageError  too few replicates
+ * @throws UsageError  too few replicates, or regions that do not fit the tracks
  * @throws DataError  tracks of other dimensions than the fit, or none
  * @throws NumericalError  where the fitted model runs off to infinity
  */
@@ -84,8 +84,10 @@ export async function resimulate(
   if (tracks.times.length === 0)
     throw new DataError('there are no positions to compare with; give the tracks of the fit');
 
+  checkRegions(options.regions ?? [], tracks.dimensions);
+
   const design = createDesign(fit, tracks);
-  const layout = planFeatures(tracks, fit.visited.low, fit.visited.high);
+  const layout = planFeatures(tracks, fit.visited.low, fit.visited.high, options.regions);
   const draws = fit.uncertainty.replicates;
   const inputs = Array.from({ length: replicates }, (_, index) => ({
     index,
@@ -116,13 +118,16 @@ export async function resimulate(
       : await refitCoefficients(fit, design, seed, refits, options.refit, warnings, (done) =>
           options.onProgress?.(replicates + done, total),
         );
+  const titles = new Map(Object.entries(TITLES));
+  for (const { name, title } of layout.passages?.kinds ?? []) titles.set(name, title);
   return {
     replicates,
     seed,
     statistics: comparison.statistics.map((statistic) => ({
       ...statistic,
-      title: TITLES[statistic.name] ?? statistic.name,
+      title: titles.get(statistic.name) ?? statistic.name,
     })),
+    times: summarizeTimes(layout, tracks, features),
     refit,
     p: comparison.p,
     level: LEVEL,
@@ -130,6 +135,36 @@ export async function resimulate(
     series: drawSeries(layout, features, tracks),
     warnings,
   };
+}
+
+/** Mean residence and first-passage times, from the rates at which they end. */
+function summarizeTimes(
+  layout: FeatureLayout,
+  tracks: TrackSet,
+  features: readonly Float64Array[],
+): ResimulationTime[] {
+  const { passages } = layout;
+  if (passages === null) return [];
+  const recorded = collectPassages(passages, tracks.positions);
+  return passages.kinds.map(({ name }, kind) => {
+    const offset = findBlock(layout, name)?.offset ?? 0;
+    const rates = Float64Array.from(features.slice(1), (set) => set[offset])
+      .filter(Number.isFinite)
+      .sort();
+    const at = (share: number): number | null => {
+      const rate = rates.length > 0 ? quantileSorted(rates, share) : 0;
+      return rate > 0 ? 1 / rate : null;
+    };
+    const { ended, atRisk } = recorded[kind];
+    return {
+      name,
+      recorded: ended > 0 ? atRisk / ended : null,
+      events: ended,
+      low: at(0.975),
+      median: at(0.5),
+      high: at(0.025),
+    };
+  });
 }
 
 /** The occupancy that weighs a map's cells. */

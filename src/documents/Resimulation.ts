@@ -22,6 +22,18 @@ export const resimulationSchema = z.strictObject({
       adjusted: z.number(),
     }),
   ),
+  times: z
+    .array(
+      z.strictObject({
+        name: z.string(),
+        recorded: z.number().nullable(),
+        events: z.int(),
+        low: z.number().nullable(),
+        median: z.number().nullable(),
+        high: z.number().nullable(),
+      }),
+    )
+    .default([]),
   refit: z.array(
     z.strictObject({
       name: z.string(),
@@ -42,6 +54,8 @@ export const resimulationSchema = z.strictObject({
         'mean-squared-displacement',
         'velocity-autocorrelation',
         'kinetic-temperature',
+        'residence-time',
+        'first-passage-time',
       ]),
       name: z.string(),
       title: z.string(),

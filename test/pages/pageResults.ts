@@ -60,6 +60,7 @@ export function exampleResimulation(consistent = true): ResimulationResult {
       statistic('velocity-autocorrelation', 'Memory of the velocity', 0.55, 0.71),
       statistic('kinetic-temperature', 'Kinetic temperature from place to place', 0.47, 0.88),
     ],
+    times: [],
     refit: [0.42, 0.77, 1.21, 0.66].map((putIn, i) => ({
       name: `friction_xx[${i}]`,
       putIn,

@@ -1,179 +1,15 @@
-/**
- * Numbers that describe a recording: histograms, means by place and means by lag. The same list of numbers is taken
- * from the recording and from every simulated one, in one flat array; a layout says which stretch means what.
- */
+/** Takes from a recording, or from a simulated one, the numbers that a layout lists. */
 
-import { findRuns, type Runs } from '../tracks/runs.js';
-import type { TrackSet } from '../tracks/TrackSet.js';
-
-/** A stretch of the flat array. */
-export interface FeatureBlock {
-  readonly name: string;
-  readonly offset: number;
-  readonly length: number;
-}
-
-export interface FeatureLayout {
-  readonly dimensions: number;
-  readonly samplingInterval: number;
-  readonly periods: readonly number[];
-  readonly runs: Runs;
-  /** Visited box; cells of the maps divide it evenly, places beyond it belong to the nearest cell. */
-  readonly low: readonly number[];
-  readonly high: readonly number[];
-  readonly cellsPerAxis: number;
-  /** Bins of the marginal occupancy curves. */
-  readonly binsPerAxis: number;
-  /** Lags in frames of displacement histograms, mean squared displacements and velocity correlations. */
-  readonly displacementLags: readonly number[];
-  readonly squareLags: readonly number[];
-  readonly correlationLags: readonly number[];
-  /** Mean and standard deviation of the displacements per lag and axis, which set the bins. */
-  readonly displacementScales: readonly (readonly { readonly mean: number; readonly deviation: number }[])[];
-  /** Root mean square speed, which sets the bins of the speed curve. */
-  readonly speedScale: number;
-  readonly blocks: readonly FeatureBlock[];
-  readonly length: number;
-}
-
-/** Upper edges of the inner bins in standard deviations: eight bins a normal variable fills alike, and two tails. */
-const BIN_EDGES = [-2, -1.15, -0.674, -0.319, 0, 0.319, 0.674, 1.15, 2];
-export const DISPLACEMENT_BINS = BIN_EDGES.length + 1;
-export const SPEED_BINS = 24;
-const SPEED_REACH = 3; // of the root mean square speed
-const CELLS = [16, 7, 4]; // per axis, by dimension: some fifty places
-const MAX_SQUARE_LAGS = 8;
-const MAX_CORRELATION_LAG = 24;
-
-/** Plans the features of a recording of a model of the given order. */
-export function planFeatures(
-  tracks: TrackSet,
-  low: readonly number[],
-  high: readonly number[],
-): FeatureLayout {
-  const d = tracks.dimensions;
-  const runs = findRuns(tracks);
-  const longest = longestUsefulLag(runs);
-  const squareLags: number[] = [];
-  for (let lag = 1; lag <= longest && squareLags.length < MAX_SQUARE_LAGS; lag *= 2) squareLags.push(lag);
-  const correlationLags = Array.from(
-    { length: Math.max(0, Math.min(MAX_CORRELATION_LAG, longest - 1)) },
-    (_, index) => index + 1,
-  ).filter((lag) => lag <= 6 || lag % 3 === 0);
-  const displacementLags = [...new Set([squareLags[0], squareLags[2], squareLags[4]])].filter(
-    (lag): lag is number => lag !== undefined,
-  );
-  const displacementScales = displacementLags.map((lag) => measureDisplacements(tracks, runs, lag));
-  let square = 0;
-  for (const { mean, deviation } of displacementScales[0] ?? [])
-    square += mean * mean + deviation * deviation;
-  const cellsPerAxis = CELLS[d - 1];
-  const cells = cellsPerAxis ** d;
-  const binsPerAxis = 24;
-  const blocks: FeatureBlock[] = [];
-  let length = 0;
-  const add = (name: string, size: number): void => {
-    if (size > 0) blocks.push({ name, offset: length, length: size });
-    length += size;
-  };
-  add('occupancy', cells);
-  if (displacementLags.length > 0) add('velocity-distribution', d * DISPLACEMENT_BINS);
-  add('displacement-distribution', Math.max(0, displacementLags.length - 1) * d * DISPLACEMENT_BINS);
-  add('mean-squared-displacement', squareLags.length * d);
-  add('velocity-autocorrelation', correlationLags.length * d);
-  if (squareLags.length > 0) add('kinetic-temperature', cells);
-  if (correlationLags.length > 0) add('velocity-persistence', cells);
-  if (squareLags.length > 0) add('current', cells * d);
-  if (squareLags.length > 0) add('circulation', countPlanes(tracks.periods).length);
-  add('curve:occupancy', binsPerAxis * d);
-  add('curve:speed', displacementLags.length > 0 ? SPEED_BINS : 0);
-  return {
-    dimensions: d,
-    samplingInterval: tracks.samplingInterval,
-    periods: tracks.periods,
-    runs,
-    low,
-    high,
-    cellsPerAxis,
-    binsPerAxis,
-    displacementLags,
-    squareLags,
-    correlationLags,
-    displacementScales,
-    speedScale: Math.sqrt(square) / tracks.samplingInterval || 1,
-    blocks,
-    length,
-  };
-}
-
-/** A block by name; undefined where the recording cannot carry it. */
-export function findBlock(layout: FeatureLayout, name: string): FeatureBlock | undefined {
-  return layout.blocks.find((block) => block.name === name);
-}
-
-/** Centres of the speed curve's bins, length/time. */
-export function speedBinCentres(layout: FeatureLayout): number[] {
-  const width = (SPEED_REACH * layout.speedScale) / SPEED_BINS;
-  return Array.from({ length: SPEED_BINS }, (_, bin) => (bin + 0.5) * width);
-}
-
-/** Edges between the bins of a displacement histogram, length. */
-export function displacementBinEdges(layout: FeatureLayout, lagIndex: number, axis: number): number[] {
-  const { mean, deviation } = layout.displacementScales[lagIndex][axis];
-  return BIN_EDGES.map((edge) => mean + edge * deviation);
-}
-
-/** The longest lag that a quarter of the steps can still carry, in frames. */
-function longestUsefulLag({ starts, ends }: Runs): number {
-  let steps = 0;
-  let longest = 0;
-  for (let run = 0; run < starts.length; run++) {
-    steps += ends[run] - starts[run] - 1;
-    longest = Math.max(longest, ends[run] - starts[run] - 1);
-  }
-  let lag = longest;
-  const carried = (candidate: number): number => {
-    let pairs = 0;
-    for (let run = 0; run < starts.length; run++) pairs += Math.max(0, ends[run] - starts[run] - candidate);
-    return pairs;
-  };
-  while (lag > 1 && carried(lag) < Math.max(20, 0.25 * steps)) lag = Math.floor(lag * 0.8);
-  return steps > 0 ? Math.max(1, lag) : 0;
-}
-
-function measureDisplacements(
-  tracks: TrackSet,
-  runs: Runs,
-  lag: number,
-): { mean: number; deviation: number }[] {
-  const d = tracks.dimensions;
-  const { positions } = tracks;
-  return Array.from({ length: d }, (_, axis) => {
-    let count = 0;
-    let sum = 0;
-    let square = 0;
-    for (let run = 0; run < runs.starts.length; run++) {
-      for (let row = runs.starts[run]; row + lag < runs.ends[run]; row++) {
-        const move = positions[(row + lag) * d + axis] - positions[row * d + axis];
-        count++;
-        sum += move;
-        square += move * move;
-      }
-    }
-    const mean = sum / count;
-    return { mean, deviation: Math.sqrt(Math.max(0, square / count - mean * mean)) || Number.MIN_VALUE };
-  });
-}
-
-/** Pairs of open axes, in which circulation makes sense. */
-function countPlanes(periods: readonly number[]): [number, number][] {
-  const planes: [number, number][] = [];
-  for (let a = 0; a < periods.length; a++) {
-    for (let b = a + 1; b < periods.length; b++)
-      if (periods[a] === 0 && periods[b] === 0) planes.push([a, b]);
-  }
-  return planes;
-}
+import {
+  BIN_EDGES,
+  countPlanes,
+  DISPLACEMENT_BINS,
+  type FeatureLayout,
+  findBlock,
+  SPEED_BINS,
+  SPEED_REACH,
+} from './featureLayout.js';
+import { measurePassages } from './passages.js';
 
 /**
  * Takes the features from positions at the rows of the recording.
@@ -187,6 +23,10 @@ export function measureFeatures(layout: FeatureLayout, positions: Float64Array):
   measureDistributions(layout, positions, out);
   measureLags(layout, positions, out);
   measureMaps(layout, positions, out);
+  measureTemperatureCurve(layout, positions, out);
+  const [first] = layout.passages?.kinds ?? [];
+  const passages = first && findBlock(layout, first.name);
+  if (layout.passages && passages) measurePassages(layout.passages, positions, out, passages.offset);
   return out;
 }
 
@@ -357,4 +197,27 @@ function measureMaps(layout: FeatureLayout, positions: Float64Array, out: Float6
   if (circulation)
     for (let plane = 0; plane < planes.length; plane++)
       out[circulation.offset + plane] = swept[plane] / steps;
+}
+
+/** Mean square velocity per axis, from frame to frame, by place along each axis. */
+function measureTemperatureCurve(layout: FeatureLayout, positions: Float64Array, out: Float64Array): void {
+  const { dimensions: d, runs, samplingInterval, binsPerAxis } = layout;
+  const curve = findBlock(layout, 'curve:kinetic-temperature');
+  if (curve === undefined) return;
+  const counts = new Float64Array(curve.length);
+  for (let run = 0; run < runs.starts.length; run++) {
+    for (let row = runs.starts[run]; row + 1 < runs.ends[run]; row++) {
+      let square = 0;
+      for (let axis = 0; axis < d; axis++) {
+        square += ((positions[(row + 1) * d + axis] - positions[row * d + axis]) / samplingInterval) ** 2 / d;
+      }
+      for (let axis = 0; axis < d; axis++) {
+        const share = shareOfBox(layout, positions[row * d + axis], axis);
+        const bin = axis * binsPerAxis + Math.floor(share * binsPerAxis);
+        out[curve.offset + bin] += square;
+        counts[bin]++;
+      }
+    }
+  }
+  for (let bin = 0; bin < curve.length; bin++) out[curve.offset + bin] /= counts[bin];
 }
