@@ -93,17 +93,34 @@ export const COMMANDS: readonly CommandSpec[] = [
     description:
       'Statistics that the fit did not use, with simulated p-values, and the coefficients that the same estimator gets back.',
     operands: [FIT],
-    options: ['trackFiles', 'recordings', 'runSeed', 'noRefit', 'workers', 'output', ...SPEECH_OPTIONS],
-    examples: ['wanderlaw resimulate fit.json', 'wanderlaw resimulate fit.json --json -o resimulation.json'],
+    options: [
+      'trackFiles',
+      'recordings',
+      'region',
+      'runSeed',
+      'noRefit',
+      'workers',
+      'output',
+      ...SPEECH_OPTIONS,
+    ],
+    examples: [
+      'wanderlaw resimulate fit.json',
+      'wanderlaw resimulate fit.json --json -o resimulation.json',
+      'wanderlaw resimulate fit.json --region left=:0,: --region right=0:,:',
+    ],
     load: async () => (await import('./commands/resimulate.js')).runResimulate,
   },
   {
     name: 'scenario',
     summary: 'write a calibrated scenario that can be read, changed and run',
-    description: 'A scenario is JSON; its schema is wanderlaw/schemas/scenario.schema.json.',
+    description:
+      'A scenario is JSON; its schema is wanderlaw/schemas/scenario.schema.json. Whether it settles on one stationary law is told condition by condition on standard error, and kept in it.',
     operands: [FIT],
-    options: ['output', 'title', ...SPEECH_OPTIONS],
-    examples: ['wanderlaw scenario fit.json -o scenario.json'],
+    options: ['output', 'title', 'firstOrder', ...SPEECH_OPTIONS],
+    examples: [
+      'wanderlaw scenario fit.json -o scenario.json',
+      'wanderlaw scenario fit.json --first-order -o slow.json',
+    ],
     load: async () => (await import('./commands/scenario.js')).runScenario,
   },
   {
@@ -118,6 +135,7 @@ export const COMMANDS: readonly CommandSpec[] = [
       'frameInterval',
       'runSeed',
       'ensemble',
+      'tolerance',
       'workers',
       ...SPEECH_OPTIONS,
     ],

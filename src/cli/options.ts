@@ -15,6 +15,7 @@ import {
   unitsValue,
   type ParseValue,
 } from './optionValues.js';
+import { regionValue } from './regionValue.js';
 
 export interface OptionSpec {
   /** As typed, with a placeholder where a value follows: `-o, --output <FILE>`. */
@@ -293,6 +294,30 @@ export const OPTIONS = {
     meaning: 'seed of every random draw; the same seed gives the same result',
     default: '1',
     parse: numberValue({ whole: true, from: 0 }),
+  },
+  firstOrder: {
+    flags: '--first-order',
+    meaning:
+      'write the first-order limit of a second-order fit, for high friction, with its noise-induced drift; says how large the neglected terms are',
+    default: 'the order of the fit',
+  },
+  tolerance: {
+    flags: '--tolerance <SHARE>',
+    meaning:
+      'halve the time step until averages err by less than this share of their size, and tell the observed order of convergence',
+    default: 'the recommended step, with errors of about a thousandth',
+    extremes: 'each factor of 4 costs twice the time; below 0.0003 scatter hides the error',
+    parse: numberValue({ above: 0, below: 1 }),
+  },
+  region: {
+    flags: '--region <NAME=BOX>',
+    meaning:
+      'box whose residence times, and the first-passage times to other boxes, are compared too, for example left=-3:0,-2:2; give it once per box',
+    unit: 'length',
+    default: 'none',
+    extremes: 'an end left out is open: right=0:,:',
+    parse: regionValue,
+    repeatable: true,
   },
   trackFiles: {
     flags: '--tracks <FILE>',

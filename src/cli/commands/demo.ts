@@ -69,7 +69,7 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
   await keep('resimulation.json', formatJson(describeResimulation(resimulation)));
   await say(`${formatResimulationSummary(resimulation, terminal.summaryStyle)}\n`);
 
-  const scenario = buildTitledScenario(fit, dataPackage.title);
+  const scenario = await buildTitledScenario(fit, dataPackage.title);
   await keep('scenario.json', formatJson(scenario));
   await keep('report.html', await renderReport({ fit, resimulation, scenario }));
 

@@ -2,6 +2,7 @@
 
 import type { ResimulationResult } from '../../checks/ResimulationResult.js';
 import { createRefit } from '../../checks/createRefit.js';
+import { checkRegions, type Region } from '../../checks/Region.js';
 import { resimulate } from '../../checks/resimulate.js';
 import type { FitDocument } from '../../documents/FitDocument.js';
 import { formatResimulationSummary } from '../../report/terminal.js';
@@ -27,6 +28,7 @@ export async function runResimulate({ operands, options, terminal }: Call): Prom
     replicates: options.replicates as number | undefined,
     seed: options.seed as number | undefined,
     refit: options.refit !== false,
+    regions: options.region as Region[] | undefined,
     workers: options.workers,
   });
   for (const warning of result.warnings) terminal.warn(warning);
@@ -41,6 +43,7 @@ export interface ResimulateChoices {
   readonly replicates?: number;
   readonly seed?: number;
   readonly refit: boolean;
+  readonly regions?: readonly Region[];
   readonly workers: unknown;
 }
 
@@ -51,12 +54,14 @@ export async function resimulateFit(
   terminal: Terminal,
   choices: ResimulateChoices,
 ): Promise<ResimulationResult> {
+  checkRegions(choices.regions ?? [], fit.model.dimensions);
   const recording = await readRecordingOfFit(fit, fitPath, choices.overrides, terminal);
   const progress = await terminal.startProgress('simulating');
   return withWorkers(choices.workers, (mapTasks) =>
     resimulate(fit, recording.tracks, {
       replicates: choices.replicates ?? REPLICATES,
       seed: choices.seed ?? 1,
+      regions: choices.regions,
       refit: choices.refit ? createRefit(fit) : undefined,
       mapTasks,
       onProgress: progress.update,
