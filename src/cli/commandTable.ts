@@ -146,10 +146,21 @@ export const COMMANDS: readonly CommandSpec[] = [
     name: 'report',
     summary: 'write one self-contained page with the pictures',
     description:
-      'HTML without outside parts: tracks, visited region, coefficients with bands, and the comparison.',
+      'HTML without outside parts: tracks, visited region, coefficients with bands, and the results of other commands.',
     operands: [FIT],
-    options: ['output', 'resimulation', 'scenario', ...SPEECH_OPTIONS],
-    examples: ['wanderlaw report fit.json --resimulation resimulation.json -o report.html'],
+    options: [
+      'output',
+      'figures',
+      'resimulation',
+      'testResults',
+      'challenges',
+      'scenario',
+      ...SPEECH_OPTIONS,
+    ],
+    examples: [
+      'wanderlaw report fit.json --resimulation resimulation.json -o report.html',
+      'wanderlaw report fit.json --figures figures',
+    ],
     load: async () => (await import('./commands/report.js')).runReport,
   },
   {

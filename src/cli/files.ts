@@ -5,6 +5,7 @@ import {
   closeSync,
   constants,
   createReadStream,
+  mkdirSync,
   openSync,
   realpathSync,
   rmSync,
@@ -137,12 +138,12 @@ function statOrNull(path: string): Stats | null {
  * Writes a file whole or not at all: into a temporary file in the same directory, then renamed over the target.
  * Where the writing fails, or a signal ends the program, nothing is left behind and an older file stays as it was.
  *
- * @param content  the text, or its pieces
+ * @param content  the text or the bytes, or the pieces of a text
  * @throws UsageError  where the place cannot be written
  */
 export async function writeWhole(
   path: string,
-  content: string | Iterable<string> | AsyncIterable<string>,
+  content: string | Uint8Array | Iterable<string> | AsyncIterable<string>,
   shown = path,
 ): Promise<void> {
   const target = statOrNull(path);
@@ -153,7 +154,8 @@ export async function writeWhole(
   try {
     const handle = await guard(() => open(temporary, 'w'));
     try {
-      for await (const piece of typeof content === 'string' ? [content] : content) {
+      const whole = typeof content === 'string' || content instanceof Uint8Array;
+      for await (const piece of whole ? [content] : content) {
         await guard(() => handle.appendFile(piece));
       }
       if (!direct) await guard(() => handle.sync());
@@ -172,6 +174,21 @@ export async function writeWhole(
     throw error;
   } finally {
     unfinished.delete(temporary);
+  }
+}
+
+/**
+ * Makes a directory, with those above it, where there is none.
+ *
+ * @throws UsageError  where it cannot be made
+ */
+export function makeDirectory(path: string, shown: string): void {
+  try {
+    mkdirSync(path, { recursive: true });
+  } catch (error) {
+    throw new UsageError(`${shown} cannot be made: ${explainSystemError(error)}; give another place`, {
+      path,
+    });
   }
 }
 

@@ -340,6 +340,20 @@ export const OPTIONS = {
     flags: '--resimulation <FILE>',
     meaning: 'result of `resimulate --json`, to be drawn too',
   },
+  testResults: {
+    flags: '--tests <FILE>',
+    meaning: 'result of `test --json`, to be told too; give it once per file',
+    repeatable: true,
+  },
+  challenges: {
+    flags: '--challenges <FILE>',
+    meaning: 'result of `challenge --json`, to be told too',
+  },
+  figures: {
+    flags: '--figures <DIRECTORY>',
+    meaning:
+      'directory for each picture as SVG and PNG, with its data as CSV beside it; without -o only these are written',
+  },
   scenario: {
     flags: '--scenario <FILE>',
     meaning: 'scenario to be described too',

@@ -33,11 +33,12 @@ export function formatNumber(value: number, digits = 3): string {
   if (Number.isNaN(value)) return 'unknown';
   if (!Number.isFinite(value)) return value > 0 ? 'infinite' : '−infinite';
   if (value === 0) return '0';
-  const exponent = leadingExponent(value);
-  if (wantsPower(exponent)) {
-    return withMinus(`${(value / 10 ** exponent).toFixed(digits - 1)} × ${formatPowerOfTen(exponent)}`);
-  }
+  // Rounding may carry into the next power (9.96 → 10.0), so the exponent is that of the rounded number.
   const rounded = Number(value.toPrecision(digits));
+  const exponent = leadingExponent(rounded);
+  if (wantsPower(exponent)) {
+    return withMinus(`${(rounded / 10 ** exponent).toFixed(digits - 1)} × ${formatPowerOfTen(exponent)}`);
+  }
   return withMinus(rounded.toFixed(Math.min(20, Math.max(0, digits - 1 - leadingExponent(rounded)))));
 }
 

@@ -1,5 +1,6 @@
 /** Keys to the marks and colours of a picture, for the page and for figures in files of their own. */
 
+import { guessTextWidth } from './charts/Drawing.js';
 import { SHARED_FILLS } from './charts/fills.js';
 import { stepDecimals } from './charts/ticks.js';
 import { escapeHtml, Html, html } from './html.js';
@@ -100,11 +101,6 @@ export function writeLegend(parts: readonly LegendPart[]): Html {
         )
       : html`<span class="entry">${new Html(`<svg class="sample" viewBox="0 0 ${SAMPLE_WIDTH} ${SAMPLE_HEIGHT}" aria-hidden="true">${SAMPLES[part.sample]}</svg>`)}${part.text}</span>`,
   )}`;
-}
-
-/** Width of a text in drawing units, rather too large than too small. */
-export function guessTextWidth(text: string, fontSize: number): number {
-  return [...text].length * fontSize * 0.62;
 }
 
 /** The key as SVG elements that fill a given width from the top left corner; its height with them. */

@@ -13,7 +13,7 @@ const TEXT = `
 @media screen and (prefers-color-scheme: dark) { :root { ${writeVariables(DARK)} } }
 * { box-sizing: border-box; }
 html { -webkit-text-size-adjust: 100%; text-size-adjust: 100%; scroll-padding-top: 16px; }
-body { margin: 0; background: var(--paper); color: var(--ink); font: 17px/1.55 ${SERIF}; }
+body { margin: 0; overflow-wrap: break-word; background: var(--paper); color: var(--ink); font: 17px/1.55 ${SERIF}; }
 main, header, footer { max-width: 1216px; margin: 0 auto; padding: 0 24px; }
 header { padding-top: 40px; }
 h1, h2, h3, h4, nav, figure, table, summary, dl, .key, .tag, .verdict, .source, .outcome, .figures, output { font-family: var(--sans); }
@@ -87,6 +87,7 @@ const PICTURES = `
 @media (min-width: 1000px) {
   .duo { grid-template-columns: minmax(0, 1fr) minmax(0, 1fr); }
   .trio { grid-template-columns: minmax(0, 2fr) minmax(0, 1fr); } .trio > .stack { grid-template-columns: minmax(0, 1fr); }
+  .trio.beside { grid-template-columns: minmax(0, 1fr) minmax(0, 2fr); }
 }
 figure { margin: 0 0 22px; min-width: 0; break-inside: avoid; }
 .stack figure { margin-bottom: 12px; }

@@ -1,6 +1,6 @@
 /** `demo [NAME]`: survey, fit, re-simulation, scenario and report of a shipped data set. */
 
-import { mkdirSync, readdirSync } from 'node:fs';
+import { readdirSync } from 'node:fs';
 import { readFile } from 'node:fs/promises';
 import { join, relative } from 'node:path';
 import { completeStudy } from '../../documents/parseStudy.js';
@@ -10,7 +10,7 @@ import { surveyTracks } from '../../momenta/surveyTracks.js';
 import { renderReport } from '../../report/renderReport.js';
 import { formatFitSummary, formatResimulationSummary, formatSurveySummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';
-import { checkOutput, explainSystemError, writeWhole } from '../files.js';
+import { checkOutput, makeDirectory, writeWhole } from '../files.js';
 import { readRecording } from '../recordings.js';
 import { formatJson } from '../results.js';
 import { formatSuggestion } from '../suggest.js';
@@ -101,17 +101,4 @@ async function readDataPackage(name: string): Promise<DataPackage> {
     );
   }
   return JSON.parse(await readFile(join(root, name, 'datapackage.json'), 'utf8')) as DataPackage;
-}
-
-function makeDirectory(directory: string, shown: string): void {
-  try {
-    mkdirSync(directory, { recursive: true });
-  } catch (error) {
-    throw new UsageError(
-      `${shown} cannot be made: ${explainSystemError(error)}; give another place with -o`,
-      {
-        path: directory,
-      },
-    );
-  }
 }

@@ -74,3 +74,8 @@ interface SvgElement {
 export function addToPicture(svg: string, elements: string): string {
   return svg.replace(/<\/svg>\s*$/, `${elements}</svg>`);
 }
+
+/** Width of a text in drawing units, rather too large than too small. */
+export function guessTextWidth(text: string, fontSize: number): number {
+  return [...text].length * fontSize * 0.62;
+}

@@ -1,6 +1,6 @@
 /** A vector field over a plane as arrows; arrows that could as well be zero are drawn faint. */
 
-import { addToPicture, type Chart, type Drawing, FONT_SIZE } from './Drawing.js';
+import { addToPicture, type Chart, type Drawing, FONT_SIZE, guessTextWidth } from './Drawing.js';
 import { escapeHtml } from '../html.js';
 import { chooseMapHeight, describePlane, MAP_MARGINS, type PlaneGrid } from './mapChart.js';
 import { formatTick, roundStepUp } from './ticks.js';
@@ -69,11 +69,21 @@ export function drawArrows(drawing: Drawing, grid: PlaneGrid, options: ArrowOpti
     visited.push({ x1: edge(0, i), x2: edge(0, i + 1), y1: edge(1, j), y2: edge(1, j + 1) });
   }
   const arrow = { x: 'x', y: 'y', rotate: 'rotate', anchor: 'middle' } as const;
+  // Key: a round length, drawn to scale above the frame at the right; below the label of the axis where it needs room.
+  let length = roundStepUp(reference * 0.6);
+  if (length * factor > longest * 1.5) length /= 2;
+  const shaft = length * factor;
+  const scale = options.formatLength(length);
+  const needed =
+    guessTextWidth(options.yLabel(yExponent), FONT_SIZE) + guessTextWidth(scale, FONT_SIZE) + shaft + 30;
+  const extra = needed > options.width ? 18 : 0;
+  const marginTop = MAP_MARGINS.marginTop + extra;
   const lengthOf = (cell: { size: number }) => Math.min(longest, cell.size * factor);
   const drawn = drawing.draw({
     width: options.width,
-    height,
+    height: height + extra,
     ...MAP_MARGINS,
+    marginTop,
     x: {
       label: options.xLabel(xExponent),
       labelArrow: 'none',
@@ -118,14 +128,10 @@ export function drawArrows(drawing: Drawing, grid: PlaneGrid, options: ArrowOpti
       [Math.round(drawn.x(cell.x)), Math.round(drawn.y(cell.y)), options.describe(cell.index)] as const,
   );
 
-  // Key: a round length, drawn to scale in the upper right corner above the frame.
-  let length = roundStepUp(reference * 0.6);
-  if (length * factor > longest * 1.5) length /= 2;
-  const shaft = length * factor;
   const right = options.width - MAP_MARGINS.marginRight;
-  const text = escapeHtml(options.formatLength(length));
+  const keyLine = marginTop - 14;
   const key =
-    `<path d="M${(right - shaft).toFixed(1)},14h${shaft.toFixed(1)}m-5,-4l5,4l-5,4" fill="none" stroke="var(--line)" stroke-width="1.75"/>` +
-    `<text x="${(right - shaft - 6).toFixed(1)}" y="18" text-anchor="end" font-size="${FONT_SIZE - 1}">${text}</text>`;
+    `<path d="M${(right - shaft).toFixed(1)},${keyLine}h${shaft.toFixed(1)}m-5,-4l5,4l-5,4" fill="none" stroke="var(--line)" stroke-width="1.75"/>` +
+    `<text x="${(right - shaft - 6).toFixed(1)}" y="${keyLine + 4}" text-anchor="end" font-size="${FONT_SIZE - 1}">${escapeHtml(scale)}</text>`;
   return { svg: addToPicture(drawn.svg, key), probes };
 }

@@ -115,11 +115,12 @@ export function drawMap(drawing: Drawing, grid: PlaneGrid, options: MapOptions):
     marks: [
       Plot.rect(unvisited, { ...sides, fill: 'url(#hatch)' }),
       ...[...classes].map(([key, cells]) =>
-        // Smoothed edges would leave seams between neighbouring shapes.
+        // Smoothed edges would leave seams between neighbouring shapes, and rounded ones gaps.
         Plot.rect(cells, {
           ...sides,
           fill: options.colours[key] ?? 'none',
           shapeRendering: 'crispEdges',
+          inset: -0.2,
         }),
       ),
       Plot.rect(uncertain.get(1) ?? [], { ...sides, fill: 'url(#veil-light)' }),

@@ -34,9 +34,24 @@ export function roundClasses(low: number, high: number, count: number): number[]
   }
 }
 
+/** At most `count` classes between 0 and `high` with edges in the ratios 1 : 2 : 5, for counts that differ by orders of size. */
+export function steppedClasses(high: number, count: number): number[] {
+  const edges: number[] = [];
+  let power = Math.max(0, Math.floor(Math.log10(Math.max(1, high))) - count);
+  for (let last = 0; last < high; power++) {
+    for (const factor of [1, 2, 5]) {
+      if (last >= high) break;
+      last = factor * 10 ** power;
+      edges.push(last);
+    }
+  }
+  return [0, ...edges.slice(-count)];
+}
+
 /** Decimals that write every multiple of the step between neighbouring edges exactly. */
 export function stepDecimals(edges: readonly number[]): number {
-  const step = (edges[1] ?? 1) - (edges[0] ?? 0);
+  const step = Math.min(...edges.slice(1).map((edge, i) => edge - (edges[i] ?? 0)), Number.POSITIVE_INFINITY);
+  if (!Number.isFinite(step) || step <= 0) return 0;
   for (let decimals = 0; decimals < 10; decimals++) {
     if (Math.abs(step * 10 ** decimals - Math.round(step * 10 ** decimals)) < 1e-6 * 10 ** decimals * step)
       return decimals;

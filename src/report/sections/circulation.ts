@@ -26,7 +26,7 @@ function drawPlaneCurl(context: PageContext, part: QuantityPart, axes: [number, 
   const picture = drawValueMap(
     context,
     {
-      file: `curl_${axes.map((axis) => coordinates[axis]).join('')}`,
+      file: 'curl',
       name: `curl of the ${part.quantity}`,
       quantity,
       values,
@@ -73,6 +73,6 @@ ${formatPercent(expected)} would be expected by chance: the ${part.quantity} may
   const words = html`<p>${verdict}${caution}</p>`;
   const pictures = planes.map(({ picture }) => picture);
   return planes.length === 1
-    ? html`<h3>Circulation</h3><div class="trio"><div>${words}</div>${pictures}</div>`
+    ? html`<h3>Circulation</h3><div class="trio beside">${pictures}<div>${words}</div></div>`
     : html`<h3>Circulation</h3>${words}<div class="pictures">${pictures}</div>`;
 }

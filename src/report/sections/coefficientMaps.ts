@@ -28,7 +28,6 @@ export function layBeside(maps: Html, sections: Html): Html {
 export function drawComponentMaps(context: PageContext, part: QuantityPart, component: Component): Html {
   const d = context.fit.data.dimensions;
   const axes = Array.from({ length: d }, (_, axis) => axis);
-  const sections = drawComponentCurves(context, part, component, axes, chooseSectionHeight(context));
   const region = evaluateRegion(context);
   const whole = region.byName.get(component.column);
   const isUniform = whole && summarizePrecision(whole, region.columns, region.visited)?.isUniform;
@@ -55,10 +54,13 @@ export function drawComponentMaps(context: PageContext, part: QuantityPart, comp
           : html``,
     };
   };
+  const drawSections = () =>
+    drawComponentCurves(context, part, component, axes, chooseSectionHeight(context));
   if (d === 3) {
+    const sections = drawSections();
     const maps = isUniform ? [] : listPlanes(d).map(([first, second]) => drawPlane(first, second).value);
     return html`<div class="pictures">${sections}</div>${maps.length > 0 ? html`<div class="pictures">${maps}</div>` : null}`;
   }
   const { value, error } = drawPlane(0, 1);
-  return layBeside(html`${value}${error}`, sections);
+  return layBeside(html`${value}${error}`, drawSections());
 }

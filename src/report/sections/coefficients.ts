@@ -43,7 +43,7 @@ function drawQuantity(context: PageContext, part: QuantityPart): Html {
   if (d === 1) {
     return html`${intro}${part.components.map(
       (component) =>
-        html`<div class="duo">${drawComponentCurves(context, part, component, [0], 320)}${drawLineTables(context, part)}</div>`,
+        html`<div class="duo">${drawComponentCurves(context, part, component, [0], 360)}${drawLineTables(context, part)}</div>`,
     )}`;
   }
   const pictures = part.isVector

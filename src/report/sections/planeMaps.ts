@@ -95,10 +95,11 @@ export function drawValueMap(
   const sure = visited.filter((_, k) => grades[k] !== 2);
   // Colours follow the cells where something is known; the others take the end classes.
   const judged = sure.length >= 4 ? sure : visited;
-  const exponent = axisExponent(judged.map((i) => values[i] ?? 0));
+  const range = findRange(judged.map((i) => values[i] ?? Number.NaN)) ?? { low: 0, high: 1 };
+  const classes = chooseClasses(range, findTypicalError(subject, judged));
+  const exponent = axisExponent(classes);
   const value = (i: number) => (values[i] ?? Number.NaN) * 10 ** -exponent;
-  const range = findRange(judged.map(value)) ?? { low: 0, high: 1 };
-  const edges = chooseClasses(range, findTypicalError(subject, judged) * 10 ** -exponent);
+  const edges = classes.map((edge) => Number((edge * 10 ** -exponent).toPrecision(12)));
   const colours = spreadColours(edges.length - 1);
   const [first, last] = [edges[0] ?? 0, edges[edges.length - 1] ?? 1];
   const chart = drawMap(context.drawing, grid, {
@@ -122,7 +123,7 @@ export function drawValueMap(
   };
   const legend: LegendPart[] =
     colours.length === 1 && !open.below && !open.above
-      ? [{ sample: 'uniform', text: `${formatNumber(range.high)} everywhere` }]
+      ? [{ sample: 'uniform', text: `${formatNumber(range.high * 10 ** -exponent)} everywhere` }]
       : [{ edges, colours, open }];
   if (visited.length < values.length) legend.push({ sample: 'hatched', text: 'not visited' });
   if (grades.includes(1)) legend.push({ sample: 'striped-lightly', text: uncertainty.light });

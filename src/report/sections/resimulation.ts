@@ -14,7 +14,7 @@ import {
 import { Html, html, tameText } from '../html.js';
 import { type LegendPart, writeLegend } from '../legend.js';
 import { sayP } from '../statements.js';
-import { NARROW_WIDTH, type PageContext, type Section } from './Section.js';
+import { capitalize, NARROW_WIDTH, type PageContext, type Section } from './Section.js';
 import { writeWarnings } from './warnings.js';
 
 /** Coefficients listed one by one; more would be a book. */
@@ -54,7 +54,7 @@ function drawGauge({ recorded, low, high }: ResimulationStatistic, odd: boolean)
 function drawStatistics(result: ResimulationResult): Html {
   const rows = result.statistics.map((statistic) => {
     const odd = statistic.adjusted < result.level;
-    return html`<tr><th class="words">${tameText(statistic.title, 90)}</th><td>${drawGauge(statistic, odd)}</td><td${odd ? html` class="no"` : null}>${formatP(statistic.adjusted)}</td><td>${formatP(statistic.p)}</td><td>${formatNumber(statistic.recorded)}</td><td>${formatRange(statistic.low, statistic.high)}</td></tr>`;
+    return html`<tr><th class="words">${capitalize(tameText(statistic.title, 90))}</th><td>${drawGauge(statistic, odd)}</td><td${odd ? html` class="no"` : null}>${formatP(statistic.adjusted)}</td><td>${formatP(statistic.p)}</td><td>${formatNumber(statistic.recorded)}</td><td>${formatRange(statistic.low, statistic.high)}</td></tr>`;
   });
   return html`<div class="scroll" tabindex="0" role="region" aria-label="Statistics of the recording and of simulated ones"><table>
 <thead><tr><th class="words">Statistic</th><th class="words">Recorded among simulated</th><th>p, corrected</th><th>p alone</th><th>Recorded</th><th>Simulated, 95 %</th></tr></thead>

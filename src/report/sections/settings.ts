@@ -1,21 +1,25 @@
 /** Every setting, source, hash and seed: enough to make the fit again. */
 
-import { formatNumber } from '../format.js';
+import { formatNumber, formatSetting } from '../format.js';
 import { html, tameText } from '../html.js';
 import type { PageContext, Section } from './Section.js';
 import { writeList } from './settingList.js';
 
-/** A setting as text: nested settings are written as JSON. */
+/** A setting as text, in one line. */
 function writeValue(value: unknown): string {
   if (value === null || value === undefined) return 'none';
   if (typeof value === 'string') return tameText(value, 200);
   if (typeof value === 'boolean') return value ? 'yes' : 'no';
-  if (typeof value === 'number') return String(value);
+  if (typeof value === 'number') return Number.isInteger(value) ? String(value) : formatSetting(value);
   if (Array.isArray(value)) {
     if (value.length === 0) return 'none';
-    if (value.every((item) => typeof item === 'number')) return tameText(value.join(', '), 300);
-  } else if (Object.values(value).every((item) => item === null)) return 'none';
-  return tameText(JSON.stringify(value), 300);
+    if (value.every((item) => typeof item === 'number'))
+      return tameText(value.map(writeValue).join(', '), 300);
+    return tameText(JSON.stringify(value), 300);
+  }
+  const parts = Object.entries(value).filter(([, item]) => item !== null && item !== undefined);
+  if (parts.length === 0) return 'none';
+  return tameText(parts.map(([name, item]) => `${name}: ${writeValue(item)}`).join(', '), 300);
 }
 
 /** `frictionForm` as `friction form`. */

@@ -1,7 +1,7 @@
 /** Pictures of where the recording was: positions per cell along one axis, or over a plane. */
 
 import { drawMap, spreadColours } from '../charts/mapChart.js';
-import { roundClasses } from '../charts/ticks.js';
+import { steppedClasses } from '../charts/ticks.js';
 import { drawVisits } from '../charts/visitChart.js';
 import { drawFigure } from '../figure.js';
 import { formatCount, formatNumber, formatPowerOfTen, formatQuantity } from '../format.js';
@@ -54,7 +54,7 @@ function drawAlong(context: PageContext, axis: number): Html {
 function drawOverPlane(context: PageContext): Html {
   const { drawing, units, coordinates } = context;
   const { grid, places, counts } = layPlane(context.fit.visited, 0, 1);
-  const edges = roundClasses(0, Math.max(...counts), 6);
+  const edges = steppedClasses(Math.max(1, ...counts), 7);
   const colours = spreadColours(edges.length - 1);
   const classOf = (i: number) =>
     Math.max(0, edges.findIndex((edge, k) => k > 0 && (counts[i] ?? 0) <= edge) - 1);
