@@ -1,6 +1,6 @@
 /**
  * Bias, scatter and coverage of the differences estimator on simulated studies with exact transitions.
- * Run with `npm run study:differences [seeds]`.
+ * Run with `npm run study:differences [seeds] [free|trapped|first|coverage|varied]`; all parts take about half an hour.
  */
 
 import { studySchema, type StudyInput } from '../../src/documents/Study.js';
@@ -12,6 +12,7 @@ import type { TrackSet } from '../../src/tracks/TrackSet.js';
 import { drawReplicates } from '../../src/uncertainty/bootstrap.js';
 import { measureSpread, pointwiseMultiplier } from '../../src/uncertainty/spread.js';
 import { simulateFirstOrder, simulateSecondOrder } from '../support/exactProcesses.js';
+import { simulateVaried } from '../support/variedProcess.js';
 import { deviation, mean, percent, printTable } from './table.js';
 
 const TRACKS = 40;
@@ -121,62 +122,169 @@ function firstOrderTable(): void {
   );
 }
 
+/** Studies whose coefficients are known at some places. */
+interface KnownStudy {
+  readonly title: string;
+  readonly order: 'first' | 'second';
+  readonly simulate: (seed: number) => TrackSet;
+  readonly shapes: StudyInput;
+  /** Along x. */
+  readonly places: readonly number[];
+  /** Columns to judge, and their true values at a place. */
+  readonly truth: Readonly<Record<string, (x: number) => number>>;
+}
+
+const constant = (value: number) => (): number => value;
+
+function constantStudy(
+  title: string,
+  friction: number,
+  design: { tracks: number; frames: number; localizationError: number },
+): KnownStudy {
+  return {
+    title,
+    order: 'second',
+    simulate: (seed) => simulateSecondOrder({ ...design, friction, seed }),
+    shapes: { ...CONSTANT, force: 'constant' },
+    places: [0],
+    truth: {
+      force_x: constant(0),
+      friction_xx: constant(friction),
+      noise_xx: constant(2 * friction),
+      temperature_xx: constant(1),
+    },
+  };
+}
+
+const CONSTANT_STUDIES: readonly KnownStudy[] = [
+  constantStudy('second order, Γ·Δ 0.2, s/(v·Δ) 0.1', 0.2, {
+    tracks: 40,
+    frames: 500,
+    localizationError: 0.1,
+  }),
+  constantStudy('second order, Γ·Δ 0.1, s/(v·Δ) 0.3', 0.1, {
+    tracks: 40,
+    frames: 500,
+    localizationError: 0.3,
+  }),
+  constantStudy('the same, 5 long tracks', 0.2, { tracks: 5, frames: 4000, localizationError: 0.1 }),
+  {
+    title: 'first order, s²/(2DΔ) 0.25',
+    order: 'first',
+    simulate: (seed) =>
+      simulateFirstOrder({ tracks: 40, frames: 500, diffusion: 0.5, localizationError: 0.5, seed }),
+    shapes: { ...CONSTANT, drift: 'constant' },
+    places: [0],
+    truth: { drift_x: constant(0), diffusion_xx: constant(0.5) },
+  },
+];
+
+const VARIED = { dimensions: 1, tracks: 40, frames: 1000, substeps: 20, startSpread: 6, warmUp: 100 };
+const frictionBump = (x: number): number => 0.15 * (1 + 1.5 * Math.exp((-x * x) / 18));
+const noiseStep = (x: number): number => 0.3 * (1 + 0.6 * Math.tanh(x / 3));
+const PLACES = [-8, -4, 0, 4, 8];
+
+/** Both change over a length of 3; a displacement per frame is about Δ long. */
+function variedStudy(
+  varying: 'friction' | 'noise',
+  interval: number,
+  friction: (x: number) => number,
+  noise: (x: number) => number,
+): KnownStudy {
+  return {
+    title:
+      varying === 'friction'
+        ? `friction 0.15 (1 + 1.5 exp(−x²/18)), noise 0.3, force −0.02 x, s 0.1, Δ ${interval}`
+        : `noise 0.3 (1 + 0.6 tanh(x/3)), friction 0.3, force −0.02 x, s 0.1, Δ ${interval}`,
+    order: 'second',
+    simulate: (seed) =>
+      simulateVaried({
+        ...VARIED,
+        interval,
+        force: (place, out) => out.fill(-0.02 * place[0]),
+        friction: (place, out) => out.fill(friction(place[0])),
+        noise: (place, out) => out.fill(noise(place[0])),
+        localizationError: 0.1,
+        seed,
+      }),
+    shapes: { ...CONSTANT, force: 'linear', [varying]: 'spline' },
+    places: PLACES,
+    truth: varying === 'friction' ? { friction_xx: friction } : { noise_xx: noise },
+  };
+}
+
+const VARIED_STUDIES: readonly KnownStudy[] = [
+  variedStudy('friction', 0.5, frictionBump, constant(0.3)),
+  variedStudy('friction', 1, frictionBump, constant(0.3)),
+  variedStudy('noise', 0.5, constant(0.3), noiseStep),
+];
+
+interface Finding {
+  /** Relative to the truth, or absolute where that is 0. */
+  readonly deviations: number[];
+  covered: number;
+}
+
+/** Column → place → what came out over the seeds. */
+function repeatStudy(study: KnownStudy, studies: number): Map<string, Finding[]> {
+  const findings = new Map(
+    Object.keys(study.truth).map((name) => [
+      name,
+      study.places.map((): Finding => ({ deviations: [], covered: 0 })),
+    ]),
+  );
+  for (let seed = 1; seed <= studies; seed++) {
+    const fitted = estimate(study.simulate(seed), study.shapes, study.order);
+    const replicates = drawReplicates(fitted.estimate, 200, seed);
+    const multiplier = pointwiseMultiplier(0.95, fitted.plan.blocks.count, 200);
+    const spreads = measureSpread(fitted.estimate.model, replicates, Float64Array.from(study.places));
+    for (const { name, scale, values, deviations } of spreads) {
+      findings.get(name)?.forEach((finding, i) => {
+        const truth = study.truth[name](study.places[i]);
+        const distance = scale === 'logarithmic' ? Math.log(values[i] / truth) : values[i] - truth;
+        if (Math.abs(distance) <= multiplier * deviations[i]) finding.covered++;
+        finding.deviations.push(truth === 0 ? values[i] : values[i] / truth - 1);
+      });
+    }
+  }
+  return findings;
+}
+
 function coverageTable(): void {
   const studies = Math.max(200, seeds);
-  const rows: string[][] = [];
-  const cases: [string, 'first' | 'second', (seed: number) => TrackSet][] = [
-    [
-      'second order, Γ·Δ 0.2, s/(v·Δ) 0.1',
-      'second',
-      (seed) => simulateSecondOrder({ tracks: 40, frames: 500, friction: 0.2, localizationError: 0.1, seed }),
-    ],
-    [
-      'second order, Γ·Δ 0.1, s/(v·Δ) 0.3',
-      'second',
-      (seed) => simulateSecondOrder({ tracks: 40, frames: 500, friction: 0.1, localizationError: 0.3, seed }),
-    ],
-    [
-      'second order, 5 long tracks',
-      'second',
-      (seed) => simulateSecondOrder({ tracks: 5, frames: 4000, friction: 0.2, localizationError: 0.1, seed }),
-    ],
-    [
-      'first order, s²/(2DΔ) 0.25',
-      'first',
-      (seed) => simulateFirstOrder({ tracks: 40, frames: 500, diffusion: 0.5, localizationError: 0.5, seed }),
-    ],
-  ];
-  for (const [title, order, simulate] of cases) {
-    const covered = new Map<string, number>();
-    for (let seed = 1; seed <= studies; seed++) {
-      const fitted = estimate(simulate(seed), { ...CONSTANT, force: 'constant', drift: 'constant' }, order);
-      const replicates = drawReplicates(fitted.estimate, 200, seed);
-      const multiplier = pointwiseMultiplier(0.95, fitted.plan.blocks.count, 200);
-      const friction = title.includes('0.1,') ? 0.1 : 0.2;
-      const truth: Record<string, number> = {
-        force_x: 0,
-        friction_xx: friction,
-        noise_xx: 2 * friction,
-        temperature_xx: 1,
-        drift_x: 0,
-        diffusion_xx: 0.5,
-      };
-      for (const { name, scale, values, deviations } of measureSpread(
-        fitted.estimate.model,
-        replicates,
-        Float64Array.of(0),
-      )) {
-        const distance =
-          scale === 'logarithmic' ? Math.log(values[0] / truth[name]) : values[0] - truth[name];
-        covered.set(
-          name,
-          (covered.get(name) ?? 0) + (Math.abs(distance) <= multiplier * deviations[0] ? 1 : 0),
-        );
-      }
+  const rows = CONSTANT_STUDIES.map((study) => {
+    const findings = repeatStudy(study, studies);
+    const shares = [...findings].map(([name, [{ covered }]]) => `${name} ${percent(covered / studies)}`);
+    return [study.title, shares.join(', ')];
+  });
+  printTable(
+    `Coverage of 95 % intervals, constant coefficients, ${studies} studies`,
+    ['case', 'covered'],
+    rows,
+  );
+}
+
+function variedTable(): void {
+  for (const study of VARIED_STUDIES) {
+    const rows: string[][] = [];
+    for (const [name, places] of repeatStudy(study, seeds)) {
+      places.forEach(({ deviations, covered }, i) => {
+        rows.push([
+          `${name} at x = ${study.places[i]}`,
+          study.truth[name](study.places[i]).toFixed(3),
+          `${percent(mean(deviations))} ± ${percent(deviation(deviations) / Math.sqrt(seeds))}`,
+          percent(deviation(deviations)),
+          percent(covered / seeds),
+        ]);
+      });
     }
-    rows.push([title, [...covered].map(([name, hits]) => `${name} ${percent(hits / studies)}`).join(', ')]);
+    const { tracks, frames } = VARIED;
+    printTable(
+      `${study.title}; ${tracks} tracks × ${frames} frames, ${seeds} seeds`,
+      ['coefficient', 'true', 'bias', 'scatter', 'covered by 95 % intervals'],
+      rows,
+    );
   }
-  printTable(`Coverage of 95 % intervals over ${studies} studies`, ['case', 'covered'], rows);
 }
 
 if (only === '' || only === 'free') secondOrderTable('Second order, free', () => 0, 'constant');
@@ -184,3 +292,4 @@ if (only === '' || only === 'trapped')
   secondOrderTable('Second order, trapped (k = (0.3/Δ)²)', () => 0.09, 'linear');
 if (only === '' || only === 'first') firstOrderTable();
 if (only === '' || only === 'coverage') coverageTable();
+if (only === '' || only === 'varied') variedTable();
