@@ -64,6 +64,14 @@ export {
 } from './simulation/simulateScenario.js';
 
 // report
-export { renderReport } from './report/renderReport.js';
-export type { ReportInput } from './report/ReportInput.js';
-export { formatFitSummary, formatResimulationSummary, formatSurveySummary } from './report/terminal.js';
+export type { Figure } from './report/figure.js';
+export { composeFigure } from './report/figureFile.js';
+export { drawReport, renderReport } from './report/renderReport.js';
+export type { ReportedChallenge, ReportedTest, ReportInput } from './report/ReportInput.js';
+export {
+  formatChallengeSummary,
+  formatFitSummary,
+  formatResimulationSummary,
+  formatSurveySummary,
+  formatTestSummary,
+} from './report/terminal.js';

@@ -39,7 +39,7 @@ export function sayAssumption(check: ReportedChallenge): string {
 export function sayP(p: number | null): string {
   if (p === null) return 'p unknown';
   const text = formatP(p);
-  return text.startsWith('<') ? `p ${text}` : `p = ${text}`;
+  return (text.startsWith('<') ? `p ${text}` : `p = ${text}`).replaceAll(' ', '\u00a0');
 }
 
 /** All tests in one sentence. */

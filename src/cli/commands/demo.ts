@@ -56,7 +56,7 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
   const recording = await readRecording(paths, study, terminal);
   const survey = surveyTracks(recording.tracks, { localizationError: study.localizationError });
   await keep('survey.json', formatJson(survey));
-  await say(`${formatSurveySummary(survey, terminal.summaryStyle)}\n`);
+  await say(`${formatSurveySummary({ ...survey, units: study.units }, terminal.summaryStyle)}\n`);
 
   const fit = await fitFiles(paths, study, terminal);
   await keep('fit.json', formatJson(fit));

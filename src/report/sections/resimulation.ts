@@ -28,8 +28,8 @@ const MARKS: readonly LegendPart[] = [
 /** The verdict in one sentence, shared with the terminal summary. */
 export function sayVerdict(result: ResimulationResult): string {
   return result.consistent
-    ? `Recordings simulated from the fitted model look like the real one: taken together, the statistics below do not tell them apart (${sayP(result.p)}).`
-    : `Recordings simulated from the fitted model differ from the real one (${sayP(result.p)}): the model misses something that the statistics below see.`;
+    ? `Recordings simulated from the fitted model look like the real one: all statistics taken together do not tell them apart (${sayP(result.p)}).`
+    : `Recordings simulated from the fitted model differ from the real one (${sayP(result.p)}): the model misses something that the statistics see.`;
 }
 
 const GAUGE = { width: 140, height: 16, margin: 6 };
