@@ -8,18 +8,21 @@ import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
 import { UsageError, type Warning } from '../../errors.js';
 import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
 import { withParameters } from '../../fields/modelParameters.js';
-import type { TrackSet } from '../../tracks/TrackSet.js';
-import { templateModel } from '../differences/estimateDifferences.js';
+import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
+import { describeVisited } from '../../tracks/visitedRegion.js';
+import { LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan } from '../Estimate.js';
 import { createLocalInformation, expectInformation } from './expectedInformation.js';
 import { createFirstOrderPass } from './firstOrderPass.js';
 import { type FieldSlot, layOutLikelihood, type LikelihoodLayout } from './layout.js';
 import type { PassSetting } from './PathPass.js';
 import { type RankedPenalty, type ScoringSolution, solveScores } from './scoring.js';
+import { measureFlow } from './measureFlow.js';
 import { createSecondOrderPass } from './secondOrderPass.js';
 import { findStart } from './startValues.js';
 
 const FLOOR = 1e-7; // smallest localization error variance, relative to the mean squared displacement per step
+const ROUGH_POSITIONS = 150; // per function: enough for the metric of the iteration
 const WIDEST = 40; // |log| of positive coefficients and variances stays below; nothing recorded spans e^40
 
 /**
@@ -47,6 +50,9 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
     setting,
   );
   const local = createLocalInformation(plan.order);
+  const flow = plan.order === 'second' ? measureFlow(tracks, describeVisited(tracks)) : null;
+  const functions = Math.max(...layout.bases.map((basis) => basis.functionCount));
+  const stride = Math.max(1, Math.floor(countPositions(tracks) / (ROUGH_POSITIONS * functions)));
   const groups = listPenalties(layout, plan);
   const solution = solveScores(
     {
@@ -54,7 +60,8 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
       blocks: plan.blocks.count,
       groups,
       evaluate: (parameters, scores) => pass.run(parameters, scores),
-      information: (parameters) => expectInformation(tracks, layout, setting, local, parameters),
+      information: (parameters, rough) =>
+        expectInformation(tracks, layout, setting, local, parameters, flow, rough ? stride : 1),
       confine: (parameters) => confine(parameters, layout, floors),
     },
     findStart(tracks, plan, layout, floors),
@@ -139,7 +146,7 @@ function confine(parameters: Float64Array, layout: LikelihoodLayout, floors: Flo
 function listPenalties(layout: LikelihoodLayout, plan: EstimationPlan): RankedPenalty[] {
   const groups: RankedPenalty[] = [];
   const push = (slot: FieldSlot | null, smoothing: EstimationPlan['force']['smoothing']): void => {
-    if (!slot || slot.basis < 0 || smoothing === 'none') return;
+    if (!slot || slot.basis < 0) return;
     const roughness = layout.bases[slot.basis].roughness();
     if (!roughness) return;
     const k = slot.functionCount;
@@ -149,6 +156,7 @@ function listPenalties(layout: LikelihoodLayout, plan: EstimationPlan): RankedPe
       offsets: Array.from({ length: slot.components }, (_, component) => slot.offset + component * k),
       roughness,
       functionCount: k,
+      fixedStrength: smoothing === 'light' ? LIGHT_SMOOTHING : undefined,
       rank: realEigenvalues.filter((value) => value > 1e-9 * largest).length,
     });
   };
@@ -165,7 +173,11 @@ function decompose(flat: Float64Array, k: number): EigenvalueDecomposition {
 /** One-step effect of every block, (I + S)⁻¹ s_b; shape (B, p). */
 function blockInfluences({ scores, inverse, parameters }: ScoringSolution, blocks: number): Float64Array {
   const p = parameters.length;
-  return Float64Array.from(Matrix.from1DArray(blocks, p, scores).mmul(inverse).to1DArray());
+  return Float64Array.from(
+    Matrix.from1DArray(blocks, p, scores)
+      .mmul(Matrix.from1DArray(p, p, inverse))
+      .to1DArray(),
+  );
 }
 
 /** Smoothing bias as a random effect, (I + S)⁻¹ S^{1/2}; see `penalizedMoments` for the source. */
@@ -175,17 +187,19 @@ function factorOfSmoothing(
 ): Estimate['smoothingFactor'] {
   const p = parameters.length;
   const columns: Float64Array[] = [];
-  groups.forEach(({ offsets, functionCount: k, roughness }, g) => {
+  groups.forEach(({ offsets, functionCount: k, roughness, fixedStrength }, g) => {
+    if (fixedStrength !== undefined) return; // no bias is accounted for
     const { realEigenvalues, eigenvectorMatrix } = decompose(roughness, k);
     const largest = Math.max(...realEigenvalues);
     for (const offset of offsets) {
       for (let e = 0; e < k; e++) {
         if (realEigenvalues[e] <= 1e-9 * largest) continue;
         const size = Math.sqrt(strengths[g] * realEigenvalues[e]);
+        const vector = eigenvectorMatrix.getColumn(e);
         columns.push(
           Float64Array.from({ length: p }, (_, i) => {
             let sum = 0;
-            for (let j = 0; j < k; j++) sum += inverse.get(i, offset + j) * eigenvectorMatrix.get(j, e);
+            for (let j = 0; j < k; j++) sum += inverse[i * p + offset + j] * vector[j];
             return size * sum;
           }),
         );
@@ -214,7 +228,7 @@ function describeErrors(
     const i = layout.errorOffset + axis;
     const variance = Math.exp(parameters[i]);
     const value = variance > 2 * floors[axis] ? Math.sqrt(variance) : 0;
-    const varianceError = variance * Math.sqrt(Math.max(inverse.get(i, i), 0));
+    const varianceError = variance * Math.sqrt(inverse[i * layout.size + i]);
     // Near zero the square root flattens: the error of s is then what makes s² one standard error.
     return { value, standardError: varianceError / (value + Math.sqrt(value * value + varianceError)) };
   });

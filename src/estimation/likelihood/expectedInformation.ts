@@ -4,8 +4,8 @@
  * semi-definite by construction, which the observed curvature is not, and costs no more than the normal equations of a
  * regression; Fisher scoring uses it as its metric.
  *
- * Force: h/N per position (second order), h/2D (first order), and zero between force and the rest, which carry
- * information through variances alone.
+ * Force: h/N per position (second order), h/2D (first order). Between force and the rest there is none but through the
+ * mean motion: where particles drift at u, the drift by friction −Γu tells of friction what a force does.
  *
  * Source  Whittle, Ark. Mat. 2 (1953) 423; Fisher scoring: Rao, Proc. Camb. Phil. Soc. 44 (1948) 50.
  */
@@ -27,13 +27,19 @@ export type LocalInformation = (
   out: Float64Array,
 ) => void;
 
-/** Shape (p, p). */
+/**
+ * @param flow  shape (n, d): mean velocity by place, see `measureFlow`; null at first order
+ * @param stride  takes every so-many-th position of a track for the others, which is enough for a metric
+ * @returns shape (p, p)
+ */
 export function expectInformation(
   tracks: TrackSet,
   layout: LikelihoodLayout,
   setting: PassSetting,
   local: LocalInformation,
   parameters: Float64Array,
+  flow: Float64Array | null,
+  stride = 1,
 ): Float64Array {
   const d = layout.dimensions;
   const p = layout.size;
@@ -49,10 +55,10 @@ export function expectInformation(
     layout.errorOffset < 0 && setting.knownError === null ? tracks.localizationErrors : null;
   const indices = layout.bases.map((basis) => new Int32Array(basis.support));
   const values = layout.bases.map((basis) => new Float64Array(basis.support));
-  const sums = new Float64Array(d * 5); // per axis: force, ΓΓ, ΓN, NN weights, unused
+  const sums = new Float64Array(d * 5); // per axis: weights of force, ΓΓ, ΓN, NN, and force with Γ
   const { positions, times, trackOffsets } = tracks;
   for (let track = 0; track < countTracks(tracks); track++) {
-    for (let row = trackOffsets[track] + 1; row < trackOffsets[track + 1]; row++) {
+    for (let row = trackOffsets[track] + 1 + (track % stride); row < trackOffsets[track + 1]; row += stride) {
       const at = row * d;
       const interval = times[row] - times[row - 1];
       layout.bases.forEach((basis, b) => {
@@ -66,7 +72,9 @@ export function expectInformation(
         const error = pointErrors ? pointErrors[at + axis] ** 2 : errors[axis];
         local(frictions[axis * d + axis], noise, error, interval, information);
         sums[axis] = model.order === 'second' ? interval / noise : interval / (2 * noise);
-        sums[d + axis] = information[0];
+        const carried = flow ? -frictions[axis * d + axis] * flow[at + axis] : 0;
+        sums[4 * d + axis] = sums[axis] * carried;
+        sums[d + axis] = information[0] + sums[axis] * carried * carried;
         sums[2 * d + axis] = information[1];
         sums[3 * d + axis] = information[4];
         if (layout.errorOffset >= 0) {
@@ -82,10 +90,14 @@ export function expectInformation(
       if (layout.friction) {
         addProducts(out, p, layout.friction, layout.friction, sums, d, d, indices, values);
         addProducts(out, p, layout.friction, layout.noise, sums, 2 * d, d, indices, values);
+        if (flow) addProducts(out, p, layout.force, layout.friction, sums, 4 * d, d, indices, values);
       }
     }
   }
-  for (let i = 0; i < p; i++) for (let j = 0; j < i; j++) out[i * p + j] = out[j * p + i];
+  for (let i = 0; i < p; i++) {
+    out[i * p + i] *= stride;
+    for (let j = 0; j < i; j++) out[i * p + j] = out[j * p + i] *= stride;
+  }
   return out;
 }
 
@@ -109,8 +121,10 @@ function addProducts(
     if (!perAxis) for (let other = 1; other < d; other++) weight += weights[from + other];
     const rowOffset = first.offset + (first.components === d ? axis : 0) * first.functionCount;
     const columnOffset = second.offset + (second.components === d ? axis : 0) * second.functionCount;
-    const [fi, fv] = [indices[first.basis], values[first.basis]];
-    const [si, sv] = [indices[second.basis], values[second.basis]];
+    const fi = indices[first.basis];
+    const fv = values[first.basis];
+    const si = indices[second.basis];
+    const sv = values[second.basis];
     for (let i = 0; i < fi.length; i++) {
       const scaled = weight * fv[i];
       const base = (rowOffset + fi[i]) * p + columnOffset;

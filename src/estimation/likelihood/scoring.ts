@@ -12,8 +12,8 @@
  *         1071; Fisher scoring: Rao, Proc. Camb. Phil. Soc. 44 (1948) 50.
  */
 
-import { CholeskyDecomposition, Matrix } from 'ml-matrix';
 import { NumericalError } from '../../errors.js';
+import { invertPositive } from '../../numerics/linear/invertPositive.js';
 import type { PenaltyGroup } from '../penalizedMoments.js';
 
 /** A roughness penalty and how many directions of one stretch it acts on. */
@@ -27,8 +27,8 @@ export interface ScoringProblem {
   readonly groups: readonly RankedPenalty[];
   /** Log-likelihood at a point; fills the block scores, shape (B, p), where given. */
   evaluate(parameters: Float64Array, scores: Float64Array | null): number;
-  /** The metric at a point, shape (p, p), positive semi-definite. */
-  information(parameters: Float64Array): Float64Array;
+  /** The metric at a point, shape (p, p), positive semi-definite; a rough one will do on the way. */
+  information(parameters: Float64Array, rough: boolean): Float64Array;
   /** Moves a point to where it may be (bounds), in place. */
   confine(parameters: Float64Array): void;
 }
@@ -38,7 +38,7 @@ export interface ScoringSolution {
   /** Shape (B, p), at the solution. */
   readonly scores: Float64Array;
   /** (I + S_λ)⁻¹, shape (p, p). */
-  readonly inverse: Matrix;
+  readonly inverse: Float64Array;
   readonly information: Float64Array;
   readonly strengths: Float64Array;
   readonly logLikelihood: number;
@@ -48,11 +48,15 @@ export interface ScoringSolution {
 }
 
 const MOST_ITERATIONS = 80;
-const STEP_TOLERANCE = 0.02; // of a standard error, largest over the parameters
+const TOLERANCE = 0.01; // squared length of a step in standard errors: no quantity moves by more than a tenth of its own
+const SETTLED = 0.5; // of the effective parameters: squared step length below which strengths move too
 const STRENGTH_TOLERANCE = 0.05; // of log λ, where λ matters
 const START_SHARE = 1e-2; // of the information a penalty starts with
 const STIFFEST = 1e7; // strengths relative to the information beyond which a field is as smooth as it can be
 const SOFTEST = 1e-9;
+const FASTEST = 6; // times the plain step
+const LONGEST_MOVE = 2; // of log λ at once
+const SHORTENED = 0.75; // of a step that turned back
 const HALVINGS = 6;
 const RIDGE = 1e-9; // relative; keeps directions that nothing tells apart from making the system singular
 
@@ -64,42 +68,52 @@ export function solveScores(problem: ScoringProblem, start: Float64Array): Scori
   let scores = new Float64Array(problem.blocks * p);
   let trialScores = new Float64Array(problem.blocks * p);
   let logLikelihood = problem.evaluate(parameters, scores);
-  let information = problem.information(parameters);
-  const strengths = Float64Array.from(groups, (group) => START_SHARE * scaleOf(information, p, group));
+  let information = problem.information(parameters, true);
+  const strengths = Float64Array.from(
+    groups,
+    (group) => (group.fixedStrength ?? START_SHARE) * scaleOf(information, p, group),
+  );
+  const paces = groups.map(() => ({ factor: 1, last: 0 }));
+  let relaxation = 1;
+  let lastStep: Float64Array = new Float64Array(p);
   let converged = false;
   let iterations = 0;
   let inverse = invertSystem(information, groups, strengths, p);
   while (iterations < MOST_ITERATIONS && !converged) {
     iterations++;
-    const gradient = sumScores(scores, p);
-    subtractPenalty(gradient, groups, strengths, parameters);
-    const step = Float64Array.from(inverse.mmul(Matrix.columnVector(gradient)).to1DArray());
+    const gradient = penalizedScore(scores, groups, strengths, parameters);
+    const step = multiply(inverse, gradient);
+    const decrement = innerProduct(gradient, step);
     const before = logLikelihood - penaltyOf(groups, strengths, parameters) / 2;
-    let length = 1;
+    // Steps that turn back on the one before overshoot: the metric is too small in some direction.
+    relaxation =
+      innerProduct(gradient, lastStep) < 0 ? relaxation * SHORTENED : Math.min(1, relaxation / SHORTENED);
+    let length = relaxation;
+    lastStep = step;
     let moved = parameters;
-    let reached = -Infinity;
-    for (let halving = 0; halving <= HALVINGS; halving++) {
+    for (let halving = 0; halving <= HALVINGS; halving++, length /= 2) {
       moved = parameters.map((value, i) => value + length * step[i]);
       problem.confine(moved);
-      const trial = problem.evaluate(moved, trialScores);
-      reached = trial;
-      // The coefficients' places move with them, so the score is not quite a gradient: a small loss is no refusal.
-      if (trial - penaltyOf(groups, strengths, moved) / 2 > before - 0.05) break;
-      length /= 2;
-    }
-    let largest = 0;
-    for (let i = 0; i < p; i++) {
-      const error = Math.sqrt(Math.max(inverse.get(i, i), 0));
-      if (error > 0) largest = Math.max(largest, Math.abs(moved[i] - parameters[i]) / error);
+      logLikelihood = problem.evaluate(moved, trialScores);
+      // The places where coefficients are read move with them, so the score is not quite the gradient of the
+      // likelihood: a step is good if it brings either nearer to where it should be.
+      if (logLikelihood - penaltyOf(groups, strengths, moved) / 2 > before) break;
+      const left = penalizedScore(trialScores, groups, strengths, moved);
+      if (innerProduct(left, multiply(inverse, left)) < decrement) break;
     }
     parameters = moved;
-    logLikelihood = reached;
     [scores, trialScores] = [trialScores, scores];
-    information = problem.information(parameters);
-    const change = updateStrengths(groups, strengths, information, inverse, parameters, p);
+    information = problem.information(parameters, true);
+    // Strengths are worth moving once the coefficients are about where the old ones want them.
+    const settled = decrement < SETTLED * (1 + innerProduct(inverse, information));
+    const change = settled
+      ? updateStrengths(groups, strengths, paces, information, inverse, parameters, p)
+      : Infinity;
     inverse = invertSystem(information, groups, strengths, p);
-    converged = largest < STEP_TOLERANCE && change < STRENGTH_TOLERANCE;
+    converged = decrement < TOLERANCE && change < STRENGTH_TOLERANCE;
   }
+  information = problem.information(parameters, false);
+  inverse = invertSystem(information, groups, strengths, p);
   return {
     parameters,
     scores,
@@ -107,23 +121,31 @@ export function solveScores(problem: ScoringProblem, start: Float64Array): Scori
     information,
     strengths,
     logLikelihood,
-    effectiveParameters: traceOfProduct(inverse, information, p),
+    effectiveParameters: innerProduct(inverse, information),
     iterations,
     converged,
   };
+}
+
+/** How fast a strength moves: steps in the same direction are lengthened, for the plain iteration creeps. */
+interface Pace {
+  factor: number;
+  last: number;
 }
 
 /** One move of every strength; returns the largest change of a logarithm that still matters. */
 function updateStrengths(
   groups: readonly RankedPenalty[],
   strengths: Float64Array,
+  paces: Pace[],
   information: Float64Array,
-  inverse: Matrix,
+  inverse: Float64Array,
   parameters: Float64Array,
   p: number,
 ): number {
   let largest = 0;
   groups.forEach((group, g) => {
+    if (group.fixedStrength !== undefined) return;
     const { offsets, functionCount: k, roughness, rank } = group;
     let trace = 0;
     let form = 0;
@@ -132,7 +154,7 @@ function updateStrengths(
         for (let j = 0; j < k; j++) {
           const weight = roughness[i * k + j];
           if (weight === 0) continue;
-          trace += weight * inverse.get(offset + i, offset + j);
+          trace += weight * inverse[(offset + i) * p + offset + j];
           form += weight * parameters[offset + i] * parameters[offset + j];
         }
       }
@@ -141,8 +163,13 @@ function updateStrengths(
     const scale = scaleOf(information, p, group);
     const wanted = Math.min(Math.max(free / Math.max(form, 1e-300), SOFTEST * scale), STIFFEST * scale);
     const change = Math.log(wanted / strengths[g]);
-    strengths[g] = wanted;
-    if (free > 0.1) largest = Math.max(largest, Math.abs(change) * Math.min(1, free));
+    const pace = paces[g];
+    pace.factor =
+      change * pace.last > 0 ? Math.min(1.5 * pace.factor, FASTEST) : Math.max(1, pace.factor / 4);
+    pace.last = change;
+    const move = Math.min(Math.max(change * pace.factor, -LONGEST_MOVE), LONGEST_MOVE);
+    strengths[g] = Math.min(Math.max(strengths[g] * Math.exp(move), SOFTEST * scale), STIFFEST * scale);
+    largest = Math.max(largest, Math.abs(change) * Math.min(1, free));
   });
   return largest;
 }
@@ -155,18 +182,15 @@ function scaleOf(information: Float64Array, p: number, group: PenaltyGroup): num
   return Math.max(sum / (group.offsets.length * group.functionCount), 1e-300);
 }
 
-function sumScores(scores: Float64Array, p: number): Float64Array {
-  const sum = new Float64Array(p);
-  for (let i = 0; i < scores.length; i++) sum[i % p] += scores[i];
-  return sum;
-}
-
-function subtractPenalty(
-  gradient: Float64Array,
+/** Σ_b s_b − S_λ θ. */
+function penalizedScore(
+  scores: Float64Array,
   groups: readonly PenaltyGroup[],
   strengths: Float64Array,
   parameters: Float64Array,
-): void {
+): Float64Array {
+  const gradient = new Float64Array(parameters.length);
+  for (let i = 0; i < scores.length; i++) gradient[i % gradient.length] += scores[i];
   groups.forEach(({ offsets, functionCount: k, roughness }, g) => {
     for (const offset of offsets) {
       for (let i = 0; i < k; i++) {
@@ -176,6 +200,7 @@ function subtractPenalty(
       }
     }
   });
+  return gradient;
 }
 
 function penaltyOf(
@@ -196,57 +221,50 @@ function penaltyOf(
 }
 
 /** (I + S_λ + ridge)⁻¹. */
-export function invertSystem(
+function invertSystem(
   information: Float64Array,
   groups: readonly PenaltyGroup[],
   strengths: Float64Array,
   p: number,
-): Matrix {
-  const system = Matrix.from1DArray(p, p, information);
+): Float64Array {
+  const system = information.slice();
   const typical = Float64Array.from({ length: p }, (_, i) => information[i * p + i]);
   for (const group of groups) {
     const scale = scaleOf(information, p, group);
     for (const offset of group.offsets) typical.fill(scale, offset, offset + group.functionCount);
   }
-  for (let i = 0; i < p; i++) system.set(i, i, system.get(i, i) + RIDGE * Math.max(typical[i], 1e-300));
+  for (let i = 0; i < p; i++) system[i * p + i] += RIDGE * Math.max(typical[i], 1e-300);
   groups.forEach(({ offsets, functionCount: k, roughness }, g) => {
     for (const offset of offsets) {
       for (let i = 0; i < k; i++) {
-        for (let j = 0; j < k; j++) {
-          const weight = roughness[i * k + j];
-          if (weight !== 0)
-            system.set(offset + i, offset + j, system.get(offset + i, offset + j) + strengths[g] * weight);
-        }
+        const row = (offset + i) * p + offset;
+        for (let j = 0; j < k; j++) system[row + j] += strengths[g] * roughness[i * k + j];
       }
     }
   });
-  // Unit diagonal first: parameters of different units differ by orders of magnitude.
-  const scales = Array.from({ length: p }, (_, i) => 1 / Math.sqrt(system.get(i, i)));
-  scaleSymmetric(system, scales);
-  const factor = new CholeskyDecomposition(system);
-  if (!factor.isPositiveDefinite()) {
+  const inverse = invertPositive(system, p);
+  if (!inverse) {
     throw new NumericalError(
       'the likelihood has no curvature in some direction: the data do not tell the functions apart; use fewer functions (a smaller spline:N) or constant',
     );
   }
-  const inverse = factor.solve(Matrix.eye(p, p));
-  scaleSymmetric(inverse, scales);
   return inverse;
 }
 
-/** Multiplies entry (i, j) by both scales, and makes the matrix symmetric to the last bit. */
-function scaleSymmetric(matrix: Matrix, scales: readonly number[]): void {
-  for (let i = 0; i < scales.length; i++) {
-    for (let j = 0; j <= i; j++) {
-      const value = matrix.get(i, j) * (scales[i] * scales[j]);
-      matrix.set(i, j, value);
-      matrix.set(j, i, value);
-    }
+function multiply(matrix: Float64Array, vector: Float64Array): Float64Array {
+  const p = vector.length;
+  const out = new Float64Array(p);
+  for (let i = 0; i < p; i++) {
+    let sum = 0;
+    for (let j = 0; j < p; j++) sum += matrix[i * p + j] * vector[j];
+    out[i] = sum;
   }
+  return out;
 }
 
-function traceOfProduct(inverse: Matrix, information: Float64Array, p: number): number {
+/** Sum of products: of two vectors, or the trace of the product of two symmetric matrices. */
+function innerProduct(first: Float64Array, second: Float64Array): number {
   let sum = 0;
-  for (let i = 0; i < p; i++) for (let j = 0; j < p; j++) sum += inverse.get(i, j) * information[j * p + i];
+  for (let i = 0; i < first.length; i++) sum += first[i] * second[i];
   return sum;
 }

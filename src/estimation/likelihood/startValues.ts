@@ -53,7 +53,12 @@ export function findStart(
 
 function tryDifferences(tracks: TrackSet, plan: EstimationPlan): Estimate | null {
   try {
-    return estimateDifferences(tracks, plan);
+    return estimateDifferences(tracks, {
+      ...plan,
+      force: { ...plan.force, smoothing: 'light' },
+      friction: { ...plan.friction, smoothing: 'light' },
+      noise: { ...plan.noise, smoothing: 'light' },
+    });
   } catch (error) {
     // Runs too short for differences, or moments that tell nothing apart: the likelihood may still cope.
     if (error instanceof DataError || error instanceof NumericalError) return null;
