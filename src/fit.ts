@@ -2,7 +2,7 @@
  * The main road: from tracks and a study to a fit with its uncertainty.
  */
 
-import type { FitDocument } from './documents/FitDocument.js';
+import type { FitDocument, FitResult } from './documents/FitDocument.js';
 import type { Study } from './documents/Study.js';
 import type { Warning } from './errors.js';
 import { chooseEstimator } from './estimation/choose.js';
@@ -17,16 +17,12 @@ import { drawReplicates } from './uncertainty/bootstrap.js';
 import { warnOfSigns } from './uncertainty/signs.js';
 import { measureSpread, pointwiseMultiplier, simultaneousMultiplier } from './uncertainty/spread.js';
 
+export type { FitResult };
+
 /** What the caller supplies besides tracks and study; all of it optional. */
 export interface FitContext {
   readonly onProgress?: (done: number, total: number, stage: string) => void;
 }
-
-/** A fit without what only the caller knows: file identity, sources and clock. */
-export type FitResult = Omit<
-  FitDocument,
-  'format' | 'version' | 'program' | 'created' | 'timing' | 'sources'
->;
 
 /** Replicates behind simultaneous bands: their quantile needs more draws than a standard deviation does. */
 const BAND_REPLICATES = 1000;

@@ -2,7 +2,7 @@
  * From a fit to a calibrated scenario: the fitted coefficients with the choices a simulation needs besides them.
  */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitOfAnyOrigin } from '../documents/FitDocument.js';
 import { type Scenario, scenarioSchema } from '../documents/Scenario.js';
 import type { Warning } from '../errors.js';
 import { createModelEvaluator } from '../fields/evaluateModel.js';
@@ -23,7 +23,7 @@ const ENSEMBLE_DRAWS = 200;
  *   observation   as many tracks and frames as were recorded, with their interval, error, exposure and loss
  *   ensemble      coefficient draws from the fit's uncertainty
  */
-export function buildScenario(fit: FitDocument): Scenario {
+export function buildScenario(fit: FitOfAnyOrigin): Scenario {
   const { model, data } = fit;
   const d = model.dimensions;
   const warnings: Warning[] = fit.warnings.map(({ code, message }) => ({ code, message }));
@@ -62,11 +62,11 @@ export function buildScenario(fit: FitDocument): Scenario {
         ? { draws: fit.uncertainty.replicates.slice(0, ENSEMBLE_DRAWS) }
         : null,
     provenance: {
-      program: fit.program,
+      program: fit.program ?? null,
       seed: fit.study.seed,
       estimator: fit.study.estimator,
-      sources: fit.sources.map(({ path, sha256 }) => ({ path, sha256 })),
-      fitted: fit.created,
+      sources: (fit.sources ?? []).map(({ path, sha256 }) => ({ path, sha256 })),
+      fitted: fit.created ?? null,
     },
   });
   const evaluator = createBasisEvaluator(bare);
@@ -79,13 +79,13 @@ export function buildScenario(fit: FitDocument): Scenario {
   };
 }
 
-function missingFrames(fit: FitDocument): number {
+function missingFrames(fit: FitOfAnyOrigin): number {
   const value = fit.survey.missingFrames;
   return typeof value === 'number' && value > 0 ? value : 0;
 }
 
 /** Recorded positions kept for pictures, thinned; where they are few, draws from the visited cells. */
-function collectStartPoints(fit: FitDocument): number[][] {
+function collectStartPoints(fit: FitOfAnyOrigin): number[][] {
   const d = fit.model.dimensions;
   const sampled = fit.trackSample.flatMap((track) => track.points.map((point) => point.slice(1, d + 1)));
   const stride = Math.max(1, Math.ceil(sampled.length / START_POINTS));
@@ -111,7 +111,7 @@ function collectStartPoints(fit: FitDocument): number[][] {
 }
 
 /** Mean inward force over each open face of the visited box, and the mean restoring stiffness across the box. */
-function chooseContinuation(fit: FitDocument): Scenario['continuation'] {
+function chooseContinuation(fit: FitOfAnyOrigin): Scenario['continuation'] {
   const { model, visited } = fit;
   const d = model.dimensions;
   const evaluator = createModelEvaluator(model);
@@ -146,7 +146,7 @@ function chooseContinuation(fit: FitDocument): Scenario['continuation'] {
 
 /** Calls back once per visited cell of the grid's outermost layer that has any, placed on the face of the box. */
 function visitFace(
-  fit: FitDocument,
+  fit: FitOfAnyOrigin,
   axis: number,
   side: number,
   place: Float64Array,

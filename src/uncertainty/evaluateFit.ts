@@ -2,7 +2,7 @@
  * A fit at given places: every coefficient with its pointwise interval and simultaneous band.
  */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitResult } from '../documents/FitDocument.js';
 import { isVisited } from '../tracks/visitedRegion.js';
 import { measureSpread } from './spread.js';
 
@@ -26,7 +26,7 @@ export interface EvaluatedColumn {
  *          diffusion_xx … (first), in the units of the tracks
  */
 export function evaluateFit(
-  fit: FitDocument,
+  fit: FitResult,
   places: Float64Array,
 ): { columns: EvaluatedColumn[]; visited: Uint8Array } {
   const { multiplier, simultaneous, replicates } = fit.uncertainty;
