@@ -1,16 +1,17 @@
 /**
  * The likelihood estimator: state-space quasi-likelihood of the recorded positions, with the coefficients of each step
  * read at the place the filter predicts. Friction, noise and diffusion are exponentials of their weighted sums, hence
- * positive by construction; roughness penalties are chosen by marginal likelihood.
+ * positive by construction; roughness penalties are chosen by marginal likelihood. Matrix forms and exposures are left to
+ * the differences estimator, with a warning.
  */
 
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
-import { UsageError, type Warning } from '../../errors.js';
+import type { Warning } from '../../errors.js';
 import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
 import { withParameters } from '../../fields/modelParameters.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
 import { describeVisited } from '../../tracks/visitedRegion.js';
-import { LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
+import { estimateDifferences, LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan } from '../Estimate.js';
 import { createLocalInformation, expectInformation } from './expectedInformation.js';
 import { createFirstOrderPass } from './firstOrderPass.js';
@@ -28,12 +29,12 @@ const WIDEST = 40; // |log| of positive coefficients and variances stays below; 
 /**
  * Estimates the model by likelihood.
  *
- * @throws UsageError  for forms and settings it does not cover
  * @throws DataError  where no track ever moves
  * @throws NumericalError  where the data cannot tell the functions apart
  */
 export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Estimate {
-  checkCovered(plan);
+  const obstacle = findObstacle(plan);
+  if (obstacle) return replaceByDifferences(tracks, plan, obstacle);
   const model = withLogLinks(templateModel(tracks, plan));
   const errorEstimated = plan.localizationError === null && tracks.localizationErrors === null;
   const zero = { force: plan.force.basis === null, friction: plan.friction.basis === null };
@@ -93,20 +94,22 @@ const UNCONVERGED: Warning = {
     'the likelihood had not settled when the iterations ran out; take the result with care, use fewer functions, or compare with --estimator differences',
 };
 
-function checkCovered(plan: EstimationPlan): void {
-  if (plan.friction.form === 'matrix' || plan.noise.form === 'matrix') {
-    throw new UsageError(
-      '--estimator likelihood takes scalar and axes forms; use --estimator differences for matrix',
-      {
-        option: '--estimator',
-      },
-    );
-  }
-  if (plan.exposure > 0) {
-    throw new UsageError('--estimator likelihood takes no --exposure; use --estimator differences', {
-      option: '--exposure',
-    });
-  }
+/** Why the plan needs another estimator, or null where it does not. */
+function findObstacle(plan: EstimationPlan): string | null {
+  if (plan.friction.form === 'matrix' || plan.noise.form === 'matrix')
+    return 'a full matrix of friction or noise';
+  if (plan.exposure > 0) return 'positions averaged over an exposure';
+  return null;
+}
+
+/** The differences estimate in place of this one, and a warning that says so. */
+function replaceByDifferences(tracks: TrackSet, plan: EstimationPlan, obstacle: string): Estimate {
+  const estimate = estimateDifferences(tracks, plan);
+  const warning: Warning = {
+    code: 'estimator-replaced',
+    message: `the likelihood does not cover ${obstacle} yet, so this fit was made by --estimator differences`,
+  };
+  return { ...estimate, warnings: [warning, ...estimate.warnings] };
 }
 
 function withLogLinks(model: Model): Model {
