@@ -1,0 +1,138 @@
+/**
+ * Binned moments of noise or diffusion, with what binning them again would need: how they move with the coefficients of
+ * the first regression, block by block.
+ */
+
+import type { Basis } from '../../fields/Basis.js';
+import type { TrackSet } from '../../tracks/TrackSet.js';
+import { createErrorSums, type ErrorSums, visitDiffusionRows } from '../differences/firstOrder.js';
+import type { SecondOrderLayout } from '../differences/forceFriction.js';
+import { noisePairs, type ResidualProducts } from '../differences/residualProducts.js';
+import { visitNoiseRows } from '../differences/residuals.js';
+import { addSensitivity, type SparseRow } from '../differences/sparseRows.js';
+import type { EstimationPlan } from '../Estimate.js';
+import { type BinnedMoments, MomentCollector } from './BinnedMoments.js';
+import { type KernelGrid, isInside } from './grid.js';
+import { createKnotWeights } from './motionMoments.js';
+
+export interface NoiseMoments {
+  readonly moments: BinnedMoments;
+  /** Shape (c K, p₁): derivative of the moment vector with respect to the parameters of the first regression. */
+  readonly sensitivity: Float64Array;
+}
+
+type RowVisitor = (
+  row: number,
+  products: ResidualProducts,
+  regressorsOf: (axis: number) => SparseRow,
+) => void;
+
+/** Visits the rows of the regression; made by `secondOrderRows` or `firstOrderRows`. */
+export type NoiseRows = (visit: RowVisitor) => void;
+
+export function secondOrderRows(
+  tracks: TrackSet,
+  form: string,
+  layout: SecondOrderLayout,
+  parameters: Float64Array,
+): NoiseRows {
+  return (visit) => visitNoiseRows(tracks, form, layout, parameters, visit);
+}
+
+/**
+ * Rows of first order, with the sums that the localization variance is read from.
+ *
+ * @param drift  basis of the drift, or null
+ */
+export function firstOrderRows(
+  tracks: TrackSet,
+  plan: EstimationPlan,
+  drift: Basis | null,
+  parameters: Float64Array,
+): { rows: NoiseRows; errors: ErrorSums } {
+  const { form } = plan.noise;
+  const errors = createErrorSums(tracks, plan, drift, parameters);
+  visitDiffusionRows(tracks, form, drift, parameters, (row, _products, neighbours) => {
+    errors.add(row, neighbours);
+  });
+  const rows: NoiseRows = (visit) =>
+    visitDiffusionRows(tracks, form, drift, parameters, (row, products, _neighbours, driftRowOf) => {
+      visit(row, products, driftRowOf);
+    });
+  return { rows, errors };
+}
+
+/**
+ * Collects the moments, in folds of blocks.
+ *
+ * @param parameterCount  p₁
+ */
+export function collectNoiseMoments(
+  tracks: TrackSet,
+  plan: EstimationPlan,
+  grid: KernelGrid,
+  rows: NoiseRows,
+  parameterCount: number,
+  folds: number,
+): NoiseMoments {
+  const { positions, dimensions: d } = tracks;
+  const components = noisePairs(plan.noise.form, d).length;
+  const collector = new MomentCollector(grid.size, 1, components, folds);
+  const sensitivity = new Float64Array(components * grid.size * parameterCount);
+  const at = createKnotWeights(grid);
+  const one = Float64Array.of(1);
+  rows((row, products, regressorsOf) => {
+    if (!isInside(grid, positions, row * d)) return;
+    at.count = grid.basis.evaluateInto(positions, row * d, at.indices, at.values);
+    collector.add(plan.blocks.ofPosition[row] % folds, at, at, one, one, products.responses);
+    if (parameterCount === 0) return;
+    for (let axis = 0; axis < d; axis++) {
+      const regressors = regressorsOf(axis);
+      for (let component = 0; component < components; component++) {
+        const slope = products.slopes[component * d + axis];
+        if (slope === 0) continue;
+        addSensitivity(
+          sensitivity,
+          parameterCount,
+          component * grid.size,
+          at.indices,
+          at.values,
+          at.count,
+          regressors,
+          -slope,
+        );
+      }
+    }
+  });
+  return { moments: collector.finish(), sensitivity };
+}
+
+/**
+ * Unexplained moments of every block.
+ *
+ * @param values  noise or diffusion at the knots, shape (c, K)
+ * @returns one vector of shape (K, 1, c) per block
+ */
+export function collectNoiseResiduals(
+  tracks: TrackSet,
+  plan: EstimationPlan,
+  grid: KernelGrid,
+  rows: NoiseRows,
+  values: Float64Array,
+): Float64Array[] {
+  const { positions, dimensions: d } = tracks;
+  const components = values.length / grid.size;
+  const residuals = Array.from({ length: plan.blocks.count }, () => new Float64Array(values.length));
+  const at = createKnotWeights(grid);
+  rows((row, products) => {
+    if (!isInside(grid, positions, row * d)) return;
+    at.count = grid.basis.evaluateInto(positions, row * d, at.indices, at.values);
+    const out = residuals[plan.blocks.ofPosition[row]];
+    for (let component = 0; component < components; component++) {
+      let rest = products.responses[component];
+      for (let j = 0; j < at.count; j++) rest -= at.values[j] * values[component * grid.size + at.indices[j]];
+      for (let i = 0; i < at.count; i++) out[at.indices[i] * components + component] += at.values[i] * rest;
+    }
+  });
+  return residuals;
+}

@@ -1,0 +1,111 @@
+/**
+ * All fields of a regression together, each with its own bandwidth: every field in turn is smoothed from what the others
+ * leave of the moments, until none changes any more.
+ *
+ * Smoothing flattens peaks and fills valleys. What it takes away from a coefficient, it takes away again when the estimate
+ * itself is smoothed; so the part of the moments that the smoothed field fails to explain is smoothed once more and added,
+ * twice over. That leaves a bias of sixth order in the bandwidth instead of second, at the price of more scatter, which the
+ * intervals contain because the correction is linear in the data like everything else.
+ *
+ * Source  backfitting: Buja, Hastie & Tibshirani, Linear smoothers and additive models, Ann. Statist. 17 (1989) 453;
+ *         correction: Stuetzle & Mittal, Some comments on the asymptotic behavior of robust smoothers, in Smoothing
+ *         Techniques for Curve Estimation (1979) 176 ("twicing"); more than once: Di Marzio & Taylor, On boosting kernel
+ *         regression, J. Stat. Plan. Inference 138 (2008) 2483.
+ */
+
+import { type BinnedMoments, subtractExplained } from './BinnedMoments.js';
+import { type FieldSmoother, smooth } from './fieldSmoother.js';
+import { addCoefficients, gatherMoments } from './localFields.js';
+
+export interface FieldValues {
+  /** Per field: values at the knots, shape (components, K). */
+  readonly values: readonly Float64Array[];
+  readonly converged: boolean;
+}
+
+/** With one, intervals still miss the top of a bump a few bandwidths wide; with three, they cover it. */
+const CORRECTIONS = 2;
+
+const ROUNDS = 60;
+const TOLERANCE = 1e-10; // of the largest value of a field; well below what a block of data contributes
+
+/**
+ * Solves for all fields.
+ *
+ * @param vector  moment vectors to explain, shape (K, Z, T): those of the data, or the change that a block makes
+ */
+export function solveFields(
+  moments: BinnedMoments,
+  smoothers: readonly FieldSmoother[],
+  vector: Float64Array,
+): FieldValues {
+  const values: Float64Array[] = smoothers.map(
+    ({ field }) => new Float64Array(field.components.length * moments.size),
+  );
+  let converged = smoothers.length < 2;
+  for (let round = 0; round < (smoothers.length < 2 ? 1 : ROUNDS); round++) {
+    let change = 0;
+    smoothers.forEach((smoother, index) => {
+      const others = smoothers.filter((_, other) => other !== index);
+      const left = explainAway(
+        moments,
+        others,
+        values.filter((_, other) => other !== index),
+        vector,
+      );
+      const next = smoothAndCorrect(moments, smoother, left);
+      change = Math.max(change, relativeChange(next, values[index]));
+      values[index] = next;
+    });
+    if (change <= TOLERANCE) {
+      converged = true;
+      break;
+    }
+  }
+  return { values, converged };
+}
+
+/** Smooths, and smooths what that leaves unexplained; an average over everything has no bias to correct. */
+function smoothAndCorrect(
+  moments: BinnedMoments,
+  smoother: FieldSmoother,
+  vector: Float64Array,
+): Float64Array {
+  const { instruments, targets } = moments;
+  const { field } = smoother;
+  let values = smooth(smoother, gatherMoments(field, vector, instruments, targets));
+  for (let round = 0; round < CORRECTIONS && field.varies; round++) {
+    const rest = explainAway(moments, [smoother], [values], vector);
+    const more = smooth(smoother, gatherMoments(field, rest, instruments, targets));
+    values = values.map((value, i) => value + more[i]);
+  }
+  return values;
+}
+
+/** Moment vectors less what fields explain of them. */
+export function explainAway(
+  moments: BinnedMoments,
+  smoothers: readonly Pick<FieldSmoother, 'field'>[],
+  values: readonly Float64Array[],
+  vector: Float64Array,
+  matrix: Float64Array = moments.total.matrix,
+): Float64Array {
+  const out = vector.slice();
+  if (smoothers.length === 0) return out;
+  const coefficients = new Float64Array(vector.length);
+  smoothers.forEach(({ field }, index) => {
+    addCoefficients(field, values[index], coefficients, moments.instruments, moments.targets);
+  });
+  subtractExplained(moments, matrix, coefficients, out);
+  return out;
+}
+
+function relativeChange(next: Float64Array, last: Float64Array): number {
+  let size = 0;
+  let change = 0;
+  for (let i = 0; i < next.length; i++) {
+    size = Math.max(size, Math.abs(next[i]));
+    change = Math.max(change, Math.abs(next[i] - last[i]));
+  }
+  return size > 0 ? change / size : 0;
+}
