@@ -88,7 +88,9 @@ export function formatWithError(value: number, error: number): string {
   const place = leadingExponent(Number(scaledError.toPrecision(2))) - 1;
   const decimals = Math.min(20, Math.max(0, -place));
   const round = (number: number) =>
-    withMinus((place > 0 ? Math.round(number / 10 ** place) * 10 ** place : number).toFixed(decimals));
+    withMinus(
+      avoidMinusZero((place > 0 ? Math.round(number / 10 ** place) * 10 ** place : number).toFixed(decimals)),
+    );
   const text = `${round(scaledValue)} ± ${round(scaledError)}`;
   return power === 0 ? text : `(${text}) × ${formatPowerOfTen(power)}`;
 }
@@ -101,7 +103,7 @@ export function formatInterval(value: number, low: number, high: number): string
   const power = wantsPower(exponent) ? exponent : 0;
   const place = leadingExponent(Number((halfWidth / 10 ** power).toPrecision(2))) - 1;
   const decimals = Math.min(20, Math.max(0, -place));
-  const round = (number: number) => withMinus((number / 10 ** power).toFixed(decimals));
+  const round = (number: number) => withMinus(avoidMinusZero((number / 10 ** power).toFixed(decimals)));
   const text = `${round(value)} (${round(low)} to ${round(high)})`;
   return power === 0 ? text : `${text} × ${formatPowerOfTen(power)}`;
 }

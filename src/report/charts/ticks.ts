@@ -20,11 +20,14 @@ export function findRange(values: Iterable<number>): { low: number; high: number
   return low <= high ? { low, high } : null;
 }
 
+const SMALLEST = 1e-290;
+
 /** Edges of at most `count` equal classes with round bounds that cover low … high. */
 export function roundClasses(low: number, high: number, count: number): number[] {
   const size = Math.max(Math.abs(low), Math.abs(high)) || 1;
-  // A constant still gets a class of its own width, wide enough that round-off does not split it.
-  const span = Math.max(high - low, size * 1e-3);
+  // A constant still gets a class of its own width, wide enough that round-off does not split it. Below the range of
+  // numbers with full precision steps could not be told apart, and everything is zero.
+  const span = size < SMALLEST ? 1 : Math.max(high - low, size * 1e-3);
   for (let step = roundStepUp(span / count); ; step = roundStepUp(step * 1.01)) {
     const first = Math.floor(low / step + 1e-9);
     const last = Math.max(first + 1, Math.ceil(high / step - 1e-9));
