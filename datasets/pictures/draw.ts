@@ -10,7 +10,7 @@ import { parseHTML } from 'linkedom';
 import { chromium } from 'playwright-core';
 import {
   evaluateFit,
-  type FitDocument,
+  type FitResult,
   fitTracks,
   formatUnit,
   importTracks,
@@ -97,7 +97,7 @@ function listPanels(name: DataSetName): Panel[] {
 
 const POINTS = 121;
 
-function drawPanel(fit: FitDocument, panel: Panel): string {
+function drawPanel(fit: FitResult, panel: Panel): string {
   const along = Array.from(
     { length: POINTS },
     (_, i) => panel.from + ((panel.to - panel.from) * i) / (POINTS - 1),
@@ -126,11 +126,14 @@ function drawPanel(fit: FitDocument, panel: Panel): string {
     width: 330,
     height: 240,
     marginLeft: 48,
-    marginBottom: 38,
-    marginTop: 30,
+    marginBottom: 40,
+    marginTop: 32,
+    marginRight: 14,
     x: {
       label: `${panel.axis} (${scaled(panel.lengthPower)}${formatUnit('position', fit.data.units)})`,
       labelArrow: 'none',
+      labelAnchor: 'center',
+      labelOffset: 34,
     },
     y: {
       label: `${panel.title} (${scaled(panel.valuePower)}${formatUnit(panel.quantity, fit.data.units)})`,
@@ -157,7 +160,7 @@ function superscript(power: number): string {
   return [...String(power)].map((digit) => digits[digit]).join('');
 }
 
-async function fitDataSet(name: DataSetName): Promise<FitDocument> {
+async function fitDataSet(name: DataSetName): Promise<FitResult> {
   const folder = new URL(`../${name}/`, import.meta.url);
   const descriptor = JSON.parse(readFileSync(new URL('datapackage.json', folder), 'utf8')) as {
     wanderlaw: { study: Record<string, unknown> };
@@ -165,29 +168,23 @@ async function fitDataSet(name: DataSetName): Promise<FitDocument> {
   const study = studySchema.parse(descriptor.wanderlaw.study);
   const chunks = createReadStream(new URL('tracks.csv', folder));
   const { tracks } = await importTracks([{ name: 'tracks.csv', chunks }], study);
-  const fit = await fitTracks(tracks, study);
-  return {
-    ...fit,
-    format: 'wanderlaw-fit',
-    version: 1,
-    program: 'wanderlaw',
-    created: '',
-    timing: {},
-    sources: [],
-  };
+  return fitTracks(tracks, study);
 }
 
 function composePage(pictures: readonly string[], truth: Truth): string {
   const columns =
     truth.dimensions === 1 ? pictures.length : Math.min(pictures.length, pictures.length === 4 ? 2 : 3);
   return `<!doctype html><meta charset="utf-8"><style>
-body{margin:0;background:#fff;font:13px system-ui,sans-serif;color:#222;display:inline-block;padding:10px}
+body{margin:0;background:#fff;font:13px system-ui,sans-serif;color:#222;display:inline-block;padding:12px}
 main{display:grid;grid-template-columns:repeat(${columns},max-content);gap:6px 10px}
 svg{font:12px system-ui,sans-serif !important}
-b{display:inline-block;width:22px;height:0;vertical-align:middle;margin:0 5px 0 14px}
+svg [aria-label='y-axis label']{font-weight:600}
+footer{margin:10px 0 2px 34px}
+b{display:inline-block;width:22px;height:0;vertical-align:middle;margin:0 6px 0 18px}
+b:first-child{margin-left:0}
 </style><body><main>${pictures.join('')}</main>
-<div><b style="border-top:2px solid #1b5fa8"></b>fitted<b style="border-top:10px solid #a9c9ea"></b>95 % at one place
-<b style="border-top:10px solid #dce8f5"></b>95 % everywhere at once<b style="border-top:2px dashed #c2410c"></b>true</div>`;
+<footer><b style="border-top:2px solid #1b5fa8"></b>fitted<b style="border-top:10px solid #a9c9ea"></b>95 % at one place
+<b style="border-top:10px solid #dce8f5"></b>95 % everywhere at once<b style="border-top:2px dashed #c2410c"></b>true</footer>`;
 }
 
 const browser = await chromium.launch({ executablePath: process.env.CHROMIUM ?? '/usr/bin/chromium' });
