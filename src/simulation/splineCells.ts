@@ -34,6 +34,25 @@ export function compileSplineCells(
   spec: SplineSpec,
   weights: readonly (readonly number[])[],
 ): SumEvaluator | null {
+  const tabulated = tabulateSplineCells(basis, spec, weights);
+  if (tabulated === null) return null;
+  const { cells, widths, table } = tabulated;
+  return createEvaluator(basis.dimensions, weights.length, spec, cells, widths, table);
+}
+
+/** Polynomials per cell: shape (cells of the first axis, …, sums, 4 powers per axis), with the layout of the cells. */
+export interface SplineTable {
+  readonly cells: readonly number[];
+  readonly widths: readonly number[];
+  readonly table: Float64Array;
+}
+
+/** The table behind `compileSplineCells`; null where it would be too large. */
+export function tabulateSplineCells(
+  basis: Basis,
+  spec: SplineSpec,
+  weights: readonly (readonly number[])[],
+): SplineTable | null {
   const d = basis.dimensions;
   const degree = spec.degree ?? SPLINE_DEGREE;
   const cells = spec.counts.map((count, axis) => (spec.periods[axis] > 0 ? count : count - degree));
@@ -70,7 +89,7 @@ export function compileSplineCells(
     }
     table.set(samples, cell * sums * perSum);
   }
-  return createEvaluator(d, sums, spec, cells, widths, table);
+  return { cells, widths, table };
 }
 
 /** Turns values at the nodes into polynomial coefficients, axis by axis, in place. */

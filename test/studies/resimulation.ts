@@ -202,6 +202,7 @@ for (const { name, isRight, process: motion, study, spoil } of CASES) {
     for (const { name: statistic, adjusted } of result.statistics) {
       if (adjusted <= result.level) reasons.set(statistic, (reasons.get(statistic) ?? 0) + 1);
     }
+    if (seed % 10 === 0) console.error(`${name}: ${rejected} of ${seed}`);
   }
   const share = rejected / studies;
   const error = Math.sqrt((share * (1 - share)) / studies);
