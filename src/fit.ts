@@ -2,6 +2,7 @@
  * The main road: from tracks and a study to a fit with its uncertainty.
  */
 
+import { refineFit } from './checks/refineFit.js';
 import type { FitDocument, FitResult } from './documents/FitDocument.js';
 import type { Study } from './documents/Study.js';
 import type { Warning } from './errors.js';
@@ -9,6 +10,7 @@ import { chooseEstimator } from './estimation/choose.js';
 import type { Estimate } from './estimation/Estimate.js';
 import { planEstimation } from './estimation/planEstimation.js';
 import { surveyTracks } from './momenta/surveyTracks.js';
+import type { MapTasks } from './numerics/MapTasks.js';
 import { checkTrackLengths } from './tracks/usableTracks.js';
 import { countPositions, countTracks, type TrackSet } from './tracks/TrackSet.js';
 import { sampleTracks } from './tracks/sampleTracks.js';
@@ -21,6 +23,8 @@ export type { FitResult };
 
 /** What the caller supplies besides tracks and study; all of it optional. */
 export interface FitContext {
+  /** Runs independent pieces of work, such as the simulations behind `refine`; default: one after another. */
+  readonly mapTasks?: MapTasks;
   readonly onProgress?: (done: number, total: number, stage: string) => void;
 }
 
@@ -81,7 +85,7 @@ export async function fitTracks(
     ...estimate.warnings,
     ...warnOfSigns(spreads, centres, usable.coordinates),
   ];
-  return {
+  const fit: FitResult = {
     study: { ...study, order },
     data: {
       tracks: countTracks(usable),
@@ -110,6 +114,12 @@ export async function fitTracks(
     diagnostics: JSON.parse(JSON.stringify(estimate.diagnostics)) as FitDocument['diagnostics'],
     warnings,
   };
+  if (!study.refine) return fit;
+  return refineFit(fit, usable, {
+    seed: study.seed,
+    mapTasks: context.mapTasks,
+    onProgress: (done, total) => progress(done, total, 'refining'),
+  });
 }
 
 function intervalOfError(

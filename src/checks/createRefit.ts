@@ -1,6 +1,6 @@
 /** The estimator of a fit, to be used again on simulated recordings of the same design. */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitOfAnyOrigin } from '../documents/FitDocument.js';
 import { DataError, NumericalError } from '../errors.js';
 import { chooseEstimator } from '../estimation/choose.js';
 import { planEstimation } from '../estimation/planEstimation.js';
@@ -14,7 +14,7 @@ import { checkTrackLengths } from '../tracks/usableTracks.js';
  *
  * @returns null instead of a vector where the estimator finds no answer in the tracks it is given
  */
-export function createRefit(fit: FitDocument): (tracks: TrackSet) => Promise<Float64Array | null> {
+export function createRefit(fit: FitOfAnyOrigin): (tracks: TrackSet) => Promise<Float64Array | null> {
   const { order } = fit.model;
   const { relaxationTime } = fit.survey;
   const memory = typeof relaxationTime === 'number' ? relaxationTime : null;

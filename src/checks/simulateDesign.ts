@@ -3,7 +3,7 @@
  * exposure.
  */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitOfAnyOrigin } from '../documents/FitDocument.js';
 import type { Scenario } from '../documents/Scenario.js';
 import { randomStream } from '../numerics/random/RandomStream.js';
 import { buildScenario } from '../simulation/buildScenario.js';
@@ -22,7 +22,7 @@ export interface Design {
 }
 
 /** The design of a recording under a fitted model. */
-export function createDesign(fit: FitDocument, tracks: TrackSet): Design {
+export function createDesign(fit: FitOfAnyOrigin, tracks: TrackSet): Design {
   const scenario = { ...buildScenario(fit), ensemble: null }; // replicates are handed their draws one by one
   return {
     scenario,

@@ -65,6 +65,7 @@ export const COMMANDS: readonly CommandSpec[] = [
       'confidence',
       'localizationError',
       'exposure',
+      'refine',
       'seed',
       'workers',
       ...TABLE_OPTIONS,

@@ -51,9 +51,10 @@ export const OPTIONS = {
   },
   estimator: {
     flags: '--estimator <NAME>',
-    meaning: 'how the coefficients are estimated: differences, kernel or likelihood',
-    default: 'differences',
-    parse: choiceValue(['differences', 'kernel', 'likelihood']),
+    meaning:
+      'how the coefficients are estimated: likelihood (closest to what the data can tell), differences (fast) or kernel (no basis presumed)',
+    default: 'likelihood',
+    parse: choiceValue(['likelihood', 'differences', 'kernel']),
     study: 'estimator',
   },
   force: {
@@ -143,6 +144,13 @@ export const OPTIONS = {
     extremes: '0 is a snapshot, 1 a shutter that never closes',
     parse: numberValue({ from: 0, to: 1 }),
     study: 'exposure',
+  },
+  refine: {
+    flags: '--refine',
+    meaning:
+      'remove the bias that finite sampling leaves: simulate the fit at the recorded design, fit again, correct (takes some dozen times as long)',
+    default: 'off',
+    study: 'refine',
   },
   seed: {
     flags: '--seed <N>',

@@ -17,7 +17,7 @@ const form = z.enum(['scalar', 'axes', 'matrix']);
 export const studySchema = z
   .strictObject({
     order: z.enum(['auto', 'first', 'second']).default('auto').describe('order of the model'),
-    estimator: z.enum(['differences', 'kernel', 'likelihood']).default('differences').describe('estimator'),
+    estimator: z.enum(['likelihood', 'differences', 'kernel']).default('likelihood').describe('estimator'),
     force: shape.default('spline'),
     friction: shape.default('spline'),
     noise: shape.default('spline'),
@@ -41,6 +41,10 @@ export const studySchema = z
       .max(1)
       .default(0)
       .describe('fraction of the sampling interval over which a position is averaged (motion blur)'),
+    refine: z
+      .boolean()
+      .default(false)
+      .describe('remove what finite sampling leaves by simulating and fitting again (indirect inference)'),
     seed: z.int().min(0).default(1).describe('seed of every random draw'),
     // how the table is read
     columns: z

@@ -58,7 +58,7 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
   await keep('survey.json', formatJson(survey));
   await say(`${formatSurveySummary({ ...survey, units: study.units }, terminal.summaryStyle)}\n`);
 
-  const fit = await fitFiles(paths, study, terminal);
+  const fit = await fitFiles(paths, study, terminal, options.workers);
   await keep('fit.json', formatJson(fit));
   await say(`${formatFitSummary(fit, terminal.summaryStyle)}\n`);
 

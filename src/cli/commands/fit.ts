@@ -7,6 +7,7 @@ import { NumericalError } from '../../errors.js';
 import { chooseEstimator } from '../../estimation/choose.js';
 import { parseShape } from '../../fields/shapes.js';
 import { fitTracks } from '../../fit.js';
+import type { MapTasks } from '../../numerics/MapTasks.js';
 import { formatFitSummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';
 import { OPTIONS } from '../options.js';
@@ -15,6 +16,7 @@ import { checkResultPlace, deliver, formatJson } from '../results.js';
 import { resolveStudy } from '../study.js';
 import type { Terminal } from '../Terminal.js';
 import { readVersion } from '../version.js';
+import { withWorkers } from '../workers.js';
 
 /** @throws UsageError, DataError, NumericalError */
 export async function runFit({ operands, options, terminal }: Call): Promise<void> {
@@ -23,7 +25,7 @@ export async function runFit({ operands, options, terminal }: Call): Promise<voi
   const inputs = typeof options.study === 'string' ? [...operands, options.study] : operands;
   checkResultPlace(options.output, inputs, terminal);
 
-  const fit = await fitFiles(operands, study, terminal);
+  const fit = await fitFiles(operands, study, terminal, options.workers);
   for (const warning of fit.warnings) terminal.warn(warning);
   warnOfUnusedOptions(options, fit, terminal);
   if (typeof options.output === 'string') await deliver(formatJson(fit), options.output, terminal);
@@ -39,14 +41,16 @@ export async function fitFiles(
   paths: readonly string[],
   study: Study,
   terminal: Terminal,
+  workers: unknown,
 ): Promise<FitDocument> {
   const started = performance.now();
   const recording = await readRecording(paths, study, terminal);
   const read = performance.now();
   const progress = await terminal.startProgress('fitting');
-  const result = await fitTracks(recording.tracks, study, { onProgress: progress.update }).finally(
-    progress.stop,
-  );
+  const fitWith = (mapTasks?: MapTasks) =>
+    fitTracks(recording.tracks, study, { onProgress: progress.update, mapTasks });
+  const fitting = study.refine ? withWorkers(workers, fitWith) : fitWith();
+  const result = await fitting.finally(progress.stop);
   const fitted = performance.now();
   const { study: resolved, warnings, ...rest } = result;
   const fit: FitDocument = {
