@@ -37,7 +37,7 @@ export function sayAssumption(check: ReportedChallenge): string {
 
 /** `p = 0.21` or `p < 0.001`. */
 export function sayP(p: number | null): string {
-  if (p === null) return 'p unknown';
+  if (p === null) return 'p\u00a0unknown';
   const text = formatP(p);
   return (text.startsWith('<') ? `p ${text}` : `p = ${text}`).replaceAll(' ', '\u00a0');
 }
