@@ -120,7 +120,7 @@ describe('what is said', () => {
     expect(friction).toMatch(/friction +s⁻¹ +0\.627 \(0\.583 to 0\.675\) +0\.40 … 1\.01/);
     // friction bumps at x = 0.35 and does not vary along y
     expect(friction).toMatch(/▁+[▂-█]+▁+ +▄{12}$/);
-    expect(text).toContain('Visited: 536 of 576 cells');
+    expect(text.replace(/\s+/g, ' ')).toContain('Visited: 536 of 576 cells');
     expect(formatFitSummary(beadFit())).toContain('drift in the Itô reading');
   });
 
