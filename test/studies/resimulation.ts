@@ -1,14 +1,13 @@
 /**
  * How often `resimulate` calls right models inconsistent, and how often wrong ones, over simulated studies that are
- * fitted as a user would fit them.
- * Run with `npm run study:resimulation [studies] [case]`.
+ * fitted as a user would fit them; and how well coefficients survive fit → scenario → simulate → fit.
+ * Run with `npm run study:resimulation [studies] [part of a case's name, or round]`.
  */
 
 import { resimulate } from '../../src/checks/resimulate.js';
-import { fitSchema, type FitDocument } from '../../src/documents/FitDocument.js';
-import { studySchema, type StudyInput } from '../../src/documents/Study.js';
-import { fitTracks } from '../../src/fit.js';
-import type { TrackSet } from '../../src/tracks/TrackSet.js';
+import type { FitDocument } from '../../src/documents/FitDocument.js';
+import type { StudyInput } from '../../src/documents/Study.js';
+import { bump, fitDocument, measureRoundTrip } from '../support/roundTrip.js';
 import { simulateVaried, type VariedProcess } from '../support/variedProcess.js';
 import { percent, printTable } from './table.js';
 
@@ -26,8 +25,6 @@ interface Case {
   /** Turns the fitted model into a wrong one. */
   readonly spoil?: (fit: FitDocument) => FitDocument;
 }
-
-const bump = (place: Float64Array): number => 0.6 + 1.6 * Math.exp(-(place[0] ** 2 + place[1] ** 2) / 0.8);
 
 const TRAP: Process = {
   dimensions: 2,
@@ -176,19 +173,6 @@ function findCrossTerms(x: readonly number[], y: readonly number[]): [number, nu
   return [slopes.find((index) => index !== a) ?? 2, slopes.find((index) => index !== b) ?? 1];
 }
 
-async function fit(tracks: TrackSet, input: StudyInput): Promise<FitDocument> {
-  const result = await fitTracks(tracks, studySchema.parse(input));
-  return fitSchema.parse({
-    format: 'wanderlaw-fit',
-    version: 1,
-    program: 'study',
-    created: '',
-    timing: {},
-    sources: [],
-    ...result,
-  });
-}
-
 const rows: string[][] = [];
 for (const { name, isRight, process: motion, study, spoil } of CASES) {
   if (only !== '' && !name.includes(only)) continue;
@@ -196,7 +180,7 @@ for (const { name, isRight, process: motion, study, spoil } of CASES) {
   const reasons = new Map<string, number>();
   for (let seed = 1; seed <= studies; seed++) {
     const tracks = simulateVaried({ ...motion, seed });
-    const fitted = await fit(tracks, study);
+    const fitted = await fitDocument(tracks, study);
     const result = await resimulate(spoil ? spoil(fitted) : fitted, tracks, { seed, replicates: REPLICATES });
     if (!result.consistent) rejected++;
     for (const { name: statistic, adjusted } of result.statistics) {
@@ -218,8 +202,31 @@ for (const { name, isRight, process: motion, study, spoil } of CASES) {
   ]);
   console.error(rows[rows.length - 1].join(' | '));
 }
-printTable(
-  `Called inconsistent, ${studies} studies each`,
-  ['case', 'model', 'called inconsistent', 'seen by'],
-  rows,
-);
+if (rows.length > 0) {
+  printTable(
+    `Called inconsistent, ${studies} studies each`,
+    ['case', 'model', 'called inconsistent', 'seen by'],
+    rows,
+  );
+}
+
+if (only === '' || only === 'round') {
+  const table: string[][] = [];
+  for (const dimensions of [1, 2] as const) {
+    const { friction, noise, frictionByVisits, noiseByVisits, positions } =
+      await measureRoundTrip(dimensions);
+    table.push([
+      String(dimensions),
+      String(positions),
+      percent(friction),
+      percent(noise),
+      percent(frictionByVisits),
+      percent(noiseByVisits),
+    ]);
+  }
+  printTable(
+    'Fit → scenario → simulate → fit: root mean square of second ÷ first fit − 1 over the visited region',
+    ['dimensions', 'positions', 'friction', 'noise', 'friction, by visits', 'noise, by visits'],
+    table,
+  );
+}
