@@ -4,7 +4,7 @@ import type { PathObserver } from './PathPass.js';
 import type { PassState } from './secondOrderState.js';
 import { spreadScore } from './spreadScore.js';
 import { UPDATE_SIZE } from './tape.js';
-import { transitionInto, transitionSlopesInto } from './transition.js';
+import { TRANSITION_SIZE, transitionSlopesInto } from './transition.js';
 
 /** The adjoint of the filter, from the last position of a track back to the first. */
 export function smoothTrack(
@@ -14,7 +14,7 @@ export function smoothTrack(
   scores: Float64Array | null,
   observer: PathObserver | undefined,
 ): void {
-  const { tracks, layout, setting, tape, adjoint, transition, slopes, errorVariance } = state;
+  const { tracks, layout, setting, tape, adjoint, slopes, errorVariance } = state;
   const d = layout.dimensions;
   adjoint.fill(0);
   for (let row = end - 1; row > start; row--) {
@@ -54,7 +54,7 @@ export function smoothTrack(
     }
     const first = tape.firstNode[row - start];
     for (let node = tape.firstNode[row - start + 1] - 1; node >= first; node--) {
-      stepBack(state, node, scores, block, transition, slopes);
+      stepBack(state, node, scores, block, slopes);
     }
   }
   if (scores && layout.errorOffset >= 0) {
@@ -83,9 +83,9 @@ function stepBack(
   node: number,
   scores: Float64Array | null,
   block: number,
-  transition: Float64Array,
   slopes: Float64Array,
 ): void {
+  const { transition } = tape;
   const d = layout.dimensions;
   const h = tape.step[node];
   for (let axis = 0; axis < d; axis++) {
@@ -94,11 +94,11 @@ function stepBack(
     const friction = tape.friction[at];
     const noise = tape.noise[at];
     const force = tape.force[at];
-    transitionInto(friction, tape.slope[at], h, transition);
-    const aqq = transition[0];
-    const aqv = transition[1];
-    const avq = transition[2];
-    const avv = transition[3];
+    const slot = at * TRANSITION_SIZE;
+    const aqq = transition[slot];
+    const aqv = transition[slot + 1];
+    const avq = transition[slot + 2];
+    const avv = transition[slot + 3];
     const gq = adjoint[base];
     const gv = adjoint[base + 1];
     const bqq = adjoint[base + 2];
@@ -111,14 +111,15 @@ function stepBack(
       const pvv = tape.state[at * 5 + 4];
       const crossQ = aqq * pqv + aqv * pvv; // (A P)_qv and (A P)_vv
       const crossV = avq * pqv + avv * pvv;
-      tape.forceScore[axis] = gq * transition[4] + gv * transition[5];
+      tape.forceScore[axis] = gq * transition[slot + 4] + gv * transition[slot + 5];
       tape.frictionScore[axis] =
         friction *
         ((gq * v + 2 * (bqq * crossQ + bqv * crossV)) * slopes[0] +
           (gv * v + 2 * (bqv * crossQ + bvv * crossV)) * slopes[1] +
           force * (gq * slopes[2] + gv * slopes[0]) +
           noise * (bqq * slopes[3] + 2 * bqv * slopes[4] + bvv * slopes[5]));
-      tape.noiseScore[axis] = noise * (bqq * transition[6] + 2 * bqv * transition[7] + bvv * transition[8]);
+      tape.noiseScore[axis] =
+        noise * (bqq * transition[slot + 6] + 2 * bqv * transition[slot + 7] + bvv * transition[slot + 8]);
     }
     adjoint[base] = aqq * gq + avq * gv;
     adjoint[base + 1] = aqv * gq + avv * gv;

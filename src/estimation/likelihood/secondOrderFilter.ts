@@ -4,7 +4,7 @@ import type { PathObserver } from './PathPass.js';
 import { readCoefficients } from './readCoefficients.js';
 import type { PassState } from './secondOrderState.js';
 import { growTape, type Tape, UPDATE_SIZE } from './tape.js';
-import { transitionInto } from './transition.js';
+import { TRANSITION_SIZE, transitionInto } from './transition.js';
 
 const LONGEST_X = 0.5; // Γh of one substep: coefficients are frozen and force slopes summed as series over it
 const LONGEST_PHASE = 0.5; // √|K| h of one substep
@@ -23,7 +23,7 @@ export function filterTrack(
   end: number,
   observer: PathObserver | undefined,
 ): number {
-  const { tracks, layout, tape, diffuse, cellWidths, transition, place, filtered, errorVariance } = state;
+  const { tracks, layout, tape, diffuse, cellWidths, place, filtered, errorVariance } = state;
   const { positions, times, localizationErrors } = tracks;
   const pointErrors = layout.errorOffset < 0 && state.setting.knownError === null ? localizationErrors : null;
   const d = layout.dimensions;
@@ -75,22 +75,26 @@ export function filterTrack(
         // Not yet with the diffuse velocity of a start, which would swamp them.
         if (row > start + 1 && tape.frictionSlope[at] !== 0) addFrictionSlope(tape, at, h, filtered, base);
         const force = tape.force[at];
-        transitionInto(tape.friction[at], tape.slope[at], h, transition);
-        const aqq = transition[0];
-        const aqv = transition[1];
-        const avq = transition[2];
-        const avv = transition[3];
+        const { transition } = tape;
+        const slot = at * TRANSITION_SIZE;
+        transitionInto(tape.friction[at], tape.slope[at], h, transition, slot);
+        const aqq = transition[slot];
+        const aqv = transition[slot + 1];
+        const avq = transition[slot + 2];
+        const avv = transition[slot + 3];
         const u = filtered[base] - place[axis];
         const v = filtered[base + 1];
         const pqq = filtered[base + 2];
         const pqv = filtered[base + 3];
         const pvv = filtered[base + 4];
-        filtered[base] = place[axis] + aqq * u + aqv * v + force * transition[4];
-        filtered[base + 1] = avq * u + avv * v + force * transition[5];
-        filtered[base + 2] = aqq * aqq * pqq + 2 * aqq * aqv * pqv + aqv * aqv * pvv + noise * transition[6];
+        filtered[base] = place[axis] + aqq * u + aqv * v + force * transition[slot + 4];
+        filtered[base + 1] = avq * u + avv * v + force * transition[slot + 5];
+        filtered[base + 2] =
+          aqq * aqq * pqq + 2 * aqq * aqv * pqv + aqv * aqv * pvv + noise * transition[slot + 6];
         filtered[base + 3] =
-          aqq * avq * pqq + (aqq * avv + aqv * avq) * pqv + aqv * avv * pvv + noise * transition[7];
-        filtered[base + 4] = avq * avq * pqq + 2 * avq * avv * pqv + avv * avv * pvv + noise * transition[8];
+          aqq * avq * pqq + (aqq * avv + aqv * avq) * pqv + aqv * avv * pvv + noise * transition[slot + 7];
+        filtered[base + 4] =
+          avq * avq * pqq + 2 * avq * avv * pqv + avv * avv * pvv + noise * transition[slot + 8];
       }
     }
     steepness = measureSteepness(tape, node - 1, d);

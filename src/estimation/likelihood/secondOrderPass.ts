@@ -22,7 +22,7 @@ import { readErrorVariances } from './errorVariances.js';
 import { smoothTrack } from './secondOrderAdjoint.js';
 import { filterTrack } from './secondOrderFilter.js';
 import type { PassState } from './secondOrderState.js';
-import { SLOPE_SIZE, TRANSITION_SIZE } from './transition.js';
+import { SLOPE_SIZE } from './transition.js';
 import { createReader } from './readCoefficients.js';
 import { measureCells } from './measureCells.js';
 
@@ -41,7 +41,6 @@ export function createSecondOrderPass(
     setting,
     diffuse: measureDiffuse(tracks),
     cellWidths: measureCells(layout),
-    transition: new Float64Array(TRANSITION_SIZE),
     slopes: new Float64Array(SLOPE_SIZE),
     filtered: new Float64Array(5 * d),
     adjoint: new Float64Array(5 * d),

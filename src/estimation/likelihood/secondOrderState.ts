@@ -11,7 +11,6 @@ export interface PassState extends CoefficientReader {
   readonly diffuse: Float64Array;
   /** Length d: finest cell of any basis along the axis. */
   readonly cellWidths: Float64Array;
-  readonly transition: Float64Array;
   readonly slopes: Float64Array;
   /** Per axis: mean of q and v, variance of q, covariance, variance of v. */
   readonly filtered: Float64Array;

@@ -4,6 +4,7 @@
  */
 
 import type { LikelihoodLayout } from './layout.js';
+import { TRANSITION_SIZE } from './transition.js';
 
 /** Numbers per row and axis in `update`. */
 export const UPDATE_SIZE = 6;
@@ -29,6 +30,8 @@ export interface Tape {
   /** Per distinct basis and node: the functions that are not zero there. */
   readonly indices: Int32Array[];
   readonly values: Float64Array[];
+  /** Per node and axis: the transition of the step, see `transitionInto`; second order only. */
+  transition: Float64Array;
   /** Per row and axis: innovation, its variance, gains of q and v, predicted velocity and its variance. */
   update: Float64Array;
   /** Per row: first node of the step that leads to it; one more entry closes the last. */
@@ -60,6 +63,7 @@ export function createTape(layout: LikelihoodLayout): Tape {
     noise: empty,
     indices: supports.map(() => new Int32Array(0)),
     values: supports.map(() => empty),
+    transition: empty,
     update: empty,
     firstNode: new Int32Array(0),
     startErrorVariance: new Float64Array(d),
@@ -79,6 +83,7 @@ export function growTape(tape: Tape, node: number, row: number): void {
     tape.nodes = nodes;
     tape.step = extend(tape.step, nodes);
     tape.state = extend(tape.state, nodes * d * 5);
+    tape.transition = extend(tape.transition, nodes * d * TRANSITION_SIZE);
     for (const name of ['centre', 'force', 'slope', 'friction', 'frictionSlope', 'noise'] as const)
       tape[name] = extend(tape[name], nodes * d);
     tape.supports.forEach((support, b) => {

@@ -27,30 +27,31 @@ const NEGLIGIBLE = 1e-7; // Kh² that changes nothing that could be measured
  * @param friction  Γ, 1/time, ≥ 0
  * @param slope  K = −∂F/∂q, 1/time²; left out where Γh is beyond what the series reaches
  * @param h  time, > 0
+ * @param at  where in `out` the slots start
  */
-export function transitionInto(friction: number, slope: number, h: number, out: Float64Array): void {
+export function transitionInto(friction: number, slope: number, h: number, out: Float64Array, at = 0): void {
   const x = friction * h;
   const k = slope * h * h;
-  if ((k > NEGLIGIBLE || k < -NEGLIGIBLE || x < SMALL) && x <= SERIES_LIMIT) seriesInto(x, k, h, out);
-  else freeInto(x, h, out);
+  if ((k > NEGLIGIBLE || k < -NEGLIGIBLE || x < SMALL) && x <= SERIES_LIMIT) seriesInto(x, k, h, out, at);
+  else freeInto(x, h, out, at);
 }
 
-function freeInto(x: number, h: number, out: Float64Array): void {
+function freeInto(x: number, h: number, out: Float64Array, at: number): void {
   const e = Math.exp(-x);
   const p1 = (1 - e) / x;
-  out[0] = 1;
-  out[1] = h * p1;
-  out[2] = 0;
-  out[3] = e;
-  out[4] = (h * h * (1 - p1)) / x;
-  out[5] = h * p1;
-  out[6] = (h * h * h * (2 * x - 3 + e * (4 - e))) / (2 * x * x * x);
-  out[7] = (h * h * p1 * p1) / 2;
-  out[8] = (h * (1 - e * e)) / (2 * x);
+  out[at] = 1;
+  out[at + 1] = h * p1;
+  out[at + 2] = 0;
+  out[at + 3] = e;
+  out[at + 4] = (h * h * (1 - p1)) / x;
+  out[at + 5] = h * p1;
+  out[at + 6] = (h * h * h * (2 * x - 3 + e * (4 - e))) / (2 * x * x * x);
+  out[at + 7] = (h * h * p1 * p1) / 2;
+  out[at + 8] = (h * (1 - e * e)) / (2 * x);
 }
 
 /** Power series of u'' = −x u' − k u and of its second moments, with time in units of h. */
-function seriesInto(x: number, k: number, h: number, out: Float64Array): void {
+function seriesInto(x: number, k: number, h: number, out: Float64Array, at: number): void {
   const size = Math.max(2 * x, Math.sqrt(Math.abs(k)) * 1.5);
   const terms = size < 0.05 ? 6 : size < 0.3 ? 9 : 14;
   let r = 0; // displacement from a unit velocity
@@ -58,7 +59,12 @@ function seriesInto(x: number, k: number, h: number, out: Float64Array): void {
   let v = 0; // second moments from unit noise
   let c = 0;
   let w = 0;
-  let [sumR, sumS, sumC, sumV, sumW, sumI] = [0, 1, 0, 0, 0, 0];
+  let sumR = 0;
+  let sumS = 1;
+  let sumC = 0;
+  let sumV = 0;
+  let sumW = 0;
+  let sumI = 0;
   for (let j = 0; j < terms; j++) {
     const weight = 1 / (j + 1);
     const nextW = 2 * c * weight;
@@ -78,15 +84,15 @@ function seriesInto(x: number, k: number, h: number, out: Float64Array): void {
     sumC += c;
     sumW += w;
   }
-  out[0] = sumS + x * sumR;
-  out[1] = h * sumR;
-  out[2] = (-k * sumR) / h;
-  out[3] = sumS;
-  out[4] = h * h * sumI;
-  out[5] = h * sumR;
-  out[6] = h * h * h * sumW;
-  out[7] = h * h * sumC;
-  out[8] = h * sumV;
+  out[at] = sumS + x * sumR;
+  out[at + 1] = h * sumR;
+  out[at + 2] = (-k * sumR) / h;
+  out[at + 3] = sumS;
+  out[at + 4] = h * h * sumI;
+  out[at + 5] = h * sumR;
+  out[at + 6] = h * h * h * sumW;
+  out[at + 7] = h * h * sumC;
+  out[at + 8] = h * sumV;
 }
 
 /**
