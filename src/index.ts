@@ -55,6 +55,13 @@ export { evaluateFit, type EvaluatedColumn } from './uncertainty/evaluateFit.js'
 // simulation and checks
 export { mapTasksSerially, type MapTasks, type Task } from './numerics/MapTasks.js';
 export { RandomStream, randomStream } from './numerics/random/RandomStream.js';
+export { createRefit } from './checks/createRefit.js';
+export type { Region } from './checks/Region.js';
+export { resimulate, type ResimulationOptions } from './checks/resimulate.js';
+export type { ResimulationResult } from './checks/ResimulationResult.js';
+export type { Standing } from './documents/Scenario.js';
+export { assessStanding } from './simulation/assessStanding.js';
+export { buildFirstOrderScenario } from './simulation/buildFirstOrderScenario.js';
 export { buildScenario } from './simulation/buildScenario.js';
 export { createScenario, parseScenario } from './simulation/parseScenario.js';
 export {

@@ -40,6 +40,7 @@ beforeAll(() => {
   });
   place.write('tracks.csv', [...formatTrackTable(tracks)].join(''));
   place.write('points.csv', 'x\n-1\n0\n1\n');
+  place.write('ring.json', listBlocks('json')[0]);
 });
 
 describe('README', () => {
