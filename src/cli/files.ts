@@ -32,6 +32,7 @@ export function explainSystemError(error: unknown): string {
     ENOENT: 'there is no such file',
     ENOTDIR: 'part of the path is a file, not a directory',
     EISDIR: 'it is a directory',
+    EEXIST: 'there is a file of that name',
     EACCES: 'permission is denied',
     EPERM: 'permission is denied',
     EROFS: 'the file system is read-only',
@@ -80,11 +81,19 @@ export function readChunks(path: string): AsyncIterable<Uint8Array> {
  * Refuses an output that could not be written, or that is one of the inputs, before any long work starts.
  *
  * @param inputs  absolute paths of what the command reads
+ * @param option  the one that names the output
  * @throws UsageError
  */
-export function checkOutput(path: string, shown: string, inputs: readonly string[] = []): void {
+export function checkOutput(
+  path: string,
+  shown: string,
+  inputs: readonly string[] = [],
+  option = '-o',
+): void {
   const refuse = (reason: string): never => {
-    throw new UsageError(`${shown} cannot be written: ${reason}; give another place with -o`, { path });
+    throw new UsageError(`${shown} cannot be written: ${reason}; give another place with ${option}`, {
+      path,
+    });
   };
   const target = statOrNull(path);
   if (target?.isDirectory()) refuse('it is a directory');

@@ -4,12 +4,18 @@ import { checkOutput, writeWhole } from './files.js';
 import type { Terminal } from './Terminal.js';
 
 /** Refuses an output place that cannot be written, before the work starts; nothing to check without one. */
-export function checkResultPlace(output: unknown, inputs: readonly string[], terminal: Terminal): void {
+export function checkResultPlace(
+  output: unknown,
+  inputs: readonly string[],
+  terminal: Terminal,
+  option?: string,
+): void {
   if (typeof output !== 'string') return;
   checkOutput(
     terminal.resolve(output),
     output,
     inputs.filter((path) => path !== '-').map((path) => terminal.resolve(path)),
+    option,
   );
 }
 

@@ -179,7 +179,7 @@ function conflictError(rows: CollectedRows, first: number, second: number): Data
 function checkTimesDiffer(times: Float64Array, { countsFrames }: CollectedRows): void {
   for (let row = 1; row < times.length; row++) if (times[row] !== times[0]) return;
   throw new DataError(
-    `all ${times.length} positions are at the same ${countsFrames ? 'frame' : 'time'} ${times[0]}; ` +
+    `${times.length === 1 ? 'there is one position only, at' : `all ${times.length} positions are at the same`} ${countsFrames ? 'frame' : 'time'} ${times[0]}; ` +
       'tracks need positions at several times (is the right column used? see --columns)',
     { time: times[0] },
   );

@@ -166,13 +166,13 @@ function describeReading(
   if (duplicatesDropped > 0) {
     warn(
       'duplicates-dropped',
-      `${countRows(duplicatesDropped)} repeated another with equal content and were dropped`,
+      `${countRows(duplicatesDropped)} repeated another with equal content and ${duplicatesDropped === 1 ? 'was' : 'were'} dropped`,
     );
   }
   if (invalidSkipped > 0) {
     warn(
       'invalid-skipped',
-      `${countRows(invalidSkipped)} of ${rows} had missing or infinite numbers and were skipped`,
+      `${countRows(invalidSkipped)} of ${rows} had missing or infinite numbers and ${invalidSkipped === 1 ? 'was' : 'were'} skipped`,
     );
   }
   if (regularFraction < FEW_REGULAR) {

@@ -35,6 +35,7 @@ const CASES: readonly [title: string, table: string | Uint8Array, ...words: stri
   ['a ragged row', replaceRow(5, '1,0.4,3'), 'bad.csv line 6'],
   ['an unclosed quote', replaceRow(5, '"1,0.4,3,2'), 'bad.csv line 6', 'quote'],
   ['binary junk', Uint8Array.from({ length: 5000 }, (_, i) => (i * 7919 + (i >> 3)) % 256), 'bad.csv'],
+  ['one position only', 'time,x\n0,1\n', 'one position only'],
   ['one time only', 'track,time,x,y\n1,0,1,2\n2,0,3,4\n3,0,5,6\n', 'same time 0'],
 ];
 
@@ -108,6 +109,28 @@ describe('an output that cannot be written', () => {
       expect([status, stdout]).toEqual([2, '']);
     }
     expect(place.list()).toEqual(['bad.csv', 'dir']);
+  });
+});
+
+describe('a place for more files that cannot be used', () => {
+  it('is refused with 2 and the option that names it', async () => {
+    place.write('bad.csv', makeTable());
+    const momenta = await place.run(['survey', 'bad.csv', '--momenta', 'no/momenta.csv']);
+    expect([momenta.status, momenta.stdout]).toEqual([2, '']);
+    expect(momenta.stderr).toMatch(/^wanderlaw: no\/momenta\.csv [^\n]* with --momenta\n$/);
+    const demo = await place.run(['demo', 'settling-beads', '-o', 'bad.csv']);
+    expect([demo.status, demo.stdout]).toEqual([2, '']);
+    expect(demo.stderr).toMatch(
+      /^wanderlaw: bad\.csv cannot be made: there is a file of that name; [^\n]+\n$/,
+    );
+  });
+
+  it('folders beside the data sets are none', async () => {
+    const { status, stderr } = await place.run(['demo', 'pictures']);
+    expect(status).toBe(2);
+    expect(stderr).toMatch(
+      /"pictures" is not a shipped data set[^\n]*\(felt-table, settling-beads, stripe-cells\)\n$/,
+    );
   });
 });
 

@@ -198,7 +198,7 @@ const BAD_TABLES: Record<string, BadTable> = {
     says: /gzip data are damaged or cut short/,
   },
   'a single time': { content: `${HEADER}1,5,1,2\n2,5,3,4\n`, says: /all 2 positions are at the same time 5/ },
-  'a single row': { content: `${HEADER}1,5,1,2\n`, says: /at the same time 5/ },
+  'a single row': { content: `${HEADER}1,5,1,2\n`, says: /one position only, at time 5/ },
   'tracks of one position each': { content: `${HEADER}1,5,1,2\n2,6,3,4\n`, says: /none of the 2 tracks/ },
   'frozen tracks': {
     content: `${HEADER}1,0,1,2\n1,1,1,2\n2,0,3,4\n2,1,3,4\n`,

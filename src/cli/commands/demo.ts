@@ -1,6 +1,6 @@
 /** `demo [NAME]`: survey, fit, re-simulation, scenario and report of a shipped data set. */
 
-import { readdirSync } from 'node:fs';
+import { existsSync, readdirSync } from 'node:fs';
 import { readFile } from 'node:fs/promises';
 import { join, relative } from 'node:path';
 import { completeStudy } from '../../documents/parseStudy.js';
@@ -91,7 +91,7 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
 async function readDataPackage(name: string): Promise<DataPackage> {
   const root = join(PACKAGE_ROOT, 'datasets');
   const names = readdirSync(root, { withFileTypes: true })
-    .filter((entry) => entry.isDirectory())
+    .filter((entry) => entry.isDirectory() && existsSync(join(root, entry.name, 'datapackage.json')))
     .map((entry) => entry.name)
     .sort();
   if (!names.includes(name)) {

@@ -15,7 +15,7 @@ export async function runSurvey({ operands, options, terminal }: Call): Promise<
   const study = await resolveStudy(options, terminal);
   const momenta = options.momenta as string | undefined;
   checkResultPlace(options.output, operands, terminal);
-  checkResultPlace(momenta, operands, terminal);
+  checkResultPlace(momenta, operands, terminal, '--momenta');
   const recording = await readRecording(operands, study, terminal);
   const survey = surveyTracks(recording.tracks, { localizationError: study.localizationError });
   const warnings = [...recording.warnings, ...survey.warnings];
