@@ -50,8 +50,8 @@ nav li { margin: 0; }
 .bad .outcome { color: var(--bad); } .bad .outcome::before { content: "✗"; }
 .strong .outcome { color: var(--ink); } .strong .outcome::before { content: "✗"; }
 .figures { font-size: 14px; color: var(--soft); text-align: right; font-variant-numeric: tabular-nums; }
-.facts { display: grid; grid-template-columns: repeat(auto-fit, minmax(140px, 1fr)); gap: 1px; margin: 0; padding: 0; background: var(--rule); border: 1px solid var(--rule); border-radius: 6px; overflow: hidden; }
-.facts div { background: var(--card); padding: 12px 16px 13px; }
+.facts { display: grid; grid-template-columns: repeat(auto-fit, minmax(140px, 1fr)); gap: 0; margin: 0; padding: 0; background: var(--card); border: 1px solid var(--rule); border-radius: 6px; overflow: hidden; }
+.facts div { box-shadow: 0 0 0 0.5px var(--rule); padding: 12px 16px 13px; }
 .facts dt { font-size: 13px; color: var(--soft); }
 .facts dd { margin: 2px 0 0; font-size: 21px; font-weight: 600; line-height: 1.25; font-variant-numeric: tabular-nums; overflow-wrap: anywhere; }
 .settings { columns: 2 24em; column-gap: 40px; font-size: 14px; line-height: 1.45; margin: 8px 0 16px; }
@@ -124,12 +124,12 @@ const NARROW_AND_PAPER = `
 @media print {
   :root { --paper: #ffffff; --card: #ffffff; }
   body { font-size: 10.5pt; }
-  nav, output, .hint { display: none; }
+  nav, output, .hint, details:not([open]) { display: none; }
   main, header, footer { max-width: none; padding: 0; }
   h1 { font-size: 22pt; } h2 { margin-top: 22pt; font-size: 15pt; } h3 { margin-top: 16pt; }
   h2, h3, h4, figcaption { break-after: avoid; } .facts, .findings li, tr, .verdict { break-inside: avoid; }
   .pictures { grid-template-columns: repeat(3, minmax(0, 1fr)); gap: 0 14pt; } .pictures.two, .trio > .pictures { grid-template-columns: 1fr 1fr; }
-  .trio { grid-template-columns: minmax(0, 2fr) minmax(0, 1fr); } .duo { grid-template-columns: 1fr 1fr; gap: 0 14pt; } .stack { grid-template-columns: 1fr; }
+  .trio { grid-template-columns: minmax(0, 2fr) minmax(0, 1fr); } .trio.beside { grid-template-columns: minmax(0, 1fr) minmax(0, 2fr); } .duo { grid-template-columns: 1fr 1fr; gap: 0 14pt; } .stack { grid-template-columns: 1fr; }
   .scroll { overflow: visible; } table { font-size: 8pt; } th, td { padding-right: 7pt; }
   figcaption p, .key { font-size: 8.5pt; } h4 { font-size: 9.5pt; }
   * { print-color-adjust: exact; -webkit-print-color-adjust: exact; }

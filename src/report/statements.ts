@@ -19,6 +19,8 @@ const ASSUMPTIONS: Readonly<Record<string, string>> = {
   'speed-dependent-friction': 'Friction does not depend on speed',
   'gaussian-noise': 'The noise is Gaussian',
   stationarity: 'Nothing changed in the course of the recording',
+  'independent-tracks': 'Tracks move independently of one another',
+  'mislinked-jumps': 'No step is a wrong link between tracks',
 };
 
 /** A name of ours in words; any other name as it is. */
