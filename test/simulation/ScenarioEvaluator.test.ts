@@ -188,6 +188,46 @@ describe('outside the visited box', () => {
   });
 });
 
+describe('fading to given constants', () => {
+  const spline: BasisSpec = { kind: 'spline', counts: [5], low: [-1], high: [1], periods: [0] };
+  const scenario = (link: FieldLink, towards: number[]): Scenario =>
+    createScenario({
+      format: 'wanderlaw-scenario',
+      version: 1,
+      dimensions: 1,
+      order: 'first',
+      axes: [{ kind: 'open' }],
+      coefficients: {
+        drift: { form: 'vector', values: [0.5] },
+        diffusion: {
+          ...randomField('diffusion', link === 'log-matrix' ? 'matrix' : 'scalar', link, spline, 1, 1),
+          basis: { kind: 'spline', counts: [5], low: [-1], high: [1], periods: [0] },
+          coefficients: [[1, 1.2, 0.9, 1.1, 1]],
+        },
+      },
+      visited: { low: [-1], high: [1] },
+      continuation: { kind: 'fade', width: 0.5, stiffness: 2, towards: { diffusion: towards } },
+      start: { kind: 'points', points: [[0]] },
+      observation: { tracks: 1, frames: 1, interval: 1, localizationError: [0] },
+    });
+
+  it.each(['identity', 'log', 'log-matrix'] as const)('reaches them whatever the link (%s)', (link) => {
+    const evaluator = createBasisEvaluator(scenario(link, [0.25]));
+    const read = (x: number): number[] => {
+      const [drift, diffusion] = [new Float64Array(1), new Float64Array(1)];
+      evaluator.evaluateInto(Float64Array.of(x), drift, new Float64Array(1), diffusion);
+      return [drift[0], diffusion[0]];
+    };
+    expect(read(4)[1]).toBeCloseTo(0.25, 12);
+    expect(read(4)[0]).toBeCloseTo(0.5 - 2 * 3, 12); // the drift fades to its own mean, and the stiffness adds
+    expect(read(1 + 1e-7)[1]).toBeCloseTo(read(1)[1], 5);
+  });
+
+  it('refuses a constant that a logarithm cannot reach', () => {
+    expect(() => scenario('log', [0])).toThrow('continuation.towards.diffusion');
+  });
+});
+
 it('replaces negative friction and noise by zero and counts the places', async () => {
   const evaluator = await createScenarioEvaluator(
     createScenario({

@@ -148,6 +148,27 @@ describe('the domain', () => {
   });
 });
 
+it('a warm-up gives a stationary start, and starts beyond walls are folded back', async () => {
+  const trap = createScenario({
+    ...FREE,
+    coefficients: { ...FREE.coefficients, force: { form: 'vector', formulas: ['-x'] } },
+    start: { kind: 'points', points: [[5]], warmUp: 15 },
+    observation: { ...FREE.observation, frames: 1 },
+  });
+  // ⟨x²⟩ = T/k = 2; what is left of the start is 5 e^{−Γt/2} = 5 e^{−11}
+  const { tracks } = await simulateScenario(trap, { seed: 3 });
+  expect(Math.abs(meanSquare(tracks, 0) / 2 - 1)).toBeLessThan(4 * Math.sqrt(2 / 4000) + 1e-3);
+  const walled = createScenario({
+    ...FREE,
+    axes: [{ kind: 'walls', low: -1, high: 1 }],
+    start: { kind: 'normal', mean: [0], spread: [2] },
+    observation: { ...FREE.observation, frames: 1 },
+  });
+  for (const x of (await simulateScenario(walled, { seed: 3 })).tracks.positions) {
+    expect(Math.abs(x)).toBeLessThanOrEqual(1);
+  }
+});
+
 it('reports progress and ends in words where particles run off', async () => {
   const calls: number[] = [];
   await simulateScenario(createScenario(FREE), { seed: 1, onProgress: (done) => calls.push(done) });

@@ -51,7 +51,7 @@ const TRAPS: readonly {
     name: 'quartic trap, second order',
     dimensions: 1,
     average: '⟨x²⟩',
-    coarsest: 0.2,
+    coarsest: 0.3,
     f: ([x]) => x * x,
     input: {
       order: 'second',
