@@ -157,25 +157,27 @@ export function addFolds(folds: readonly MomentSums[]): MomentSums {
  * Takes what coefficients explain off moment vectors: out −= matrix · X.
  *
  * @param coefficients  X, shape (K, Z, T)
+ * @param from  regressors whose coefficients count; the others are taken as zero
+ * @param into  instruments whose moments are wanted; the others are left as they are
  * @param out  shape (K, Z, T)
  */
 export function subtractExplained(
   moments: BinnedMoments,
   matrix: Float64Array,
   coefficients: Float64Array,
+  from: readonly number[],
+  into: readonly number[],
   out: Float64Array,
 ): void {
   const { rows, columns, instruments, targets } = moments;
   const block = instruments * targets;
-  let at = 0;
-  for (let pair = 0; pair < rows.length; pair++) {
-    const row = rows[pair] * block;
-    const column = columns[pair] * block;
-    for (let b = 0; b < instruments; b++) {
-      for (let c = 0; c < instruments; c++) {
-        const weight = matrix[at++];
-        for (let t = 0; t < targets; t++)
-          out[row + b * targets + t] -= weight * coefficients[column + c * targets + t];
+  for (const b of into) {
+    for (const c of from) {
+      for (let pair = 0; pair < rows.length; pair++) {
+        const weight = matrix[(pair * instruments + b) * instruments + c];
+        const row = rows[pair] * block + b * targets;
+        const column = columns[pair] * block + c * targets;
+        for (let t = 0; t < targets; t++) out[row + t] -= weight * coefficients[column + t];
       }
     }
   }

@@ -26,7 +26,7 @@ const STEP = Math.SQRT2;
 const FINE_STEP = 2 ** 0.25;
 const LEAST = 0.75; // knot spacings: below, a window holds hardly more than one knot
 const MOST = 1; // widths of the box: wider windows make the same line
-const AXIS_STEPS = [0.25, 0.5, Math.SQRT1_2, 1, Math.SQRT2, 2, 4];
+const AXIS_STEPS = [0.5, Math.SQRT1_2, Math.SQRT2, 2, 4];
 
 /**
  * Chooses a field's bandwidth.
@@ -120,7 +120,7 @@ function crossValidation(
         const weights = smoothingWeights(sums[g], field.varies, grid, windows, bandwidth);
         applyWeights(group, weights, training, values);
       });
-      const left = explainAway(moments, [{ field }], [values], vector, matrix);
+      const left = explainAway(moments, [field], [values], vector, field, matrix);
       const rest = gatherMoments(field, left, instruments, targets);
       for (let i = 0; i < rest.length; i++) if (gram[i] > 0) score += rest[i] ** 2 / gram[i];
     }

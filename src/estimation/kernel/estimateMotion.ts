@@ -22,7 +22,7 @@ import {
   visitMotionRows,
 } from './motionMoments.js';
 import { type PlugInData, referenceBandwidth, startBandwidth } from './plugInStart.js';
-import { explainAway, solveFields } from './solveFields.js';
+import { explainAway, ROUGH_TOLERANCE, solveFields } from './solveFields.js';
 import { createWindows } from './windows.js';
 
 export interface MotionEstimate {
@@ -64,10 +64,10 @@ export function estimateMotion(tracks: TrackSet, plan: EstimationPlan, grid: Ker
     let solution = solveFields(moments, smoothers, moments.total.vector);
     for (let i = 0; i < fields.length && !chosen; i++) {
       if (!fields[i].varies) continue;
-      const others = smoothers.filter((_, other) => other !== i);
+      const others = fields.filter((_, other) => other !== i);
       const values = solution.values.filter((_, other) => other !== i);
       const residuals = moments.folds.map((fold) =>
-        explainAway(moments, others, values, fold.vector, fold.matrix),
+        explainAway(moments, others, values, fold.vector, fields[i], fold.matrix),
       );
       const chosenWidth = chooseBandwidth(moments, fields[i], residuals, grid, windows, bandwidths[i]);
       bandwidths = bandwidths.map((width, other) => (other === i ? chosenWidth : width));
@@ -90,12 +90,16 @@ export function estimateMotion(tracks: TrackSet, plan: EstimationPlan, grid: Ker
   let settled = true;
   if (second) {
     const given = plan.localizationError && Float64Array.from(plan.localizationError, (s) => s * s);
+    let rounds = 0;
     const found = settleErrorVariance(
       given,
       design.lag,
       d,
-      (variance, known) =>
-        solve(design.lag === 1 ? correctForError(plain, variance, samplingInterval) : plain, known),
+      (variance, known) => {
+        const moments = design.lag === 1 ? correctForError(plain, variance, samplingInterval) : plain;
+        const rough = design.lag === 1 && given === null && rounds++ === 0; // not worth a choice of bandwidths yet
+        return solve(moments, known || rough);
+      },
       (parameters) => collectErrorMoments(tracks, plan, layout, parameters),
     );
     regression = found.regression;
@@ -185,7 +189,7 @@ function blockInfluences(
   const p = regression.parameters.length;
   const influences = new Float64Array(residuals.length * p);
   residuals.forEach((vector, block) => {
-    const { values } = solveFields(regression.moments, regression.smoothers, vector);
+    const { values } = solveFields(regression.moments, regression.smoothers, vector, ROUGH_TOLERANCE);
     influences.set(packParameters(fields, values, regression.moments.size), block * p);
   });
   return influences;

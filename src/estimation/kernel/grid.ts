@@ -17,6 +17,10 @@ export interface KernelGrid {
   readonly size: number;
   /** Shape (K, d), length. */
   readonly knots: Float64Array;
+  /** Length d: knots along each axis. */
+  readonly counts: readonly number[];
+  /** Per axis, length K: number of each knot along that axis. */
+  readonly places: readonly Int32Array[];
   /** Length d: distance of neighbouring knots. */
   readonly spacing: readonly number[];
   /** Length d: width of the box, or the period. */
@@ -42,10 +46,13 @@ export function createKernelGrid(tracks: TrackSet, visited: VisitedRegion): Kern
   const widths = low.map((edge, axis) => high[axis] - edge);
   const spacing = widths.map((width) => width / cells);
   const knots = new Float64Array(size * d);
+  const places = counts.map(() => new Int32Array(size));
   for (let knot = 0; knot < size; knot++) {
     let rest = knot;
     for (let axis = d - 1; axis >= 0; axis--) {
-      knots[knot * d + axis] = low[axis] + (rest % counts[axis]) * spacing[axis];
+      const place = rest % counts[axis];
+      places[axis][knot] = place;
+      knots[knot * d + axis] = low[axis] + place * spacing[axis];
       rest = Math.floor(rest / counts[axis]);
     }
   }
@@ -55,6 +62,8 @@ export function createKernelGrid(tracks: TrackSet, visited: VisitedRegion): Kern
     dimensions: d,
     size,
     knots,
+    counts,
+    places,
     spacing,
     widths,
     periods: [...periods],
@@ -63,10 +72,14 @@ export function createKernelGrid(tracks: TrackSet, visited: VisitedRegion): Kern
 
 /** Coordinate of one knot minus that of another along an axis, by the shorter way round a period. */
 export function separateKnots(grid: KernelGrid, to: number, from: number, axis: number): number {
-  const { knots, dimensions: d, periods } = grid;
-  const difference = knots[to * d + axis] - knots[from * d + axis];
-  const period = periods[axis];
-  return period > 0 ? difference - period * Math.round(difference / period) : difference;
+  return grid.spacing[axis] * stepsBetween(grid, grid.places[axis][to], grid.places[axis][from], axis);
+}
+
+/** The same in units of the spacing, for numbers of knots along the axis. */
+export function stepsBetween(grid: KernelGrid, to: number, from: number, axis: number): number {
+  const steps = to - from;
+  const count = grid.counts[axis];
+  return grid.periods[axis] > 0 ? steps - count * Math.round(steps / count) : steps;
 }
 
 /** Whether a place lies in the box of the grid; every place along a periodic axis does. */

@@ -44,6 +44,11 @@ export function noiseField(name: 'noise' | 'diffusion', varies: boolean, compone
   return { name, varies, components: Array.from({ length: components }, (_, target) => [[target, 0]]) };
 }
 
+/** Instruments (or regressors) that a field stands at, each once. */
+export function instrumentsOf(field: LocalField): number[] {
+  return [...new Set(field.components.flatMap((terms) => terms.map(([, instrument]) => instrument)))];
+}
+
 /** The sets of components that are estimated together. */
 export function groupComponents(field: LocalField, instruments: number): ComponentGroup[] {
   const sets: number[][] = [];

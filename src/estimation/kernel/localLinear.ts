@@ -15,7 +15,7 @@
 import { invertMatrix } from '../../numerics/linear/smallMatrix.js';
 import { KERNEL_REACH } from '../../numerics/smoothing/localPolynomial.js';
 import type { BinnedMoments } from './BinnedMoments.js';
-import { type KernelGrid, separateKnots } from './grid.js';
+import { type KernelGrid, separateKnots, stepsBetween } from './grid.js';
 import type { ComponentGroup } from './localFields.js';
 
 /** Row sums of the moment matrix of a group of m components, and their first moments along each axis. */
@@ -86,18 +86,17 @@ export function localLinearWeights(
   const q = d + 1;
   const n = m * q;
   const weights = new Float64Array(m * size * m * size);
-  const kernels = new Float64Array(size);
-  const offsets = new Float64Array(size * q);
+  const window = new Window(grid, sums);
+  const { bins, kernels, offsets } = window;
   const matrix = new Float64Array(n * n);
   const column = new Float64Array(q);
   for (const knot of wanted) {
-    fillWindow(grid, knot, widths, kernels, offsets);
+    window.moveTo(knot, widths);
     matrix.fill(0);
-    for (let i = 0; i < size; i++) {
-      if (kernels[i] === 0) continue;
+    for (let i = 0; i < window.count; i++) {
       for (let a = 0; a < m; a++) {
         for (let b = 0; b < m; b++) {
-          const slot = (i * m + a) * m + b;
+          const slot = (bins[i] * m + a) * m + b;
           column[0] = zeroth[slot];
           for (let axis = 0; axis < d; axis++) {
             column[axis + 1] =
@@ -119,12 +118,11 @@ export function localLinearWeights(
     for (let a = 0; a < m; a++) {
       for (let b = 0; b < m; b++) {
         const base = ((a * size + knot) * m + b) * size;
-        for (let i = 0; i < size; i++) {
-          if (kernels[i] === 0) continue;
+        for (let i = 0; i < window.count; i++) {
           let sum = 0;
           for (let alpha = 0; alpha < q; alpha++)
             sum += inverse[a * q * n + b * q + alpha] * offsets[i * q + alpha];
-          weights[base + i] = kernels[i] * sum;
+          weights[base + bins[i]] = kernels[i] * sum;
         }
       }
     }
@@ -132,26 +130,61 @@ export function localLinearWeights(
   return weights;
 }
 
-/** Kernel values around a knot (zero out of reach) and (1, (g − x₀)/h …) per knot. */
-function fillWindow(
-  grid: KernelGrid,
-  knot: number,
-  widths: Float64Array,
-  kernels: Float64Array,
-  offsets: Float64Array,
-): void {
-  const { dimensions: d, size } = grid;
-  for (let i = 0; i < size; i++) {
-    let exponent = 0;
-    let within = true;
-    offsets[i * (d + 1)] = 1;
+/** The window around one knot: bins within reach, their kernel values and (1, (g − x₀)/h …). */
+class Window {
+  /** Bins in the window that hold data. */
+  count = 0;
+  readonly bins: Int32Array;
+  readonly kernels: Float64Array;
+  /** Shape (count, 1 + d). */
+  readonly offsets: Float64Array;
+  readonly #occupied: Int32Array;
+  readonly #axisKernels: Float64Array[];
+  readonly #axisOffsets: Float64Array[];
+
+  constructor(
+    private readonly grid: KernelGrid,
+    sums: RowSums,
+  ) {
+    const { size, dimensions, counts } = grid;
+    const own = sums.components ** 2;
+    this.#occupied = Int32Array.from(
+      Array.from({ length: size }, (_, bin) => bin).filter((bin) =>
+        sums.zeroth.subarray(bin * own, (bin + 1) * own).some((value) => value !== 0),
+      ),
+    );
+    this.bins = new Int32Array(size);
+    this.kernels = new Float64Array(size);
+    this.offsets = new Float64Array(size * (dimensions + 1));
+    this.#axisKernels = counts.map((count) => new Float64Array(count));
+    this.#axisOffsets = counts.map((count) => new Float64Array(count));
+  }
+
+  /** @param widths  shape (K, d): standard deviations of the kernel at each knot */
+  moveTo(knot: number, widths: Float64Array): void {
+    const { grid } = this;
+    const { dimensions: d, spacing, counts, places } = grid;
     for (let axis = 0; axis < d; axis++) {
-      const u = separateKnots(grid, i, knot, axis) / widths[knot * d + axis];
-      offsets[i * (d + 1) + axis + 1] = u;
-      exponent += (u * u) / 2;
-      within &&= Math.abs(u) <= KERNEL_REACH + RIDGE;
+      const scale = spacing[axis] / widths[knot * d + axis];
+      for (let i = 0; i < counts[axis]; i++) {
+        const u = scale * stepsBetween(grid, i, places[axis][knot], axis);
+        this.#axisOffsets[axis][i] = u;
+        this.#axisKernels[axis][i] = Math.abs(u) <= KERNEL_REACH + RIDGE ? Math.exp((-u * u) / 2) : 0;
+      }
     }
-    kernels[i] = within ? Math.exp(-exponent) : 0;
+    let count = 0;
+    for (const bin of this.#occupied) {
+      let kernel = 1;
+      for (let axis = 0; axis < d; axis++) kernel *= this.#axisKernels[axis][places[axis][bin]];
+      if (kernel === 0) continue;
+      this.bins[count] = bin;
+      this.kernels[count] = kernel;
+      this.offsets[count * (d + 1)] = 1;
+      for (let axis = 0; axis < d; axis++)
+        this.offsets[count * (d + 1) + axis + 1] = this.#axisOffsets[axis][places[axis][bin]];
+      count++;
+    }
+    this.count = count;
   }
 }
 

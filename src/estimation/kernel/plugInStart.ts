@@ -24,6 +24,9 @@ export function referenceBandwidth(grid: KernelGrid, counts: Float64Array): numb
   });
 }
 
+/** The reference rule is for densities; coefficients are known less well than those and want wider windows. */
+const REGRESSION = 2;
+
 /** Places and responses of the ordinary regression that stands for a field in the plug-in rule. */
 export interface PlugInData {
   readonly places: number[];
@@ -36,7 +39,7 @@ export interface PlugInData {
  * @param data  of the field; one dimension only
  */
 export function startBandwidth(grid: KernelGrid, moments: BinnedMoments, data: PlugInData | null): number[] {
-  const reference = referenceBandwidth(grid, moments.counts);
+  const reference = referenceBandwidth(grid, moments.counts).map((width) => REGRESSION * width);
   if (!data) return reference;
   const chosen = directPlugIn(data.places, data.responses);
   return Number.isFinite(chosen) && chosen > 0 ? [chosen] : reference;

@@ -15,7 +15,7 @@
 
 import { type BinnedMoments, subtractExplained } from './BinnedMoments.js';
 import { type FieldSmoother, smooth } from './fieldSmoother.js';
-import { addCoefficients, gatherMoments } from './localFields.js';
+import { addCoefficients, gatherMoments, instrumentsOf, type LocalField } from './localFields.js';
 
 export interface FieldValues {
   /** Per field: values at the knots, shape (components, K). */
@@ -27,41 +27,43 @@ export interface FieldValues {
 const CORRECTIONS = 2;
 
 const ROUNDS = 60;
-const TOLERANCE = 1e-10; // of the largest value of a field; well below what a block of data contributes
+const TOLERANCE = 1e-8; // far below the scatter of any estimate
+
+/** Enough for the effect of a block, of which only the size over all blocks matters. */
+export const ROUGH_TOLERANCE = 1e-4;
 
 /**
  * Solves for all fields.
  *
  * @param vector  moment vectors to explain, shape (K, Z, T): those of the data, or the change that a block makes
+ * @param tolerance  largest change of a field in a round, relative to its largest value, at which the rounds end
  */
 export function solveFields(
   moments: BinnedMoments,
   smoothers: readonly FieldSmoother[],
   vector: Float64Array,
+  tolerance = TOLERANCE,
 ): FieldValues {
-  const values: Float64Array[] = smoothers.map(
-    ({ field }) => new Float64Array(field.components.length * moments.size),
+  const fields = smoothers.map(({ field }) => field);
+  const values: Float64Array[] = fields.map(
+    (field) => new Float64Array(field.components.length * moments.size),
   );
-  let converged = smoothers.length < 2;
-  for (let round = 0; round < (smoothers.length < 2 ? 1 : ROUNDS); round++) {
+  const others = <T>(items: readonly T[], index: number): T[] => items.filter((_, i) => i !== index);
+  let converged = fields.length < 2;
+  for (let round = 0; round < (converged ? 1 : ROUNDS); round++) {
     let change = 0;
     smoothers.forEach((smoother, index) => {
-      const others = smoothers.filter((_, other) => other !== index);
-      const left = explainAway(
-        moments,
-        others,
-        values.filter((_, other) => other !== index),
-        vector,
-      );
+      const left = explainAway(moments, others(fields, index), others(values, index), vector, fields[index]);
       const next = smoothAndCorrect(moments, smoother, left);
       change = Math.max(change, relativeChange(next, values[index]));
       values[index] = next;
     });
-    if (change <= TOLERANCE) {
+    if (fields.length > 1 && change <= tolerance) {
       converged = true;
       break;
     }
   }
+  if ((globalThis as any).process.env.DBG && !converged) console.log('nc');
   return { values, converged };
 }
 
@@ -75,28 +77,34 @@ function smoothAndCorrect(
   const { field } = smoother;
   let values = smooth(smoother, gatherMoments(field, vector, instruments, targets));
   for (let round = 0; round < CORRECTIONS && field.varies; round++) {
-    const rest = explainAway(moments, [smoother], [values], vector);
+    const rest = explainAway(moments, [field], [values], vector, field);
     const more = smooth(smoother, gatherMoments(field, rest, instruments, targets));
     values = values.map((value, i) => value + more[i]);
   }
   return values;
 }
 
-/** Moment vectors less what fields explain of them. */
+/**
+ * Moment vectors less what some fields explain of them.
+ *
+ * @param wanted  the field whose moments are asked for; those of others are left as they are
+ */
 export function explainAway(
   moments: BinnedMoments,
-  smoothers: readonly Pick<FieldSmoother, 'field'>[],
+  fields: readonly LocalField[],
   values: readonly Float64Array[],
   vector: Float64Array,
+  wanted: LocalField,
   matrix: Float64Array = moments.total.matrix,
 ): Float64Array {
   const out = vector.slice();
-  if (smoothers.length === 0) return out;
+  if (fields.length === 0) return out;
   const coefficients = new Float64Array(vector.length);
-  smoothers.forEach(({ field }, index) => {
+  fields.forEach((field, index) => {
     addCoefficients(field, values[index], coefficients, moments.instruments, moments.targets);
   });
-  subtractExplained(moments, matrix, coefficients, out);
+  const from = fields.flatMap(instrumentsOf);
+  subtractExplained(moments, matrix, coefficients, from, instrumentsOf(wanted), out);
   return out;
 }
 

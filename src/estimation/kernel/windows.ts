@@ -3,11 +3,13 @@
  * scarce and a little narrower where they are plenty.
  */
 
-import { type KernelGrid, separateKnots } from './grid.js';
+import { type KernelGrid, separateKnots, stepsBetween } from './grid.js';
 
 export interface KnotWindows {
   /** Knots with enough data around them to be estimated. */
   readonly visited: Int32Array;
+  /** Length K: how many rows each knot stands for. */
+  readonly counts: Float64Array;
   /** Length K: factor on the bandwidth, 1 at a place of typical density. */
   readonly factors: Float64Array;
   /** Per knot: the nearest visited ones (several where they are equally near); itself where visited. */
@@ -17,6 +19,9 @@ export interface KnotWindows {
 const SCARCE = 0.01; // of the mean count of occupied knots: below, a knot is continued from its neighbours
 const WIDEST = 4;
 const NARROWEST = 0.7;
+/** Of the rows a window usually holds: with fewer, instruments and velocities of a few tracks decide the estimate. */
+const LEAST_SHARE = 0.3;
+const WIDENING = 1.15;
 
 /**
  * Windows for the density of the data. The optimal bandwidth falls with the density f as f^{−1/(4+d)}.
@@ -50,22 +55,42 @@ export function createWindows(
   const sources = Array.from({ length: size }, (_, knot) =>
     isVisited[knot] === 1 ? [knot] : findNearest(grid, knot, visited),
   );
-  return { visited, factors, sources };
+  return { counts, visited, factors, sources };
 }
 
-/** Standard deviations of the normal kernel per knot and axis, shape (K, d), for one bandwidth per axis. */
+/**
+ * Standard deviations of the normal kernel per knot and axis, shape (K, d), for one bandwidth per axis. Windows that
+ * would hold less than a share of what is usual are widened until they hold it, or reach their limit.
+ */
 export function spreadBandwidth(
   windows: KnotWindows,
   bandwidth: readonly number[],
   grid: KernelGrid,
 ): Float64Array {
   const { size, dimensions: d, periods } = grid;
+  const { counts, factors, visited } = windows;
   const widths = new Float64Array(size * d);
-  for (let knot = 0; knot < size; knot++) {
+  const contents = new Float64Array(size);
+  const widen = (knot: number, factor: number): void => {
     for (let axis = 0; axis < d; axis++) {
-      const wide = windows.factors[knot] * bandwidth[axis];
+      const wide = factor * bandwidth[axis];
       // On a period the window must not close on itself: the line would meet its own other end.
       widths[knot * d + axis] = periods[axis] > 0 ? Math.min(wide, WIDEST_ON_PERIOD * periods[axis]) : wide;
+    }
+    contents[knot] = weighCounts(grid, counts, knot, widths.subarray(knot * d, (knot + 1) * d));
+  };
+  let usual = 0;
+  let rows = 0;
+  for (const knot of visited) {
+    widen(knot, factors[knot]);
+    usual += counts[knot] * contents[knot];
+    rows += counts[knot];
+  }
+  const least = LEAST_SHARE * (usual / rows);
+  for (const knot of visited) {
+    for (let factor = factors[knot]; contents[knot] < least && factor < WIDEST; ) {
+      factor = Math.min(WIDEST, factor * WIDENING);
+      widen(knot, factor);
     }
   }
   return widths;
@@ -75,22 +100,36 @@ export function spreadBandwidth(
 export const WIDEST_ON_PERIOD = 0.2;
 
 function smoothCounts(grid: KernelGrid, counts: Float64Array, scales: readonly number[]): Float64Array {
-  const { size, dimensions: d, spacing } = grid;
-  return counts.map((_, knot) => {
-    let sum = 0;
-    let reached = 0;
-    for (let other = 0; other < size; other++) {
-      let exponent = 0;
-      for (let axis = 0; axis < d; axis++) {
-        const width = Math.max(scales[axis], spacing[axis]);
-        exponent += (separateKnots(grid, other, knot, axis) / width) ** 2 / 2;
-      }
-      const kernel = Math.exp(-exponent);
-      sum += kernel * counts[other];
-      reached += kernel;
-    }
-    return sum / reached + Number.MIN_VALUE;
-  });
+  const ones = new Float64Array(grid.size).fill(1);
+  const widths = Float64Array.from(scales, (scale, axis) => Math.max(scale, grid.spacing[axis]));
+  return counts.map(
+    (_, knot) =>
+      weighCounts(grid, counts, knot, widths) / weighCounts(grid, ones, knot, widths) + Number.MIN_VALUE,
+  );
+}
+
+/** Σ kernel · counts around a knot. */
+function weighCounts(
+  grid: KernelGrid,
+  counts: Float64Array,
+  knot: number,
+  widths: ArrayLike<number>,
+): number {
+  const { size, dimensions: d, places, spacing } = grid;
+  const kernels = grid.counts.map((count, axis) =>
+    Float64Array.from({ length: count }, (_, i) => {
+      const u = (spacing[axis] * stepsBetween(grid, i, places[axis][knot], axis)) / widths[axis];
+      return Math.exp((-u * u) / 2);
+    }),
+  );
+  let sum = 0;
+  for (let other = 0; other < size; other++) {
+    if (counts[other] === 0) continue;
+    let weight = counts[other];
+    for (let axis = 0; axis < d; axis++) weight *= kernels[axis][places[axis][other]];
+    sum += weight;
+  }
+  return sum;
 }
 
 /** The visited knots nearest in units of the grid's spacing; all of those at (nearly) the same distance. */
