@@ -4,18 +4,40 @@ import { z } from 'zod';
 import { checkDocument, type DocumentPlace } from './checkDocument.js';
 
 const maybeNumber = z.number().nullable();
-/** JSON has no NaN: what could not be told is null there. */
-const knownOrNaN = maybeNumber.transform((value) => value ?? Number.NaN);
+/** JSON has no infinite numbers: an end without a bound is null there. */
+const parametersSchema = z
+  .record(
+    z.string(),
+    z.looseObject({
+      value: maybeNumber.transform((value) => value ?? Number.NaN),
+      low: maybeNumber.transform((value) => value ?? Number.NEGATIVE_INFINITY),
+      high: maybeNumber.transform((value) => value ?? Number.POSITIVE_INFINITY),
+    }),
+  )
+  .default({});
 
 export const testResultSchema = z.looseObject({
   hypothesis: z.string(),
   statistic: maybeNumber,
   p: maybeNumber,
   rejected: z.boolean(),
-  parameters: z
-    .record(z.string(), z.looseObject({ value: knownOrNaN, low: knownOrNaN, high: knownOrNaN }))
-    .default({}),
+  parameters: parametersSchema,
   note: z.string(),
+  field: z.string().optional(),
+  law: z.string().optional(),
+  comparison: z
+    .array(
+      z.looseObject({
+        law: z.string(),
+        rejected: z.boolean(),
+        p: maybeNumber,
+        difference: maybeNumber,
+        differenceError: maybeNumber,
+        tie: z.boolean(),
+        parameters: parametersSchema,
+      }),
+    )
+    .optional(),
 });
 
 export const challengeResultSchema = z.looseObject({

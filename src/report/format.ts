@@ -95,9 +95,15 @@ export function formatWithError(value: number, error: number): string {
   return power === 0 ? text : `(${text}) × ${formatPowerOfTen(power)}`;
 }
 
-/** A value with the ends of its interval: `1.23 (1.10 to 1.36)`, all to the same decimal place. */
+/**
+ * A value with the ends of its interval: `1.23 (1.10 to 1.36)`, all to the same decimal place; `1.23 (above 0.40)` where
+ * one end is infinite.
+ */
 export function formatInterval(value: number, low: number, high: number): string {
   const halfWidth = (high - low) / 2;
+  const isOpen = (low === Number.NEGATIVE_INFINITY) !== (high === Number.POSITIVE_INFINITY);
+  if (isOpen && Number.isFinite(value))
+    return `${formatNumber(value)} (${low < high && Number.isFinite(low) ? `above ${formatNumber(low)}` : `below ${formatNumber(high)}`})`;
   if (![value, low, high].every(Number.isFinite) || halfWidth <= 0) return formatNumber(value, 4);
   const exponent = leadingExponent(Math.max(Math.abs(value), Math.abs(low), Math.abs(high)));
   const power = wantsPower(exponent) ? exponent : 0;

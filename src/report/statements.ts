@@ -29,6 +29,10 @@ const lookUp = (table: Readonly<Record<string, string>>, name: string): string =
 
 /** What a test asks, as a statement without full stop. */
 export function sayStatement(test: ReportedTest): string {
+  if (test.hypothesis === 'law' && test.law !== undefined) {
+    const field = tameText(test.field ?? 'the coefficient', 30).replace('_', ' along ');
+    return `${field[0]?.toUpperCase() ?? ''}${field.slice(1)} follows the law ${tameText(test.law, 100)}`;
+  }
   return lookUp(STATEMENTS, test.hypothesis);
 }
 

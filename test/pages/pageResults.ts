@@ -164,7 +164,32 @@ export function exampleTests(): ReportedTest[] {
         g0: { value: 0.41, low: 0.37, high: 0.45 },
         a: { value: 0.88, low: 0.71, high: 1.05 },
       },
-      note: 'friction = g0 + a exp(-((x - 0.35)/0.22)^2/2) fits as well as the spline.',
+      note: 'The law fits as well as the spline.',
+      field: 'friction',
+      law: 'g0 + a*exp(-((x - 0.35)/0.22)^2/2)',
+      comparison: [
+        {
+          law: 'g0 + a*exp(-((x - 0.35)/0.22)^2/2)',
+          parameters: {
+            g0: { value: 0.41, low: 0.37, high: 0.45 },
+            a: { value: 0.88, low: 0.71, high: 1.05 },
+          },
+          p: 0.36,
+          rejected: false,
+          difference: 0,
+          differenceError: 0,
+          tie: true,
+        },
+        {
+          law: 'g0*(1 + a*tanh(x/w))',
+          parameters: { w: { value: 3, low: 0.4, high: Number.POSITIVE_INFINITY } },
+          p: 1e-7,
+          rejected: true,
+          difference: -812.4,
+          differenceError: 31,
+          tie: false,
+        },
+      ],
     },
   ];
 }

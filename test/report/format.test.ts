@@ -110,6 +110,9 @@ describe('numbers that belong together', () => {
     expect(formatInterval(1.2345, 1.1, 1.36)).toBe('1.23 (1.10 to 1.36)');
     expect(formatInterval(-4.5e-8, -7.5e-8, -1.5e-8)).toBe('−4.5 (−7.5 to −1.5) × 10⁻⁸');
     expect(formatInterval(3, Number.NaN, 4)).toBe('3.000');
+    expect(formatInterval(3, 0.4, Number.POSITIVE_INFINITY)).toBe('3.00 (above 0.400)');
+    expect(formatInterval(3, Number.NEGATIVE_INFINITY, 4)).toBe('3.00 (below 4.00)');
+    expect(formatInterval(3, Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY)).toBe('3.000');
   });
 
   test('a range with one power of ten', () => {

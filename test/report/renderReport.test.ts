@@ -101,6 +101,8 @@ describe('the whole story', () => {
     expect(told).toContain('Friction is the same everywhere.');
     expect(told).toContain('p < 0.001, statistic 183');
     expect(told).toContain('g0 = 0.410 (0.370 to 0.450)');
+    expect(told).toContain('Friction follows the law g0 + a*exp(-((x - 0.35)/0.22)^2/2).');
+    expect(told).toContain('g0*(1 + a*tanh(x/w))w = 3.00 (above 0.400)−812 ± 31worserejected, p < 0.001');
     expect(told).toContain(
       'The data contradict an assumption of the model: “Friction does not depend on speed”.',
     );

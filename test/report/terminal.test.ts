@@ -143,7 +143,9 @@ describe('what is said', () => {
   test('of tests: verdict, p, note and parameters', () => {
     const text = formatTestSummary(exampleTests());
     expect(text).toContain('✗ Friction is the same everywhere: rejected (p\u00a0<\u00a00.001).');
-    expect(text).toContain('– The coefficient follows the law: not rejected (p\u00a0=\u00a00.36).');
+    expect(text).toContain(
+      '– Friction follows the law g0 + a*exp(-((x - 0.35)/0.22)^2/2): not rejected (p\u00a0=\u00a00.36).',
+    );
     expect(text).toContain('g0 = 0.410 (0.370 to 0.450); a = 0.88 (0.71 to 1.05)');
     expect(text).toContain('Of 3 statements 2 are rejected.');
     expect(formatTestSummary(exampleTests().slice(2))).toContain('Nothing speaks against the statement.');

@@ -1,6 +1,6 @@
 /** Statements tested on the coefficients, and the model's own assumptions tried against the data. */
 
-import { formatInterval, formatNumber } from '../format.js';
+import { formatInterval, formatNumber, formatWithError } from '../format.js';
 import { type Html, html, tameText } from '../html.js';
 import type { ReportedTest } from '../ReportInput.js';
 import { sayAssumption, sayChallenges, sayP, sayStatement, sayTests } from '../statements.js';
@@ -23,13 +23,27 @@ function drawFindings(findings: readonly Finding[]): Html {
   )}</ul>`;
 }
 
-function drawParameters({ parameters }: ReportedTest): Html | null {
+function drawParameters({ parameters }: Pick<ReportedTest, 'parameters'>): Html | null {
   const entries = Object.entries(parameters);
   if (entries.length === 0) return null;
   return html`<p class="tag">${entries.map(
     ([name, { value, low, high }], i) =>
       html`${i > 0 ? '; ' : ''}<bdi>${tameText(name, 40)}</bdi> = ${formatInterval(value, low, high)}`,
   )}</p>`;
+}
+
+/** Several laws side by side, best first. */
+function drawComparison({ comparison = [] }: ReportedTest): Html | null {
+  if (comparison.length < 2) return null;
+  const rows = comparison.map(({ law, parameters, p, rejected, difference, differenceError, tie }, i) => {
+    const behind =
+      i === 0 ? 'best' : difference === null ? '–' : formatWithError(difference, differenceError ?? 0);
+    const verdict = `${rejected ? 'rejected' : 'not rejected'}, ${sayP(p)}`;
+    return html`<tr><th class="words">${tameText(law, 120)}${drawParameters({ parameters })}</th><td>${behind}</td><td>${i === 0 ? '' : tie ? 'as good' : 'worse'}</td><td>${verdict}</td></tr>`;
+  });
+  return html`<div class="scroll" tabindex="0" role="region" aria-label="Laws compared"><table>
+<thead><tr><th class="words">Law</th><th>Score behind the best</th><th>Within chance</th><th>By itself</th></tr></thead><tbody>${rows}</tbody></table></div>
+<p class="tag">Scores are log predictive densities of data that the parameters were not fitted to.</p>`;
 }
 
 export function writeTests(context: PageContext): Section | null {
@@ -48,7 +62,7 @@ export function writeTests(context: PageContext): Section | null {
                 ? sayP(test.p)
                 : `${sayP(test.p)}, statistic ${formatNumber(test.statistic)}`,
             note: test.note,
-            more: drawParameters(test),
+            more: html`${drawParameters(test)}${drawComparison(test)}`,
           })),
         )}`;
   const challenged =
