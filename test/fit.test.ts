@@ -128,9 +128,6 @@ describe('a fit', () => {
   it('refuses what cannot be fitted', async () => {
     const short = simulateFirstOrder({ tracks: 30, frames: 2, seed: 1 });
     await expect(fitTracks(short, studyOf({ order: 'first' }))).rejects.toThrow(DataError);
-    await expect(fitTracks(FORGOTTEN, studyOf({ order: 'first', estimator: 'kernel' }))).rejects.toThrow(
-      UsageError,
-    );
     await expect(fitTracks(FORGOTTEN, studyOf({ order: 'first', diffusion: 'zero' }))).rejects.toThrow(
       UsageError,
     );
