@@ -53,7 +53,7 @@ function drawGauge({ recorded, low, high }: ResimulationStatistic, odd: boolean)
 
 function drawStatistics(result: ResimulationResult): Html {
   const rows = result.statistics.map((statistic) => {
-    const odd = statistic.adjusted < result.level;
+    const odd = statistic.adjusted <= result.level;
     return html`<tr><th class="words">${capitalize(tameText(statistic.title, 90))}</th><td>${drawGauge(statistic, odd)}</td><td${odd ? html` class="no"` : null}>${formatP(statistic.adjusted)}</td><td>${formatP(statistic.p)}</td><td>${formatNumber(statistic.recorded)}</td><td>${formatRange(statistic.low, statistic.high)}</td></tr>`;
   });
   return html`<div class="scroll" tabindex="0" role="region" aria-label="Statistics of the recording and of simulated ones"><table>
@@ -61,6 +61,19 @@ function drawStatistics(result: ResimulationResult): Html {
 <tbody>${rows}</tbody></table></div>
 <p class="aside">Each statistic measures a distance from what the model gives; p is the share of simulated recordings
 at least as far away, and the corrected p allows for looking at ${formatCount(result.statistics.length)} of them.</p>`;
+}
+
+/** Mean residence and first-passage times in the regions that were named. */
+function drawTimes(result: ResimulationResult): Html | null {
+  if (result.times.length === 0) return null;
+  const show = (value: number | null): string => (value === null ? 'not seen' : formatNumber(value));
+  const rows = result.times.map(
+    ({ name, recorded, events, low, median, high }) =>
+      html`<tr><th class="words">${capitalize(tameText(name.replace(':', ' '), 90))}</th><td>${formatCount(events)}</td><td>${show(recorded)}</td><td>${show(median)}</td><td>${show(low)} to ${show(high)}</td></tr>`,
+  );
+  return html`<h3>Times in and between regions</h3><div class="scroll" tabindex="0" role="region" aria-label="Mean residence and first-passage times"><table>
+<thead><tr><th class="words">Mean time</th><th>Ends seen</th><th>Recorded</th><th>Simulated</th><th>Simulated, 95 %</th></tr></thead>
+<tbody>${rows}</tbody></table></div>`;
 }
 
 function drawRefit(result: ResimulationResult): Html | null {
@@ -109,6 +122,6 @@ starts, frames, gaps and localization error; seed ${result.seed}), and each simu
 inconsistent in at most ${formatPercent(result.level)} of studies.</span></p>
 ${result.warnings.length > 0 ? writeWarnings(result.warnings) : null}
 ${pictures.length > 0 ? html`<div class="key">${writeLegend(MARKS)}</div><div class="pictures">${pictures}</div>` : null}
-<h3>Statistics</h3>${drawStatistics(result)}${drawRefit(result)}`;
+<h3>Statistics</h3>${drawStatistics(result)}${drawTimes(result)}${drawRefit(result)}`;
   return { id: 'resimulation', title: 'The recording beside its re-simulation', body };
 }

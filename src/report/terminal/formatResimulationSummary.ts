@@ -1,6 +1,10 @@
 /** The recording against its re-simulation, for people at a terminal. */
 
-import type { RefitCoefficient, ResimulationResult } from '../../checks/ResimulationResult.js';
+import type {
+  RefitCoefficient,
+  ResimulationResult,
+  ResimulationTime,
+} from '../../checks/ResimulationResult.js';
 import { drawGaugeLine } from '../charts/gaugeLine.js';
 import {
   formatCount,
@@ -34,7 +38,24 @@ export function formatResimulationSummary(
   ]);
   const heads = ['statistic', 'p, corrected', 'among simulated', 'recorded', 'simulated, 95 %'];
   const verdict = writeParagraph(sayVerdict(result), width, result.consistent ? green : red);
-  return `${writeTitle(`Recording against ${formatCount(result.replicates)} simulated ones`, style)}${drawTable(heads, rows, { width, spare: 2 })}${verdict}${formatRefit(result.refit, width)}`;
+  return `${writeTitle(`Recording against ${formatCount(result.replicates)} simulated ones`, style)}${drawTable(heads, rows, { width, spare: 2 })}${verdict}${formatTimes(result.times, width)}${formatRefit(result.refit, width)}`;
+}
+
+/** Mean residence and first-passage times beside the simulated ones. */
+function formatTimes(times: readonly ResimulationTime[], width: number): string {
+  const show = (value: number | null): string => (value === null ? 'not seen' : formatNumber(value));
+  const rows = times.map(({ name, recorded, events, low, median, high }) => [
+    tameText(name.replace(':', ' '), 50),
+    formatCount(events),
+    show(recorded),
+    show(median),
+    `${show(low)} … ${show(high)}`,
+  ]);
+  if (rows.length === 0) return '';
+  return drawTable(['mean time', 'ends seen', 'recorded', 'simulated', 'simulated, 95 %'], rows, {
+    width,
+    spare: 0,
+  });
 }
 
 /** Refitted coefficients field by field: how many are off, and the worst. */
