@@ -31,6 +31,8 @@ export interface StepControl {
 export interface StepControlOptions {
   /** Step to begin with. */
   readonly step: number;
+  /** Largest stable step. */
+  readonly stable: number;
   /** Share of its size by which an average may be off. */
   readonly tolerance: number;
   readonly seed: number;
@@ -52,6 +54,7 @@ const LONGEST = 2000; // coarse steps per particle
 const FEWEST_PARTICLES = 40;
 const RATIOS = [4, 2, 1]; // fine steps in one step of each level: 2h, h, h/2
 const RESOLVED = 3; // standard errors that a difference must stand out by for its order to be told
+const STABLE_SHARE = 0.4; // of the largest stable step: beyond it errors no longer follow a power
 const WELL_RESOLVED = 0.25; // standard error of such an order
 
 /** Halves the step until no average errs by more than the tolerance. */
@@ -63,6 +66,11 @@ export function controlStep(integrator: Integrator, options: StepControlOptions)
     // The last order that is well resolved is kept: at smaller steps the errors vanish in the scatter.
     if (told.order === null || (found.orderDeviation ?? Infinity) < WELL_RESOLVED) told = found;
     if (found.converged || halvings === MAX_HALVINGS) {
+      // A step that was good from the start has errors too small to show an order: larger ones are tried for it.
+      for (const scale of [2, 4, 8]) {
+        if (told.order !== null || 2 * scale * found.step > STABLE_SHARE * options.stable) break;
+        told = measureStep(integrator, options, scale * found.step, MAX_HALVINGS + scale);
+      }
       return { ...found, order: told.order, orderDeviation: told.orderDeviation };
     }
     step = found.step / 2;

@@ -165,6 +165,7 @@ function tryHalving(
   const { interval, frames } = scenario.observation;
   const control = controlStep(createIntegrator(scenario, evaluator), {
     step,
+    stable: recommendedStep(evaluator, scenario).stable,
     tolerance,
     seed,
     interval,
