@@ -1,7 +1,7 @@
 /**
  * How the integrators err: order of the step in the averages of trapped particles, temperature in long runs at the
  * recommended step, and escape rates against Kramers.
- * Run with `npm run study:integrators [share]`; a share of 0.1 takes a tenth of the time.
+ * Run with `npm run study:integrators [share] [order, temperature or escape]`; a share of 0.1 takes a tenth of the time.
  */
 
 import type { ScenarioInput } from '../../src/documents/Scenario.js';
@@ -15,6 +15,7 @@ import { createScenarioEvaluator } from '../../src/simulation/ScenarioEvaluator.
 import { printTable } from './table.js';
 
 const share = Number(process.argv[2] ?? 1);
+const only = process.argv[3] ?? '';
 
 type Input = Partial<ScenarioInput> & Pick<ScenarioInput, 'coefficients' | 'order'>;
 
@@ -286,6 +287,6 @@ async function escapeTable(): Promise<void> {
   );
 }
 
-await orderTable();
-await temperatureTable();
-await escapeTable();
+if (only === '' || only === 'order') await orderTable();
+if (only === '' || only === 'temperature') await temperatureTable();
+if (only === '' || only === 'escape') await escapeTable();
