@@ -63,7 +63,6 @@ export function solveFields(
       break;
     }
   }
-  if ((globalThis as any).process.env.DBG && !converged) console.log('nc');
   return { values, converged };
 }
 
