@@ -24,6 +24,8 @@ import { findStart } from './startValues.js';
 
 const FLOOR = 1e-7; // smallest localization error variance, relative to the mean squared displacement per step
 const ROUGH_POSITIONS = 150; // per function: enough for the metric of the iteration
+const LONGEST_STEP = 2; // of the logarithm of an error variance: near zero its information is no guide
+const HELD = 1e12; // information that leaves no step worth speaking of
 const WIDEST = 40; // |log| of positive coefficients and variances stays below; nothing recorded spans e^40
 
 /**
@@ -61,9 +63,20 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
       blocks: plan.blocks.count,
       groups,
       evaluate: (parameters, scores) => pass.run(parameters, scores),
-      information: (parameters, rough) =>
-        expectInformation(tracks, layout, setting, local, parameters, flow, rough ? stride : 1),
-      confine: (parameters) => confine(parameters, layout, floors),
+      information: (parameters, rough) => {
+        const matrix = expectInformation(
+          tracks,
+          layout,
+          setting,
+          local,
+          parameters,
+          flow,
+          rough ? stride : 1,
+        );
+        if (rough) holdAtFloor(matrix, layout, parameters, floors);
+        return matrix;
+      },
+      confine: (parameters, from) => confine(parameters, from, layout, floors),
     },
     findStart(tracks, plan, layout, floors),
   );
@@ -132,7 +145,12 @@ function measureFloors({ dimensions, positions, trackOffsets }: TrackSet): Float
   return sums.map((sum) => Math.max((FLOOR * sum) / Math.max(count, 1), Number.MIN_VALUE));
 }
 
-function confine(parameters: Float64Array, layout: LikelihoodLayout, floors: Float64Array): void {
+function confine(
+  parameters: Float64Array,
+  from: Float64Array,
+  layout: LikelihoodLayout,
+  floors: Float64Array,
+): void {
   for (const slot of [layout.friction, layout.noise]) {
     if (!slot || slot.basis < 0) continue;
     const end = slot.offset + slot.components * slot.functionCount;
@@ -142,7 +160,28 @@ function confine(parameters: Float64Array, layout: LikelihoodLayout, floors: Flo
   if (layout.errorOffset < 0) return;
   for (let axis = 0; axis < layout.dimensions; axis++) {
     const i = layout.errorOffset + axis;
-    parameters[i] = Math.min(Math.max(parameters[i], Math.log(floors[axis])), WIDEST);
+    const reach = Math.min(Math.max(parameters[i], from[i] - LONGEST_STEP), from[i] + LONGEST_STEP);
+    parameters[i] = Math.min(Math.max(reach, Math.log(floors[axis])), WIDEST);
+  }
+}
+
+/**
+ * Takes an error variance that has come down to its floor out of the iteration: it would go on below, and drag the
+ * others along with a step it cannot take.
+ */
+function holdAtFloor(
+  matrix: Float64Array,
+  layout: LikelihoodLayout,
+  parameters: Float64Array,
+  floors: Float64Array,
+): void {
+  if (layout.errorOffset < 0) return;
+  const p = layout.size;
+  for (let axis = 0; axis < layout.dimensions; axis++) {
+    const i = layout.errorOffset + axis;
+    if (parameters[i] > Math.log(2 * floors[axis])) continue;
+    for (let j = 0; j < p; j++) matrix[i * p + j] = matrix[j * p + i] = 0;
+    matrix[i * p + i] = HELD;
   }
 }
 

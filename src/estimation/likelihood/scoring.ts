@@ -29,8 +29,8 @@ export interface ScoringProblem {
   evaluate(parameters: Float64Array, scores: Float64Array | null): number;
   /** The metric at a point, shape (p, p), positive semi-definite; a rough one will do on the way. */
   information(parameters: Float64Array, rough: boolean): Float64Array;
-  /** Moves a point to where it may be (bounds), in place. */
-  confine(parameters: Float64Array): void;
+  /** Moves a point to where it may be (bounds, and not too far from where the step began), in place. */
+  confine(parameters: Float64Array, from: Float64Array): void;
 }
 
 export interface ScoringSolution {
@@ -64,7 +64,7 @@ const RIDGE = 1e-9; // relative; keeps directions that nothing tells apart from 
 export function solveScores(problem: ScoringProblem, start: Float64Array): ScoringSolution {
   const { size: p, groups } = problem;
   let parameters = start.slice();
-  problem.confine(parameters);
+  problem.confine(parameters, start);
   let scores = new Float64Array(problem.blocks * p);
   let trialScores = new Float64Array(problem.blocks * p);
   let logLikelihood = problem.evaluate(parameters, scores);
@@ -93,7 +93,7 @@ export function solveScores(problem: ScoringProblem, start: Float64Array): Scori
     let moved = parameters;
     for (let halving = 0; halving <= HALVINGS; halving++, length /= 2) {
       moved = parameters.map((value, i) => value + length * step[i]);
-      problem.confine(moved);
+      problem.confine(moved, parameters);
       logLikelihood = problem.evaluate(moved, trialScores);
       // The places where coefficients are read move with them, so the score is not quite the gradient of the
       // likelihood: a step is good if it brings either nearer to where it should be.
