@@ -89,6 +89,42 @@ export const COMMANDS: readonly CommandSpec[] = [
     load: async () => (await import('./commands/evaluate.js')).runEvaluate,
   },
   {
+    name: 'test',
+    summary: 'test a statement about the coefficients, or fit and compare laws',
+    description:
+      'The statement is compared with a flexible fit of the same tracks, from smooth to fine. A small p speaks against it. --json adds a table of where in space it fails.',
+    operands: [['[fit]', 'fit file; not needed with --laws']],
+    options: [
+      'hypothesis',
+      'field',
+      'law',
+      'start',
+      'fix',
+      'laws',
+      'ownLaws',
+      'confidence',
+      'trackFiles',
+      'output',
+      ...SPEECH_OPTIONS,
+    ],
+    examples: [
+      'wanderlaw test fit.json --hypothesis uniform-friction',
+      'wanderlaw test fit.json --hypothesis law --field friction --law "g0*(1+a*tanh(x/w))" --law constant',
+      'wanderlaw test --laws',
+    ],
+    load: async () => (await import('./commands/test.js')).runTest,
+  },
+  {
+    name: 'challenge',
+    summary: "try the model's own assumptions against the data",
+    description:
+      'Memory, friction that depends on speed, noise that is not Gaussian, change over the recording, tracks that move together, wrong links. p-values are corrected for the number of checks.',
+    operands: [FIT],
+    options: ['confidence', 'trackFiles', 'output', ...SPEECH_OPTIONS],
+    examples: ['wanderlaw challenge fit.json', 'wanderlaw challenge fit.json --json -o challenge.json'],
+    load: async () => (await import('./commands/challenge.js')).runChallenge,
+  },
+  {
     name: 'resimulate',
     summary: 'simulate the fit at the recorded design and compare with the recording',
     description:

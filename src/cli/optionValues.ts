@@ -127,6 +127,25 @@ export function unitsValue(text: string, option: string): { length: string; time
   return { length: parts[0], time: parts[1] };
 }
 
+/** `g0=1,a=0.1`: values of named parameters. */
+export function parametersValue(text: string, option: string): Record<string, number> {
+  const values: Record<string, number> = {};
+  for (const pair of text.split(',')) {
+    const [name, value = '', ...rest] = pair.split('=').map((part) => part.trim());
+    if (name === '' || value === '' || rest.length > 0 || !Number.isFinite(Number(value))) {
+      throw new UsageError(`${option} is NAME=NUMBER,…, for example g0=1,a=0.1, got "${pair.trim()}"`, {
+        option,
+        value: text,
+      });
+    }
+    if (Object.hasOwn(values, name)) {
+      throw new UsageError(`${option} gives ${name} twice; keep one of them`, { option, value: text });
+    }
+    values[name] = Number(value);
+  }
+  return values;
+}
+
 /** `4,3`: one period per axis, 0 = open. */
 export function periodsValue(text: string, option: string): number[] {
   const periods = text.split(',').map((part) => (part.trim() === '' ? NaN : Number(part)));

@@ -5,11 +5,13 @@
  * Nothing heavy is imported, so that help appears at once.
  */
 
+import { HYPOTHESES } from '../hypotheses/TestResult.js';
 import {
   choiceValue,
   columnsValue,
   lengthOrAutoValue,
   numberValue,
+  parametersValue,
   periodsValue,
   shapeValue,
   unitsValue,
@@ -343,6 +345,45 @@ export const OPTIONS = {
   noRefit: {
     flags: '--no-refit',
     meaning: 'leave out fitting the simulated recordings again',
+  },
+  hypothesis: {
+    flags: '--hypothesis <NAME>',
+    meaning:
+      'what is tested: uniform-friction, uniform-noise (at first order, of the diffusion), uniform-temperature (one temperature everywhere), conservative-force (the force has a potential), zero-force, isotropic-friction, or law (a formula, with --field and --law)',
+    default: 'law where --law is given',
+    parse: choiceValue(HYPOTHESES),
+  },
+  field: {
+    flags: '--field <COEFFICIENT>',
+    meaning:
+      'what a law is about: friction, noise, temperature, force_x, … at second order; diffusion, drift_x, … at first',
+  },
+  law: {
+    flags: '--law <LAW>',
+    meaning:
+      'a formula in x, y, z and parameters of your own naming, such as "g0*(1+a*tanh(x/w))", or a law by name (see --laws); given more than once, the laws are compared',
+    repeatable: true,
+  },
+  start: {
+    flags: '--start <VALUES>',
+    meaning: 'where the search for the parameters of laws begins, for example g0=1,a=0.1',
+    default: 'sizes met in the data',
+    parse: parametersValue,
+  },
+  fix: {
+    flags: '--fix <VALUES>',
+    meaning: 'parameters of laws that are known and not to be fitted, for example radius=0.5,wall=0',
+    parse: parametersValue,
+  },
+  laws: {
+    flags: '--laws',
+    meaning: 'list the laws known by name, with source and range of validity, instead of testing',
+  },
+  ownLaws: {
+    flags: '--study <FILE>',
+    meaning:
+      'study file whose "laws" may be called by name, as in {"laws": {"ramp": {"formula": "g0+g1*x"}}}',
+    default: 'those of the fit',
   },
   resimulation: {
     flags: '--resimulation <FILE>',

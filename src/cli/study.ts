@@ -23,7 +23,8 @@ export async function resolveStudy(
   return completeStudy({ ...file, ...line, columns });
 }
 
-async function readStudyFile(path: string, terminal: Terminal): Promise<StudyInput> {
+/** @throws UsageError  where it cannot be read or is no study */
+export async function readStudyFile(path: string, terminal: Terminal): Promise<StudyInput> {
   const value = await readDocument(terminal.resolve(path), 'study', path);
   return parseStudyInput(value, { source: path, suggest: formatSuggestion });
 }

@@ -46,6 +46,22 @@ export const studySchema = z
       .default(false)
       .describe('remove what finite sampling leaves by simulating and fitting again (indirect inference)'),
     seed: z.int().min(0).default(1).describe('seed of every random draw'),
+    laws: z
+      .record(
+        z.string(),
+        z.strictObject({
+          formula: z.string().describe('in x, y, z and named parameters, e.g. g0*(1+a*tanh(x/w))'),
+          start: z
+            .record(z.string(), z.number())
+            .default({})
+            .describe('values the search for the parameters begins at'),
+          about: z.string().default('').describe('the law in words'),
+          source: z.string().default('').describe('where the law comes from'),
+          range: z.string().default('').describe('where it is valid'),
+        }),
+      )
+      .default({})
+      .describe('laws of your own, by name, for test --law NAME'),
     // how the table is read
     columns: z
       .record(z.string(), z.string())

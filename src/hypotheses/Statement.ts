@@ -20,6 +20,9 @@ export interface Statement {
   /** Numbers (no functions of place) that must vanish too; empty for most statements. */
   extras(model: Model): number[];
   readonly extraNames: readonly string[];
+  /** Numbers read off the flexible fit that are reported with an interval but not tested; empty for most statements. */
+  reports(model: Model): number[];
+  readonly reportNames: readonly string[];
   /** M(φ), shape (residuals, K). */
   combination(parameters: ArrayLike<number>): Float64Array;
   /** The functions g at places, one array of length m per residual; null where they vanish. */

@@ -2,6 +2,7 @@
  * Contrasts: averages of a statement's columns against smooth modes, with what each block of data adds to them.
  *
  * Symbols: `K` columns, `I` modes, `E` extras, `B` blocks; Q = E + I K contrasts in the order extras, then mode by mode.
+ * Numbers that are only reported are carried along behind them.
  */
 
 import type { Estimate } from '../estimation/Estimate.js';
@@ -21,6 +22,12 @@ export interface Contrasts {
   /** Shape (Q, Q): covariance of the values, with smoothing bias where the estimate has any. */
   readonly covariance: Float64Array;
   readonly blocks: number;
+  /** Numbers only reported, with their standard errors. */
+  readonly reports: readonly {
+    readonly name: string;
+    readonly value: number;
+    readonly standardError: number;
+  }[];
   /** K columns of the estimate at the nodes. */
   readonly columnsAtNodes: readonly Float64Array[];
 }
@@ -28,13 +35,13 @@ export interface Contrasts {
 /**
  * Contrasts of an estimate.
  *
- * The effect of a block follows from its first-order contribution to the parameters, moved through everything between
- * parameters and columns (interval correction, links, ratios). Covariance: B/(B − 1) Σ effect
+ * The effect of a block follows from its first-order contribution to the parameters, carried through everything between
+ * parameters and columns (interval correction, links, ratios) by derivatives. Covariance: B/(B − 1) Σ effect
  * effectᵀ, the sandwich of independent blocks.
  *
  * @param nodes  shape (m, d): places that stand for the occupancy, those of `modes`
  *
- * Cost  B + 2 evaluations of the model at the nodes.
+ * Cost  2 p evaluations of the model at the nodes.
  */
 export function measureContrasts(
   estimate: Estimate,
@@ -48,69 +55,102 @@ export function measureContrasts(
   const columnCount = statement.columnNames.length;
   const extraCount = statement.extraNames.length;
   const size = extraCount + modes.count * columnCount;
+  const reportCount = statement.reportNames.length;
+  const width = size + reportCount;
+  const modelOf = (raw: Float64Array): Model =>
+    withParameters(estimate.model, estimate.toModelParameters(raw));
   const measure = (raw: Float64Array): Float64Array => {
-    const model = withParameters(estimate.model, estimate.toModelParameters(raw));
-    return averageColumns(statement, model, statement.columns(model, nodes), modes);
+    const model = modelOf(raw);
+    const averages = averageOverModes(statement.columns(model, nodes), modes);
+    return Float64Array.from([...statement.extras(model), ...averages, ...statement.reports(model)]);
   };
   const values = measure(parameters);
-  const moved = new Float64Array(p);
-  const changeAlong = (direction: (i: number) => number): Float64Array => {
-    for (let i = 0; i < p; i++) moved[i] = parameters[i] + direction(i);
-    return measure(moved).map((value, i) => value - values[i]);
-  };
-  const effects = new Float64Array(blocks * size);
-  for (let block = 0; block < blocks; block++) {
-    effects.set(
-      changeAlong((i) => influences[block * p + i]),
-      block * size,
-    );
-  }
-  const covariance = new Float64Array(size * size);
-  addOuterProducts(covariance, effects, size, blocks / Math.max(1, blocks - 1));
+  const slopes = differentiate(measure, parameters, influences, width);
+  const effects = multiplyRows(influences, slopes, p, width);
+  const whole = new Float64Array(width * width);
+  addOuterProducts(whole, effects, width, blocks / Math.max(1, blocks - 1));
   if (smoothingFactor !== null) {
     const { values: factor, columns } = smoothingFactor;
-    const bias = new Float64Array(columns * size);
-    for (let c = 0; c < columns; c++) {
-      bias.set(
-        changeAlong((i) => factor[i * columns + c]),
-        c * size,
-      );
-    }
-    addOuterProducts(covariance, bias, size, 1);
+    const transposed = Float64Array.from({ length: p * columns }, (_, at) => {
+      return factor[(at % p) * columns + Math.floor(at / p)];
+    });
+    addOuterProducts(whole, multiplyRows(transposed, slopes, p, width), width, 1);
   }
+  const covariance = new Float64Array(size * size);
+  for (let i = 0; i < size; i++) covariance.set(whole.subarray(i * width, i * width + size), i * size);
   return {
     columnCount,
     modeCount: modes.count,
     extraCount,
-    values,
-    effects,
+    values: values.slice(0, size),
+    effects: keepColumns(effects, width, size),
     covariance,
     blocks,
-    columnsAtNodes: statement.columns(
-      withParameters(estimate.model, estimate.toModelParameters(parameters)),
-      nodes,
-    ),
+    reports: statement.reportNames.map((name, i) => ({
+      name,
+      value: values[size + i],
+      standardError: Math.sqrt(whole[(size + i) * (width + 1)]),
+    })),
+    columnsAtNodes: statement.columns(modelOf(parameters), nodes),
   };
 }
 
-function averageColumns(
-  statement: Statement,
-  model: Model,
-  columns: readonly Float64Array[],
-  modes: OccupancyModes,
+const STEP = 0.3; // standard errors of a parameter over which derivatives are taken: short against curvature
+
+/** Derivatives of the contrasts by the raw parameters, shape (p, width), by central differences. */
+function differentiate(
+  measure: (raw: Float64Array) => Float64Array,
+  parameters: Float64Array,
+  influences: Float64Array,
+  width: number,
 ): Float64Array {
-  const extras = statement.extras(model);
-  const averages = averageOverModes(columns, modes);
-  const out = new Float64Array(extras.length + averages.length);
-  out.set(extras);
-  out.set(averages, extras.length);
+  const p = parameters.length;
+  const out = new Float64Array(p * width);
+  const moved = parameters.slice();
+  for (let i = 0; i < p; i++) {
+    let square = 0;
+    for (let at = i; at < influences.length; at += p) square += influences[at] ** 2;
+    const step = STEP * Math.sqrt(square);
+    if (step === 0) continue;
+    moved[i] = parameters[i] + step;
+    const above = measure(moved);
+    moved[i] = parameters[i] - step;
+    const below = measure(moved);
+    moved[i] = parameters[i];
+    for (let j = 0; j < width; j++) out[i * width + j] = (above[j] - below[j]) / (2 * step);
+  }
   return out;
 }
 
-/** Mean of each function times each mode over the nodes, mode by mode. */
-export function averageOverModes(functions: readonly Float64Array[], modes: OccupancyModes): Float64Array {
-  const out = new Float64Array(modes.count * functions.length);
-  for (let mode = 0; mode < modes.count; mode++) {
+/** Rows of shape (count, p) times a matrix of shape (p, width). */
+function multiplyRows(rows: Float64Array, matrix: Float64Array, p: number, width: number): Float64Array {
+  const count = rows.length / p;
+  const out = new Float64Array(count * width);
+  for (let row = 0; row < count; row++) {
+    for (let i = 0; i < p; i++) {
+      const value = rows[row * p + i];
+      if (value === 0) continue;
+      for (let j = 0; j < width; j++) out[row * width + j] += value * matrix[i * width + j];
+    }
+  }
+  return out;
+}
+
+function keepColumns(rows: Float64Array, width: number, kept: number): Float64Array {
+  const out = new Float64Array((rows.length / width) * kept);
+  for (let row = 0; row < rows.length / width; row++)
+    out.set(rows.subarray(row * width, row * width + kept), row * kept);
+  return out;
+}
+
+/** Mean of each function times each mode over the nodes, mode by mode, for the first `count` modes. */
+export function averageOverModes(
+  functions: readonly Float64Array[],
+  modes: OccupancyModes,
+  count = modes.count,
+): Float64Array {
+  const out = new Float64Array(count * functions.length);
+  for (let mode = 0; mode < count; mode++) {
     const weights = modes.atNodes[mode];
     functions.forEach((values, index) => {
       let sum = 0;

@@ -37,6 +37,8 @@ export interface StatementFit {
   readonly freedom: number;
   /** Shape (r, r): inverse information of the parameters by linearisation; NaN where they cannot be told apart. */
   readonly covariance: Float64Array;
+  /** Shape (count, r): derivatives of the whitened residuals C^(−1/2) h at the minimum; zero for a fixed parameter. */
+  readonly jacobian: Float64Array;
   readonly converged: boolean;
 }
 
@@ -83,6 +85,7 @@ export function fitStatement(
       statistic: found.value,
       freedom: count - free.length,
       covariance: spreadCovariance(found.jacobian, count, free, all),
+      jacobian: spreadColumns(found.jacobian, count, free, all),
       converged: found.converged,
     };
   }
@@ -92,56 +95,73 @@ export function fitStatement(
       statistic: Infinity,
       freedom: count - free.length,
       covariance: new Float64Array(all * all).fill(Number.NaN),
+      jacobian: new Float64Array(count * all),
       converged: false,
     }
   );
 }
 
-/** Writes C^(−1/2) h for given parameters; NaN where the statement has no value. */
-function createWhitener(problem: StatementProblem): (parameters: Float64Array, out: Float64Array) => void {
+/** The numbers that should vanish, and their covariance. */
+export interface Residuals {
+  /** Length count: extras, then mode by mode. */
+  readonly values: Float64Array;
+  /** Shape (count, count): lower-triangular factor of the covariance; null where that is singular. */
+  readonly lower: Float64Array | null;
+}
+
+/** Prepares the evaluation of h and its covariance; the arrays handed out are used again by the next call. */
+export function createResiduals(problem: StatementProblem): (parameters: ArrayLike<number>) => Residuals {
   const { statement, contrasts, nodes, modes, modeCount } = problem;
   const { columnCount, extraCount, values, covariance } = contrasts;
   const total = values.length;
   const rows = statement.residualNames.length;
   const count = countComparisons(problem);
-  const combined = new Float64Array(count * total);
+  const map = new Float64Array(count * total);
   const spread = new Float64Array(count * count);
   const lower = new Float64Array(count * count);
+  const out = new Float64Array(count);
   let factored: Float64Array | null = null;
-  const factor = (combination: Float64Array): boolean => {
-    if (factored !== null && factored.every((value, i) => value === combination[i])) return true;
-    // A = the map from contrasts to residuals; C = A Σ Aᵀ
-    combined.fill(0);
-    for (let i = 0; i < extraCount; i++) combined[i * total + i] = 1;
+  let regular = false;
+  const factor = (combination: Float64Array): void => {
+    if (factored !== null && factored.every((value, i) => value === combination[i])) return;
+    map.fill(0);
+    for (let i = 0; i < extraCount; i++) map[i * total + i] = 1;
     for (let mode = 0; mode < modeCount; mode++) {
       for (let row = 0; row < rows; row++) {
         const at = (extraCount + mode * rows + row) * total + extraCount + mode * columnCount;
-        for (let column = 0; column < columnCount; column++)
-          combined[at + column] = combination[row * columnCount + column];
+        map.set(combination.subarray(row * columnCount, (row + 1) * columnCount), at);
       }
     }
-    spreadInto(combined, covariance, count, total, spread);
-    if (!factorCholeskyInto(spread, count, lower)) return false;
+    spreadInto(map, covariance, count, total, spread);
+    regular = factorCholeskyInto(spread, count, lower);
     factored = combination.slice();
-    return true;
   };
-  return (parameters, out) => {
-    if (!factor(statement.combination(parameters))) {
-      factored = null;
-      out.fill(Number.NaN);
-      return;
-    }
+  return (parameters) => {
+    factor(statement.combination(parameters));
     for (let i = 0; i < count; i++) {
-      let sum = 0;
-      for (let j = 0; j < total; j++) sum += combined[i * total + j] * values[j];
-      out[i] = sum;
+      out[i] = 0;
+      for (let j = 0; j < total; j++) out[i] += map[i * total + j] * values[j];
     }
     const target = statement.target(parameters, nodes);
     if (target !== null) {
-      const averages = averageOverModes(target, modes);
+      const averages = averageOverModes(target, modes, modeCount);
       for (let i = extraCount; i < count; i++) out[i] -= averages[i - extraCount];
     }
-    solveLowerInPlace(lower, count, out);
+    return { values: out, lower: regular ? lower : null };
+  };
+}
+
+/** Writes C^(−1/2) h for given parameters; NaN where the statement has no value. */
+function createWhitener(problem: StatementProblem): (parameters: Float64Array, out: Float64Array) => void {
+  const evaluate = createResiduals(problem);
+  return (parameters, out) => {
+    const { values, lower } = evaluate(parameters);
+    if (lower === null) {
+      out.fill(Number.NaN);
+      return;
+    }
+    out.set(values);
+    solveLowerInPlace(lower, values.length, out);
   };
 }
 
@@ -187,6 +207,20 @@ function rankStarts(
     .sort((a, b) => a.distance - b.distance)
     .slice(0, POLISHED_STARTS)
     .map(({ start }) => start);
+}
+
+/** Columns of the free parameters among those of all. */
+function spreadColumns(
+  jacobian: Float64Array,
+  rows: number,
+  free: readonly number[],
+  all: number,
+): Float64Array {
+  const out = new Float64Array(rows * all);
+  for (let row = 0; row < rows; row++) {
+    for (let i = 0; i < free.length; i++) out[row * all + free[i]] = jacobian[row * free.length + i];
+  }
+  return out;
 }
 
 /** Typical size of each parameter over the starts. */

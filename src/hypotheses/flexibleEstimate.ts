@@ -1,10 +1,12 @@
 /**
  * The flexible fit a statement is compared with: the fit's own estimator on the fit's own tracks and blocks, with the
- * coefficients in question given a moderate spline without roughness penalty, so that their smooth averages carry no
- * smoothing bias.
+ * coefficients in question given a moderate spline that is hardly penalised, so that their smooth averages carry no
+ * smoothing bias, and with the recording cut into short stretches as blocks. The other coefficients keep the study's shape, except that a finer spline is brought down to the
+ * same moderate one: its details could not be told from those averages anyway.
  */
 
 import type { FitDocument } from '../documents/FitDocument.js';
+import type { Blocks } from '../estimation/blocks.js';
 import { chooseEstimator } from '../estimation/choose.js';
 import type { Estimate, EstimationPlan, FieldPlan } from '../estimation/Estimate.js';
 import { planEstimation } from '../estimation/planEstimation.js';
@@ -17,16 +19,24 @@ import type { VisitedRegion } from '../tracks/visitedRegion.js';
 /** The planned coefficients, by their names in the plan: `force` is the drift at first order, `noise` the diffusion. */
 export type PlannedField = 'force' | 'friction' | 'noise';
 
-export interface FlexibleEstimate {
+export interface FlexiblePlan {
+  /** The tracks that are long enough. */
   readonly tracks: TrackSet;
   readonly plan: EstimationPlan;
-  readonly estimate: Estimate;
   /** Basis of the coefficients in question, over which modes are formed. */
   readonly basis: BasisSpec;
 }
 
-const SPLINES = [14, 7, 4] as const; // per axis, by dimensions: room for the modes that are looked at, and some more
-const POSITIONS_PER_FUNCTION = 60; // fewer and the unpenalised regression gets ragged
+export interface FlexibleEstimate extends FlexiblePlan {
+  readonly estimate: Estimate;
+}
+
+type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
+
+const SPLINES = [14, 6, 4] as const; // per axis, by dimensions: room for the modes that are looked at, and some more
+const MOST_STRETCHES = 250; // degrees of freedom of the covariance; more hardly narrow an F law
+const SHORTEST_STRETCH = 40; // positions: ten times what a difference spans
+const POSITIONS_PER_FUNCTION = 60; // fewer and the regression gets ragged
 
 /**
  * Estimates anew with the named coefficients flexible.
@@ -39,26 +49,56 @@ export function estimateFlexibly(
   fit: FitDocument,
   tracks: TrackSet,
   flexible: readonly PlannedField[],
-  frictionForm: FieldForm = fit.study.frictionForm,
+  frictionForm?: FieldForm,
 ): FlexibleEstimate {
-  const { order } = fit.model;
-  const usable = checkTrackLengths(tracks, order).tracks;
-  const { relaxationTime } = fit.survey;
-  const memory = typeof relaxationTime === 'number' ? relaxationTime : null;
-  const study = { ...fit.study, frictionForm: frictionForm as typeof fit.study.frictionForm };
-  const planned = planEstimation(usable, study, order, memory, fit.visited);
-  const basis = testBasis(fit.visited, usable);
-  const free = (field: FieldPlan): FieldPlan => ({ ...field, basis, smoothing: 'light' });
-  const plan: EstimationPlan = {
-    ...planned,
-    force: flexible.includes('force') ? free(planned.force) : planned.force,
-    friction: flexible.includes('friction') ? free(planned.friction) : planned.friction,
-    noise: flexible.includes('noise') ? free(planned.noise) : planned.noise,
-  };
-  return { tracks: usable, plan, estimate: chooseEstimator(fit.study.estimator)(usable, plan), basis };
+  const planned = planFlexibly(fit, tracks, flexible, frictionForm);
+  return { ...planned, estimate: chooseEstimator(fit.study.estimator)(planned.tracks, planned.plan) };
 }
 
-function testBasis(visited: VisitedRegion, tracks: TrackSet): BasisSpec {
+/** What `estimateFlexibly` estimates. */
+export function planFlexibly(
+  fit: FitDocument,
+  tracks: TrackSet,
+  flexible: readonly PlannedField[],
+  frictionForm: FieldForm = fit.study.frictionForm,
+): FlexiblePlan {
+  const { order } = fit.model;
+  const usable = checkTrackLengths(tracks, order).tracks;
+  const study = { ...fit.study, frictionForm: frictionForm as typeof fit.study.frictionForm };
+  const planned = planEstimation(usable, study, order, null, fit.visited);
+  const basis = testBasis(fit.visited, usable);
+  const loosen = (name: PlannedField): FieldPlan => {
+    const field = planned[name];
+    const isFine = field.basis?.kind === 'spline' && countFunctions(field.basis) >= countFunctions(basis);
+    return flexible.includes(name) || isFine ? { ...field, basis, smoothing: 'light' } : field;
+  };
+  const plan: EstimationPlan = {
+    ...planned,
+    force: loosen('force'),
+    friction: loosen('friction'),
+    noise: loosen('noise'),
+    blocks: cutStretches(usable, MOST_STRETCHES),
+  };
+  return { tracks: usable, plan, basis };
+}
+
+/**
+ * Stretches of equal numbers of positions as blocks. They may be shorter than the memory of the motion, because what an
+ * estimating equation adds up is new to its past: in a right model its terms are uncorrelated beyond the two or three
+ * frames a difference spans, however long velocities last.
+ */
+export function cutStretches(tracks: TrackSet, most: number): Blocks {
+  const n = countPositions(tracks);
+  const count = Math.max(1, Math.min(most, Math.floor(n / SHORTEST_STRETCH)));
+  const ofPosition = Int32Array.from({ length: n }, (_, row) => Math.floor((row * count) / n));
+  return { count, ofPosition, kind: 'stretches' };
+}
+
+function countFunctions(spline: SplineSpec): number {
+  return spline.counts.reduce((product, count) => product * count, 1);
+}
+
+function testBasis(visited: VisitedRegion, tracks: TrackSet): SplineSpec {
   const { dimensions: d, periods } = tracks;
   const affordable = Math.floor((countPositions(tracks) / POSITIONS_PER_FUNCTION) ** (1 / d));
   const count = Math.max(4, Math.min(SPLINES[d - 1], affordable));

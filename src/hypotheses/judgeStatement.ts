@@ -29,7 +29,7 @@ export interface Verdict {
   readonly problem: StatementProblem;
 }
 
-const DETAIL = [1, 2, 4, 8] as const; // modes beyond those the parameters need, from smooth to fine
+const DETAIL = [1, 2, 3, 5] as const; // modes beyond those the parameters need, from smooth to fine; finer ones live at the edges
 const BLOCKS_PER_COMPARISON = 5; // fewer and the covariance is known too badly to weigh by
 
 /**
@@ -48,10 +48,9 @@ export function judgeStatement(
   const parameters = statement.parameterNames.length;
   const freedom = contrasts.blocks - 1;
   const most = Math.max(parameters + 1, Math.floor(contrasts.blocks / BLOCKS_PER_COMPARISON));
-  const needed = Math.max(0, Math.ceil((parameters - contrasts.extraCount) / rows));
-  const counts = DETAIL.map((extra) => Math.min(modes.count, needed + extra)).filter(
-    (count, i, all) =>
-      (i === 0 || count > all[i - 1]) && (i === 0 || contrasts.extraCount + count * rows <= most),
+  const needed = rows === 0 ? 0 : Math.max(0, Math.ceil((parameters - contrasts.extraCount) / rows));
+  const counts = DETAIL.map((extra) => (rows === 0 ? 0 : Math.min(modes.count, needed + extra))).filter(
+    (count, i, all) => i === 0 || (count > all[i - 1] && contrasts.extraCount + count * rows <= most),
   );
   const fits = counts.map((modeCount) => {
     const problem = { statement, contrasts, nodes, modes, modeCount };

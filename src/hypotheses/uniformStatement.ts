@@ -1,6 +1,7 @@
 /** Uniformity: a coefficient is the same everywhere; what it is is left to the data. */
 
 import type { Model } from '../fields/CoefficientField.js';
+import { meanOf } from '../numerics/statistics/meanOf.js';
 import { distinctColumnNames, readColumns } from './readColumns.js';
 import { identity, type Statement } from './Statement.js';
 
@@ -15,17 +16,13 @@ export function createUniformStatement(
     columnNames: names,
     residualNames: names,
     extraNames: [],
+    reportNames: [],
     columns: (at, places) => readColumns(at, names, places),
     extras: () => [],
+    reports: () => [],
     combination: () => identity(names.length),
     target: (parameters, places) =>
       names.map((_, j) => new Float64Array(places.length / model.dimensions).fill(parameters[j])),
     starts: (columns) => [Float64Array.from(columns, meanOf)],
   };
-}
-
-function meanOf(values: Float64Array): number {
-  let sum = 0;
-  for (let i = 0; i < values.length; i++) sum += values[i];
-  return sum / values.length;
 }

@@ -13,6 +13,8 @@ export interface PathPass {
 export interface PathObserver {
   /** Innovation over its standard deviation, per row and axis; NaN where a position starts the filter. */
   readonly innovations?: Float64Array;
+  /** Variance of the innovation, localization error included, length²; NaN where there is none. */
+  readonly innovationVariances?: Float64Array;
   /** Smoothed velocity per row and axis, length/time; NaN at first order. */
   readonly velocities?: Float64Array;
   /** Its posterior variance, length²/time². */

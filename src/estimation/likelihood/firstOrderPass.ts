@@ -92,6 +92,7 @@ function filterTrack(
     tape.startErrorVariance[axis] = pointErrors ? pointErrors[at] ** 2 : errorVariance[axis];
     variance[axis] = tape.startErrorVariance[axis];
     if (observer?.innovations) observer.innovations[at] = NaN;
+    if (observer?.innovationVariances) observer.innovationVariances[at] = NaN;
   }
   for (let row = start + 1; row < end; row++) {
     const interval = times[row] - times[row - 1];
@@ -133,6 +134,7 @@ function filterTrack(
       tape.update[slot + 2] = gain;
       logLikelihood -= (Math.log(total) + (innovation * innovation) / total) / 2;
       if (observer?.innovations) observer.innovations[at] = innovation / Math.sqrt(total);
+      if (observer?.innovationVariances) observer.innovationVariances[at] = total;
       mean[axis] += gain * innovation;
       variance[axis] *= spread / total;
     }

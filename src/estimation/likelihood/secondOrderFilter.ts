@@ -28,6 +28,7 @@ export function filterTrack(
   const pointErrors = layout.errorOffset < 0 && state.setting.knownError === null ? localizationErrors : null;
   const d = layout.dimensions;
   const innovations = observer?.innovations;
+  const variances = observer?.innovationVariances;
   let logLikelihood = 0;
   let node = 0;
   for (let axis = 0; axis < d; axis++) {
@@ -39,6 +40,7 @@ export function filterTrack(
     filtered[axis * 5 + 3] = 0;
     filtered[axis * 5 + 4] = diffuse[axis];
     if (innovations) innovations[at] = NaN;
+    if (variances) variances[at] = NaN;
   }
   // What the last step read decides how finely the next is divided: known before its position is.
   growTape(tape, 0, 0);
@@ -116,6 +118,7 @@ export function filterTrack(
       tape.update[slot + 5] = filtered[base + 4];
       if (counted) logLikelihood -= (Math.log(variance) + (innovation * innovation) / variance) / 2;
       if (innovations) innovations[at] = counted ? innovation / Math.sqrt(variance) : NaN;
+      if (variances) variances[at] = counted ? variance : NaN;
       const left = spread / variance;
       filtered[base] += gainQ * innovation;
       filtered[base + 1] += gainV * innovation;
