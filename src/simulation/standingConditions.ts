@@ -76,8 +76,11 @@ export async function assessConditions(
 
 /** The failing conditions as warnings. */
 export function warnOfConditions(conditions: readonly Condition[]): Warning[] {
-  return conditions
-    .filter(({ verdict }) => verdict === 'fails')
+  const failing = conditions.filter(({ verdict }) => verdict === 'fails');
+  // Friction that is not positive is not away from zero either; saying so once is enough.
+  const isNotPositive = failing.some(({ name }) => name === 'friction-positive');
+  return failing
+    .filter(({ name }) => !(isNotPositive && name === 'friction-away-from-zero'))
     .map(({ name, note }) => ({
       code: `${STANDING_CODE}${name}`,
       message: `no stationary law is assured: ${note}`,

@@ -6,6 +6,7 @@ import { assessStanding } from '../../simulation/assessStanding.js';
 import { buildFirstOrderScenario } from '../../simulation/buildFirstOrderScenario.js';
 import { buildScenario } from '../../simulation/buildScenario.js';
 import { warnOfConditions } from '../../simulation/standingConditions.js';
+import { formatUnit } from '../../units.js';
 import type { Call } from '../commandTable.js';
 import { readFit } from '../documents.js';
 import { checkResultPlace, deliver, formatJson } from '../results.js';
@@ -47,7 +48,7 @@ export async function buildTitledScenario(
 const VERDICTS = { holds: 'holds', fails: 'FAILS', unknown: 'cannot be told' } as const;
 
 /** The conditions one by one, how fast the law is approached, and what a first-order limit leaves out. */
-function tellStanding({ standing, provenance }: Scenario, terminal: Terminal): void {
+function tellStanding({ standing, provenance, units }: Scenario, terminal: Terminal): void {
   const { limit } = provenance;
   if (typeof limit === 'object' && limit !== null && !Array.isArray(limit)) {
     const [median, high] = [limit.neglectedMedian, limit.neglectedHigh].map(
@@ -63,10 +64,11 @@ function tellStanding({ standing, provenance }: Scenario, terminal: Terminal): v
   const relaxation = standing?.relaxation;
   if (!relaxation) return;
   const { time, low, high, samples, note } = relaxation;
+  const unit = formatUnit('time', units);
   if (time === null || samples === null) terminal.note(`relaxation of the whole process: ${note}`);
   else {
     terminal.note(
-      `relaxation of the whole process: ${time} (${low} to ${high ?? 'unbounded'}); a recording of this size is worth ${samples.value} independent samples (${samples.low} to ${samples.high})`,
+      `relaxation of the whole process: ${time} (${low} to ${high ?? 'unbounded'})${unit === '' ? '' : ` ${unit}`}; a recording of this size is worth ${samples.value} independent samples (${samples.low} to ${samples.high})`,
     );
   }
 }
