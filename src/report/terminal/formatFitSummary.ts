@@ -1,6 +1,6 @@
 /** The fitted coefficients in short, for people at a terminal. */
 
-import type { FitDocument } from '../../documents/FitDocument.js';
+import type { FitResult } from '../../documents/FitDocument.js';
 import { evaluateFit } from '../../uncertainty/evaluateFit.js';
 import { formatUnit } from '../../units.js';
 import { drawSparkline } from '../charts/sparkline.js';
@@ -30,7 +30,7 @@ import { PLAIN_STYLE, type SummaryStyle } from './SummaryStyle.js';
 const COURSE_WIDTHS = [24, 12, 8];
 
 /** The coefficients in the middle of the visited region, their range over it, and their course along each axis. */
-export function formatFitSummary(fit: FitDocument, style: SummaryStyle = PLAIN_STYLE): string {
+export function formatFitSummary(fit: FitResult, style: SummaryStyle = PLAIN_STYLE): string {
   const { dim } = style.colors;
   const { width } = style;
   const region = fit.visited;
