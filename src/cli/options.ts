@@ -259,6 +259,11 @@ export const OPTIONS = {
     meaning:
       'also write momentum and kinetic energy at each position, with errors, as CSV (mass 1 unless given)',
   },
+  fit: {
+    flags: '--fit <FIT>',
+    meaning:
+      'fit file (second order, by likelihood): momenta come from its smoother, with their posterior errors and the kinetic temperature by place',
+  },
   at: {
     flags: '--at <POINTS>',
     meaning:
