@@ -5,21 +5,13 @@
 
 import type { Scenario } from '../documents/Scenario.js';
 import { UsageError } from '../errors.js';
-import type { BasisSpec } from '../fields/Basis.js';
-import type { FieldForm, FieldName } from '../fields/CoefficientField.js';
-import { createBasis } from '../fields/createBasis.js';
+import type { FieldForm } from '../fields/CoefficientField.js';
 import { type FormulaReader, loadFormulaReader } from '../fields/formula.js';
-import {
-  type BasisField,
-  COEFFICIENT_NAMES,
-  type Coefficient,
-  countComponents,
-  isBasisField,
-} from './coefficients.js';
+import { COEFFICIENT_NAMES, type Coefficient, countComponents, isBasisField } from './coefficients.js';
+import { compileSlots } from './compileCoefficients.js';
 import { continuePlaceInto, fadeWeight } from './continuation.js';
 import { findFadeTargets, type Slot } from './fadeTargets.js';
 import { clampToPositive, exponentiateSymmetricPart, fillMatrix } from './smallMatrices.js';
-import { compileSplineCells, type SumEvaluator } from './splineCells.js';
 
 /** How friction and noise are laid out: one number, one per axis, or a full d × d matrix (row-major). */
 export type BathForm = 'scalar' | 'axes' | 'matrix';
@@ -42,6 +34,8 @@ export interface ScenarioEvaluator {
    * @param noise  length `bathSize`: noise or diffusion
    */
   evaluateInto(place: Float64Array, force: Float64Array, friction: Float64Array, noise: Float64Array): void;
+  /** Noise or diffusion alone, for less than half the price. */
+  noiseInto(place: Float64Array, noise: Float64Array): void;
   /** How many evaluations met a negative friction or noise, which is replaced by zero. */
   readonly floored: { friction: number; noise: number };
 }
@@ -89,7 +83,7 @@ function assembleEvaluator(
     total += count;
   }
   const raw = new Float64Array(total);
-  const writers = compileSlots(scenario, slots, draw, readFormula, raw);
+  const writers = compileSlots(scenario, slots, draw, 0, readFormula, raw);
   const [forceSlot, frictionSlot] = slots;
   const noiseSlot = slots[slots.length - 1];
   const forms =
@@ -103,6 +97,14 @@ function assembleEvaluator(
   const writeNoise = createBathWriter(noiseSlot, raw, d, bathForm, floors);
   const targets =
     scenario.continuation.kind === 'fade' ? findFadeTargets(scenario, slots, writers, raw) : null;
+  const noiseWriters = compileSlots(
+    scenario,
+    [noiseSlot],
+    draw,
+    countNumbers(slots.slice(0, -1)),
+    readFormula,
+    raw,
+  );
   const { kind, width, stiffness } = scenario.continuation;
   const restoring = kind === 'hold' ? 0 : (stiffness ?? 0);
 
@@ -128,6 +130,20 @@ function assembleEvaluator(
     if (writeFriction !== null && writeFriction(friction)) floored.friction++;
     if (writeNoise(noise)) floored.noise++;
   };
+  const noiseInto: ScenarioEvaluator['noiseInto'] = (at, noise) => {
+    let outside = false;
+    let where = at;
+    if (!isFree) {
+      outside = continuePlaceInto(scenario, at, place, excess);
+      where = place;
+    }
+    for (let i = 0; i < noiseWriters.length; i++) noiseWriters[i](where, raw, 0);
+    if (outside && targets !== null) {
+      const weight = fadeWeight(excess, width ?? 1);
+      for (let i = noiseSlot.offset; i < total; i++) raw[i] = targets[i] + weight * (raw[i] - targets[i]);
+    }
+    if (writeNoise(noise)) floored.noise++;
+  };
   return {
     order,
     dimensions: d,
@@ -135,157 +151,22 @@ function assembleEvaluator(
     bathSize,
     uniformBath: slots.slice(1).every(({ coefficient }) => isUniform(coefficient)),
     evaluateInto,
+    noiseInto,
     floored,
   };
+}
+
+/** How many numbers of a draw belong to the slots. */
+function countNumbers(slots: readonly Slot[]): number {
+  return slots.reduce(
+    (sum, { coefficient }) => sum + (isBasisField(coefficient) ? coefficient.coefficients.flat().length : 0),
+    0,
+  );
 }
 
 function isUniform(coefficient: Coefficient): boolean {
   if ('values' in coefficient) return true;
   return isBasisField(coefficient) && coefficient.basis.kind === 'constant';
-}
-
-/** One writer per group of components that share a basis, and one per formula; constants are written once. */
-function compileSlots(
-  scenario: Scenario,
-  slots: readonly Slot[],
-  draw: ArrayLike<number> | null,
-  readFormula: FormulaReader | null,
-  raw: Float64Array,
-): SumEvaluator[] {
-  const writers: SumEvaluator[] = [];
-  const groups = new Map<string, { spec: BasisSpec; weights: number[][]; targets: number[] }>();
-  let used = 0;
-  for (const slot of slots) {
-    const { coefficient, offset, name } = slot;
-    if (isBasisField(coefficient)) {
-      const rows = takeCoefficients(scenario, coefficient, name, draw, used);
-      used += rows.flat().length;
-      const key = JSON.stringify(coefficient.basis);
-      const group = groups.get(key) ?? { spec: coefficient.basis, weights: [], targets: [] };
-      rows.forEach((row, component) => {
-        group.weights.push(row);
-        group.targets.push(offset + component);
-      });
-      groups.set(key, group);
-    } else if ('formulas' in coefficient) {
-      coefficient.formulas.forEach((text, component) => {
-        writers.push(
-          compileFormula(
-            scenario,
-            text,
-            `coefficients.${name}.formulas[${component}]`,
-            offset + component,
-            readFormula,
-          ),
-        );
-      });
-    } else {
-      // Constants share the writers' path, because fading and links overwrite the raw sums.
-      coefficient.values.forEach((value, component) => {
-        writers.push((_place, out) => {
-          out[offset + component] = value;
-        });
-      });
-    }
-  }
-  for (const { spec, weights, targets } of groups.values()) {
-    writers.push(scatter(compileSums(spec, scenario.dimensions, weights), targets, raw.length));
-  }
-  for (const slot of slots) {
-    if (isBasisField(slot.coefficient) && slot.coefficient.link === 'log') writers.push(exponential(slot));
-  }
-  return writers;
-}
-
-function takeCoefficients(
-  scenario: Scenario,
-  field: BasisField,
-  name: FieldName,
-  draw: ArrayLike<number> | null,
-  start: number,
-): number[][] {
-  const basis = createBasis(field.basis as BasisSpec, scenario.dimensions);
-  let next = start;
-  return field.coefficients.map((row, component) => {
-    if (row.length !== basis.functionCount) {
-      const at = `coefficients.${name}.coefficients[${component}]`;
-      throw new UsageError(
-        `scenario: ${at}: has ${row.length} numbers but its basis has ${basis.functionCount} functions`,
-        { at },
-      );
-    }
-    return row.map((value) => (draw === null ? value : draw[next++]));
-  });
-}
-
-/** Weighted sums of one basis, one after another from `outOffset` on. */
-function compileSums(spec: BasisSpec, d: number, weights: readonly (readonly number[])[]): SumEvaluator {
-  const basis = createBasis(spec, d);
-  if (spec.kind === 'constant') {
-    return (_place, out, outOffset) => {
-      for (let sum = 0; sum < weights.length; sum++) out[outOffset + sum] = weights[sum][0];
-    };
-  }
-  if (spec.kind === 'spline') {
-    const cells = compileSplineCells(basis, spec, weights);
-    if (cells !== null) return cells;
-  }
-  const flat = Float64Array.from(weights.flat());
-  const k = basis.functionCount;
-  const indices = new Int32Array(basis.support);
-  const values = new Float64Array(basis.support);
-  return (place, out, outOffset) => {
-    const count = basis.evaluateInto(place, 0, indices, values);
-    for (let sum = 0; sum < weights.length; sum++) {
-      let total = 0;
-      for (let i = 0; i < count; i++) total += flat[sum * k + indices[i]] * values[i];
-      out[outOffset + sum] = total;
-    }
-  };
-}
-
-/** Sends sums to their places; straight through where those are neighbours. */
-function scatter(evaluate: SumEvaluator, targets: readonly number[], size: number): SumEvaluator {
-  if (targets.every((target, i) => target === targets[0] + i)) {
-    return (place, out) => evaluate(place, out, targets[0]);
-  }
-  const sums = new Float64Array(size);
-  const places = Int32Array.from(targets);
-  return (place, out) => {
-    evaluate(place, sums, 0);
-    for (let i = 0; i < places.length; i++) out[places[i]] = sums[i];
-  };
-}
-
-function compileFormula(
-  scenario: Scenario,
-  text: string,
-  at: string,
-  target: number,
-  readFormula: FormulaReader | null,
-): SumEvaluator {
-  if (readFormula === null) throw new Error('a scenario with formulas needs the formula reader');
-  const names = Object.keys(scenario.parameters);
-  const parameters = Float64Array.from(Object.values(scenario.parameters));
-  try {
-    const formula = readFormula(text, {
-      coordinates: ['x', 'y', 'z'].slice(0, scenario.dimensions),
-      parameters: names,
-    });
-    const { evaluate } = formula;
-    return (place, out) => {
-      out[target] = evaluate(place, 0, parameters);
-    };
-  } catch (error) {
-    if (!(error instanceof UsageError)) throw error;
-    throw new UsageError(`scenario: ${at}: ${error.message}`, { ...error.facts, at });
-  }
-}
-
-function exponential({ offset, count }: Slot): SumEvaluator {
-  return (_place, out) => {
-    for (let i = offset; i < offset + count; i++) out[i] = Math.exp(out[i]);
-  };
 }
 
 /** Turns raw components into the common layout; returns whether a negative value was replaced by zero. */

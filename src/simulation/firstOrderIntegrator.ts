@@ -42,7 +42,6 @@ export function createItoCoefficients(
   const unused = new Float64Array(bathSize);
   const diffusion = new Float64Array(bathSize);
   const full = new Float64Array(d * d);
-  const spareForce = new Float64Array(d);
   const shifted = new Float64Array(d);
   const above = new Float64Array(bathSize);
   const below = new Float64Array(bathSize);
@@ -60,9 +59,9 @@ export function createItoCoefficients(
     shifted.set(place);
     for (let j = 0; j < d; j++) {
       shifted[j] = place[j] + delta;
-      evaluator.evaluateInto(shifted, spareForce, unused, above);
+      evaluator.noiseInto(shifted, above);
       shifted[j] = place[j] - delta;
-      evaluator.evaluateInto(shifted, spareForce, unused, below);
+      evaluator.noiseInto(shifted, below);
       shifted[j] = place[j];
       const factor = share / (2 * delta);
       if (bathForm === 'matrix') {
@@ -80,7 +79,7 @@ export function createItoCoefficients(
       if (share !== 0) addDivergence(place, drift);
     },
     sigmaInto(place, sigma) {
-      evaluator.evaluateInto(place, spareForce, unused, diffusion);
+      evaluator.noiseInto(place, diffusion);
       readSigma(sigma);
     },
   };

@@ -29,7 +29,7 @@ interface Case {
 const TRAP: Process = {
   dimensions: 2,
   tracks: 20,
-  frames: 200,
+  frames: 150,
   interval: 0.2,
   substeps: 8,
   force: (place, out) => {
@@ -45,14 +45,14 @@ const TRAP: Process = {
 
 const BUMP: Process = {
   ...TRAP,
-  frames: 500,
+  frames: 400,
   friction: (place, out) => void out.fill(bump(place)),
   noise: (place, out) => void out.fill(2 * bump(place)),
 };
 
 const STIRRED: Process = {
   ...TRAP,
-  frames: 500,
+  frames: 400,
   force: (place, out) => {
     out[0] = -place[0] - 0.3 * place[1];
     out[1] = -place[1] + 0.3 * place[0];
@@ -68,7 +68,7 @@ const CASES: readonly Case[] = [
     isRight: true,
     process: {
       ...STIRRED,
-      frames: 300,
+      frames: 200,
       friction: (place, out) => void out.fill(0.8 + 0.1 * (place[0] ** 2 + place[1] ** 2)),
       noise: (place, out) => void out.fill(1.6 + 0.2 * (place[0] ** 2 + place[1] ** 2)),
     },
@@ -80,7 +80,7 @@ const CASES: readonly Case[] = [
     process: {
       ...TRAP,
       dimensions: 1,
-      frames: 400,
+      frames: 200,
       periods: [4],
       force: (place, out) => {
         out[0] = 0.3 + 0.8 * Math.sin((Math.PI / 2) * place[0]);
@@ -100,7 +100,7 @@ const CASES: readonly Case[] = [
     process: {
       dimensions: 1,
       tracks: 20,
-      frames: 300,
+      frames: 150,
       interval: 0.1,
       substeps: 40,
       force: (place, out) => {
@@ -118,7 +118,7 @@ const CASES: readonly Case[] = [
   {
     name: 'bump of friction and noise, automatic splines',
     isRight: true,
-    process: { ...BUMP, frames: 300 },
+    process: { ...BUMP, frames: 200 },
     study: { order: 'second', force: 'linear' },
   },
   {
