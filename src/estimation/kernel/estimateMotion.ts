@@ -9,6 +9,7 @@ import { joinInfluences, settleErrorVariance } from '../differences/solveForceFr
 import type { EstimationPlan } from '../Estimate.js';
 import type { BinnedMoments } from './BinnedMoments.js';
 import { chooseBandwidth, PARTS } from './chooseBandwidth.js';
+import { fewBlockFactors } from './fewBlocks.js';
 import { createFieldSmoother, type FieldSmoother } from './fieldSmoother.js';
 import type { KernelGrid } from './grid.js';
 import { addCoefficients, frictionField, type LocalField, vectorField } from './localFields.js';
@@ -23,13 +24,15 @@ import {
 } from './motionMoments.js';
 import { type PlugInData, referenceBandwidth, startBandwidth } from './plugInStart.js';
 import { explainAway, ROUGH_TOLERANCE, solveFields } from './solveFields.js';
-import { createWindows } from './windows.js';
+import { createWindows, type KnotWindows } from './windows.js';
 
 export interface MotionEstimate {
   /** Force or drift per axis, then friction per component: K values each, or one where the field does not vary. */
   readonly parameters: Float64Array;
   /** Shape (B, p₁). */
   readonly influences: Float64Array;
+  /** Shape (B, p₁): what the influences are to be multiplied by where few blocks carry the estimate. */
+  readonly factors: Float64Array;
   /** Second order: localization variance per axis and its influences, shape (B, d). */
   readonly errorVariance: Float64Array | null;
   readonly errorInfluences: Float64Array | null;
@@ -86,6 +89,7 @@ export function estimateMotion(tracks: TrackSet, plan: EstimationPlan, grid: Ker
   };
 
   let regression: Regression;
+  let blockCounts: readonly Float64Array[];
   let result: Pick<MotionEstimate, 'influences' | 'errorVariance' | 'errorInfluences'>;
   let settled = true;
   if (second) {
@@ -106,11 +110,9 @@ export function estimateMotion(tracks: TrackSet, plan: EstimationPlan, grid: Ker
     settled = found.converged;
     const coefficients = coefficientsOf(regression);
     const corrected = design.lag === 1 ? found.variance : null;
-    const influences = blockInfluences(
-      regression,
-      fields,
-      collectBlockResiduals(tracks, plan, design, grid, coefficients, corrected),
-    );
+    const { residuals, counts } = collectBlockResiduals(tracks, plan, design, grid, coefficients, corrected);
+    blockCounts = counts;
+    const influences = blockInfluences(regression, fields, residuals);
     const shift = corrected && !given ? errorShift(regression, fields, coefficients, samplingInterval) : null;
     const joined = joinInfluences(
       { parameters: regression.parameters, influences },
@@ -123,7 +125,9 @@ export function estimateMotion(tracks: TrackSet, plan: EstimationPlan, grid: Ker
     result = { ...joined, errorVariance: found.variance };
   } else {
     regression = solve(plain, false);
-    const residuals = collectBlockResiduals(tracks, plan, design, grid, coefficientsOf(regression), null);
+    const coefficients = coefficientsOf(regression);
+    const { residuals, counts } = collectBlockResiduals(tracks, plan, design, grid, coefficients, null);
+    blockCounts = counts;
     result = {
       influences: blockInfluences(regression, fields, residuals),
       errorVariance: null,
@@ -135,6 +139,7 @@ export function estimateMotion(tracks: TrackSet, plan: EstimationPlan, grid: Ker
   return {
     ...result,
     parameters: regression.parameters,
+    factors: blockFactors(fields, grid, windows, bandwidths, blockCounts),
     bandwidths: byName(bandwidths),
     starts: byName(starts),
     counts: plain.counts,
@@ -193,6 +198,30 @@ function blockInfluences(
     influences.set(packParameters(fields, values, regression.moments.size), block * p);
   });
   return influences;
+}
+
+/** Factors for few blocks in the layout of the influences, shape (B, p₁). */
+function blockFactors(
+  fields: readonly LocalField[],
+  grid: KernelGrid,
+  windows: KnotWindows,
+  bandwidths: readonly (readonly number[])[],
+  counts: readonly Float64Array[],
+): Float64Array {
+  const { size } = grid;
+  const factors = fields.map(({ varies }, i) =>
+    fewBlockFactors(grid, windows, varies ? bandwidths[i] : null, counts),
+  );
+  const rows = counts.map((_, block) => {
+    const values = fields.map(({ components }, i) =>
+      Float64Array.from(
+        { length: components.length * size },
+        (__, at) => factors[i][block * size + (at % size)],
+      ),
+    );
+    return packParameters(fields, values, size);
+  });
+  return Float64Array.from(rows.flatMap((row) => Array.from(row)));
 }
 
 /** Derivative of the parameters with respect to each axis' localization variance, shape (d, p₁). */

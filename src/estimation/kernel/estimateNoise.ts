@@ -10,6 +10,7 @@ import { noisePairs } from '../differences/residualProducts.js';
 import type { EstimationPlan } from '../Estimate.js';
 import { chooseBandwidth, PARTS } from './chooseBandwidth.js';
 import type { MotionEstimate } from './estimateMotion.js';
+import { fewBlockFactors } from './fewBlocks.js';
 import { createFieldSmoother } from './fieldSmoother.js';
 import type { KernelGrid } from './grid.js';
 import { noiseField } from './localFields.js';
@@ -29,6 +30,8 @@ export interface NoiseEstimate {
   readonly parameters: Float64Array;
   /** Shape (B, p₂). */
   readonly influences: Float64Array;
+  /** Shape (B, p₂): what the influences are to be multiplied by where few blocks carry the estimate. */
+  readonly factors: Float64Array;
   readonly bandwidths: Readonly<Record<string, readonly number[]>>;
   readonly starts: Readonly<Record<string, readonly number[]>>;
   /** Length K: rows that each knot stands for. */
@@ -77,7 +80,10 @@ export function estimateNoise(
 
   const p2 = pack(values).length;
   const influences = new Float64Array(blocks * p2);
-  collectNoiseResiduals(tracks, plan, grid, rows, values).forEach((vector, block) => {
+  const blockFactors = new Float64Array(blocks * p2);
+  const { residuals, counts } = collectNoiseResiduals(tracks, plan, grid, rows, values);
+  const factors = fewBlockFactors(grid, windows, field.varies ? bandwidth : null, counts);
+  residuals.forEach((vector, block) => {
     for (let component = 0; component < components; component++) {
       for (let knot = 0; knot < grid.size; knot++) {
         const base = (component * grid.size + knot) * p1;
@@ -87,10 +93,13 @@ export function estimateNoise(
       }
     }
     influences.set(pack(solveFields(moments, smoothers, vector).values[0]), block * p2);
+    const own = factors.subarray(block * grid.size, (block + 1) * grid.size);
+    blockFactors.set(pack(values.map((_, i) => own[i % grid.size])), block * p2);
   });
   return {
     parameters: pack(values),
     influences,
+    factors: blockFactors,
     bandwidths: field.varies ? { [field.name]: bandwidth } : {},
     starts: field.varies ? { [field.name]: start } : {},
     counts: moments.counts,

@@ -201,12 +201,19 @@ export function errorDerivatives(
   });
 }
 
+/** What each block leaves unexplained. */
+export interface BlockResiduals {
+  /** One vector of shape (K, Z, T) per block. */
+  readonly residuals: readonly Float64Array[];
+  /** Per block, length K: rows that each knot stands for. */
+  readonly counts: readonly Float64Array[];
+}
+
 /**
  * Unexplained moments of every block.
  *
  * @param coefficients  shape (K, Z, T)
  * @param variance  localization variance per axis that the moments are corrected for, or null where they are not
- * @returns one vector of shape (K, Z, T) per block
  */
 export function collectBlockResiduals(
   tracks: TrackSet,
@@ -215,10 +222,12 @@ export function collectBlockResiduals(
   grid: KernelGrid,
   coefficients: Float64Array,
   variance: Float64Array | null,
-): Float64Array[] {
+): BlockResiduals {
   const { instruments: Z } = design;
   const { dimensions: T, samplingInterval: dt } = tracks;
-  const residuals = Array.from({ length: plan.blocks.count }, () => new Float64Array(coefficients.length));
+  const { count, ofPosition } = plan.blocks;
+  const residuals = Array.from({ length: count }, () => new Float64Array(coefficients.length));
+  const counts = Array.from({ length: count }, () => new Float64Array(grid.size));
   const local = new Float64Array(Z * T);
   const rest = new Float64Array(T);
   visitMotionRows(tracks, design, grid, (row, at, seen, z, x, responses) => {
@@ -231,8 +240,9 @@ export function collectBlockResiduals(
       rest[t] = responses[t];
       for (let b = 0; b < Z; b++) rest[t] -= x[b] * local[b * T + t];
     }
-    const out = residuals[plan.blocks.ofPosition[row]];
+    const out = residuals[ofPosition[row]];
     for (let i = 0; i < at.count; i++) {
+      counts[ofPosition[row]][at.indices[i]] += at.values[i];
       const base = at.indices[i] * Z * T;
       const weight = at.values[i];
       for (let b = 0; b < Z; b++) {
@@ -247,7 +257,7 @@ export function collectBlockResiduals(
       }
     }
   });
-  return residuals;
+  return { residuals, counts };
 }
 
 export function createKnotWeights(grid: KernelGrid): KnotWeights {

@@ -13,7 +13,7 @@ import { addSensitivity, type SparseRow } from '../differences/sparseRows.js';
 import type { EstimationPlan } from '../Estimate.js';
 import { type BinnedMoments, MomentCollector } from './BinnedMoments.js';
 import { type KernelGrid, isInside } from './grid.js';
-import { createKnotWeights } from './motionMoments.js';
+import { type BlockResiduals, createKnotWeights } from './motionMoments.js';
 
 export interface NoiseMoments {
   readonly moments: BinnedMoments;
@@ -111,7 +111,6 @@ export function collectNoiseMoments(
  * Unexplained moments of every block.
  *
  * @param values  noise or diffusion at the knots, shape (c, K)
- * @returns one vector of shape (K, 1, c) per block
  */
 export function collectNoiseResiduals(
   tracks: TrackSet,
@@ -119,20 +118,23 @@ export function collectNoiseResiduals(
   grid: KernelGrid,
   rows: NoiseRows,
   values: Float64Array,
-): Float64Array[] {
+): BlockResiduals {
   const { positions, dimensions: d } = tracks;
   const components = values.length / grid.size;
-  const residuals = Array.from({ length: plan.blocks.count }, () => new Float64Array(values.length));
+  const { count, ofPosition } = plan.blocks;
+  const residuals = Array.from({ length: count }, () => new Float64Array(values.length));
+  const counts = Array.from({ length: count }, () => new Float64Array(grid.size));
   const at = createKnotWeights(grid);
   rows((row, products) => {
     if (!isInside(grid, positions, row * d)) return;
     at.count = grid.basis.evaluateInto(positions, row * d, at.indices, at.values);
-    const out = residuals[plan.blocks.ofPosition[row]];
+    const out = residuals[ofPosition[row]];
+    for (let i = 0; i < at.count; i++) counts[ofPosition[row]][at.indices[i]] += at.values[i];
     for (let component = 0; component < components; component++) {
       let rest = products.responses[component];
       for (let j = 0; j < at.count; j++) rest -= at.values[j] * values[component * grid.size + at.indices[j]];
       for (let i = 0; i < at.count; i++) out[at.indices[i] * components + component] += at.values[i] * rest;
     }
   });
-  return residuals;
+  return { residuals, counts };
 }

@@ -115,6 +115,19 @@ function weighCounts(
   knot: number,
   widths: ArrayLike<number>,
 ): number {
+  const kernel = kernelAround(grid, knot, widths);
+  let sum = 0;
+  for (let other = 0; other < grid.size; other++) sum += kernel[other] * counts[other];
+  return sum;
+}
+
+/**
+ * The normal kernel around a knot, 1 at its middle.
+ *
+ * @param widths  standard deviation along each axis, length
+ * @returns length K
+ */
+export function kernelAround(grid: KernelGrid, knot: number, widths: ArrayLike<number>): Float64Array {
   const { size, dimensions: d, places, spacing } = grid;
   const kernels = grid.counts.map((count, axis) =>
     Float64Array.from({ length: count }, (_, i) => {
@@ -122,14 +135,11 @@ function weighCounts(
       return Math.exp((-u * u) / 2);
     }),
   );
-  let sum = 0;
-  for (let other = 0; other < size; other++) {
-    if (counts[other] === 0) continue;
-    let weight = counts[other];
-    for (let axis = 0; axis < d; axis++) weight *= kernels[axis][places[axis][other]];
-    sum += weight;
+  const out = new Float64Array(size).fill(1);
+  for (let axis = 0; axis < d; axis++) {
+    for (let other = 0; other < size; other++) out[other] *= kernels[axis][places[axis][other]];
   }
-  return sum;
+  return out;
 }
 
 /** The visited knots nearest in units of the grid's spacing; all of those at (nearly) the same distance. */
