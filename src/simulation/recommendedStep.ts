@@ -19,7 +19,8 @@ export interface StepAdvice {
 const FRICTION_SHARE = 0.1; // of 1/Γ: diffusion errs by (Γh)²/12
 const FORCE_SHARE = 0.06; // of 1/ω: the temperature of an oscillator errs by (ωh)²/4
 const DRIFT_SHARE = 0.05; // of 1/|μ′|, first order: the variance of a trap errs by (μ′h)²/6, a displacement by twice that
-const VARIATION_SHARE = 0.1; // of the length over which coefficients change, per step
+const VARIATION_SHARE = 0.1; // of the length over which coefficients change, per step, second order
+const DIFFUSION_SHARE = 0.15; // likewise at first order, where averages then err by half a thousandth
 const PLACES = 400;
 const HIGH_SHARE = 0.98; // share of the probed places that must be covered; fitted edges may be wild
 
@@ -28,7 +29,7 @@ const HIGH_SHARE = 0.98; // share of the probed places that must be covered; fit
  *
  * Second order  h ≤ 0.1/Γ, h ≤ 0.06/√|∂F|, and thermal motion per step ≤ 0.1 of the length over which force gradient,
  *               friction or noise change by their own size
- * First order   h ≤ 0.05/|∂μ|, and √(2Dh) ≤ 0.1 of that length for the diffusion
+ * First order   h ≤ 0.05/|∂μ|, and √(2Dh) ≤ 0.15 of that length for the diffusion
  *
  * The step never exceeds the interval between frames.
  */
@@ -70,7 +71,7 @@ export function recommendedStep(evaluator: ScenarioEvaluator, scenario: Scenario
       variations.push((change * thermal) / VARIATION_SHARE);
     } else {
       rates.push(gradient);
-      variations.push((change / VARIATION_SHARE) ** 2 * 2 * strength);
+      variations.push((change / DIFFUSION_SHARE) ** 2 * 2 * strength);
     }
   }
   const high = (values: number[]): number => {
