@@ -12,12 +12,12 @@
  */
 
 import type { BinnedMoments } from './BinnedMoments.js';
-import { smoothingWeights } from './fieldSmoother.js';
+import { smooth, smootherOf } from './fieldSmoother.js';
 import type { KernelGrid } from './grid.js';
 import { gatherMoments, groupComponents, type LocalField } from './localFields.js';
-import { applyWeights, sumRows, withoutRows } from './localLinear.js';
+import { sumRows, withoutRows } from './localLinear.js';
 import { explainAway } from './solveFields.js';
-import { type KnotWindows, WIDEST_ON_PERIOD } from './windows.js';
+import { type KnotWindows, spreadBandwidth, WIDEST_ON_PERIOD } from './windows.js';
 
 /** Parts the blocks are dealt to; half of them are left out in every rotation. */
 export const PARTS = 8;
@@ -113,13 +113,10 @@ function crossValidation(
     };
   });
   return (bandwidth) => {
+    const widths = field.varies ? spreadBandwidth(windows, bandwidth, grid) : null;
     let score = 0;
     for (const { matrix, vector, training, sums } of halves) {
-      const values = new Float64Array(all.length);
-      groups.forEach((group, g) => {
-        const weights = smoothingWeights(sums[g], field.varies, grid, windows, bandwidth);
-        applyWeights(group, weights, training, values);
-      });
+      const values = smooth(smootherOf(field, groups, sums, grid, windows, widths), training);
       const left = explainAway(moments, [field], [values], vector, field, matrix);
       const rest = gatherMoments(field, left, instruments, targets);
       for (let i = 0; i < rest.length; i++) if (gram[i] > 0) score += rest[i] ** 2 / gram[i];

@@ -30,7 +30,7 @@ export interface KernelGrid {
 }
 
 const CELLS = [64, 20, 8]; // by dimensions: fine enough for features a tenth of the region wide
-const FEW_POSITIONS = 10; // per cell on average; with fewer the grid is made coarser
+const FEW_POSITIONS = 25; // per cell on average; with fewer the grid is made coarser
 const FEWEST_CELLS = 5;
 
 /** A grid over the box of the visited region; on a periodic axis over one period. */

@@ -72,8 +72,8 @@ const RIDGE = 1e-9;
  * The equivalent kernel: estimate (κ, x₀) = Σ weights · moment vector (κ′, i).
  *
  * @param widths  shape (K, d): standard deviation of the normal kernel at each knot along each axis, length
- * @param wanted  knots to estimate at; the rows of the others are left zero
- * @returns shape (m, K, m, K)
+ * @param wanted  the n knots to estimate at
+ * @returns shape (m, n, m, K)
  */
 export function localLinearWeights(
   sums: RowSums,
@@ -85,12 +85,13 @@ export function localLinearWeights(
   const { components: m, zeroth, first } = sums;
   const q = d + 1;
   const n = m * q;
-  const weights = new Float64Array(m * size * m * size);
+  const weights = new Float64Array(m * wanted.length * m * size);
   const window = new Window(grid, sums);
   const { bins, kernels, offsets } = window;
   const matrix = new Float64Array(n * n);
   const column = new Float64Array(q);
-  for (const knot of wanted) {
+  for (let place = 0; place < wanted.length; place++) {
+    const knot = wanted[place];
     window.moveTo(knot, widths);
     matrix.fill(0);
     for (let i = 0; i < window.count; i++) {
@@ -117,7 +118,7 @@ export function localLinearWeights(
     const inverse = invertMatrix(matrix, n);
     for (let a = 0; a < m; a++) {
       for (let b = 0; b < m; b++) {
-        const base = ((a * size + knot) * m + b) * size;
+        const base = ((a * wanted.length + place) * m + b) * size;
         for (let i = 0; i < window.count; i++) {
           let sum = 0;
           for (let alpha = 0; alpha < q; alpha++)
@@ -188,7 +189,7 @@ class Window {
   }
 }
 
-/** The weights of one global average: estimate (κ, any knot) = Σ weights · moment vector (κ′, i). */
+/** The weights of one global average: estimate κ = Σ weights · moment vector (κ′, i); shape (m, 1, m, K). */
 export function averageWeights(sums: RowSums, size: number): Float64Array {
   const m = sums.components;
   const matrix = new Float64Array(m * m);
@@ -196,43 +197,39 @@ export function averageWeights(sums: RowSums, size: number): Float64Array {
     for (let j = 0; j < m * m; j++) matrix[j] += sums.zeroth[i * m * m + j];
   }
   const inverse = invertMatrix(matrix, m);
-  const weights = new Float64Array(m * size * m * size);
-  for (let a = 0; a < m; a++) {
-    for (let knot = 0; knot < size; knot++) {
-      for (let b = 0; b < m; b++) {
-        const base = ((a * size + knot) * m + b) * size;
-        weights.fill(inverse[a * m + b], base, base + size);
-      }
-    }
-  }
+  const weights = new Float64Array(m * m * size);
+  for (let i = 0; i < m * m; i++) weights.fill(inverse[i], i * size, (i + 1) * size);
   return weights;
 }
 
 /**
  * Applies weights to the moments of a field.
  *
+ * @param weights  shape (m, n, m, K) for n places
  * @param moments  shape (components, K)
- * @param out  shape (components, K); only the components of the group are written
+ * @returns per member set and component: estimates at the n places, in the order of `group.members`
  */
 export function applyWeights(
   group: ComponentGroup,
   weights: Float64Array,
   moments: Float64Array,
-  out: Float64Array,
-): void {
+  size: number,
+): Float64Array[][] {
   const m = group.channels.length;
-  const size = Math.round(Math.sqrt(weights.length)) / m;
-  for (const members of group.members) {
-    for (let a = 0; a < m; a++) {
-      for (let knot = 0; knot < size; knot++) {
+  const places = weights.length / (m * m * size);
+  return group.members.map((members) =>
+    members.map((_, a) => {
+      const out = new Float64Array(places);
+      for (let place = 0; place < places; place++) {
         let sum = 0;
         for (let b = 0; b < m; b++) {
-          const base = ((a * size + knot) * m + b) * size;
+          const base = ((a * places + place) * m + b) * size;
           const from = members[b] * size;
           for (let i = 0; i < size; i++) sum += weights[base + i] * moments[from + i];
         }
-        out[members[a] * size + knot] = sum;
+        out[place] = sum;
       }
-    }
-  }
+      return out;
+    }),
+  );
 }

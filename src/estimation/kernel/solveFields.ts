@@ -27,10 +27,10 @@ export interface FieldValues {
 const CORRECTIONS = 2;
 
 const ROUNDS = 60;
-const TOLERANCE = 1e-8; // far below the scatter of any estimate
+const TOLERANCE = 1e-6; // far below the scatter of any estimate
 
 /** Enough for the effect of a block, of which only the size over all blocks matters. */
-export const ROUGH_TOLERANCE = 1e-4;
+export const ROUGH_TOLERANCE = 1e-3;
 
 /**
  * Solves for all fields.
