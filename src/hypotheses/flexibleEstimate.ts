@@ -1,14 +1,18 @@
 /**
- * The flexible fit a statement is compared with: the fit's own estimator on the fit's own tracks and blocks, with the
- * coefficients in question given a moderate spline that is hardly penalised, so that their smooth averages carry no
- * smoothing bias, and with the recording cut into short stretches as blocks. The other coefficients keep the study's shape, except that a finer spline is brought down to the
- * same moderate one: its details could not be told from those averages anyway.
+ * The flexible fit a statement is compared with: the tracks of the fit anew, with the coefficients in question given a
+ * moderate spline that is hardly penalised, so that their smooth averages carry no smoothing bias, and with the
+ * recording cut into short stretches as blocks. The other coefficients keep the study's shape, except that a finer spline
+ * is brought down to the same moderate one: its details could not be told from those averages anyway.
+ *
+ * By likelihood, which makes the most of the data, whatever the fit's own estimator; by differences where the likelihood
+ * does not reach (matrix forms, exposure).
  */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitResult } from '../documents/FitDocument.js';
 import type { Blocks } from '../estimation/blocks.js';
-import { chooseEstimator } from '../estimation/choose.js';
+import { estimateDifferences } from '../estimation/differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan, FieldPlan } from '../estimation/Estimate.js';
+import { estimateLikelihood } from '../estimation/likelihood/estimateLikelihood.js';
 import { planEstimation } from '../estimation/planEstimation.js';
 import type { BasisSpec } from '../fields/Basis.js';
 import type { FieldForm } from '../fields/CoefficientField.js';
@@ -35,7 +39,7 @@ type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
 
 const SPLINES = [14, 6, 4] as const; // per axis, by dimensions: room for the modes that are looked at, and some more
 const MOST_STRETCHES = 250; // degrees of freedom of the covariance; more hardly narrow an F law
-const SHORTEST_STRETCH = 40; // positions: ten times what a difference spans
+const SHORTEST_STRETCH = 80; // positions: many times what a difference spans or a filter remembers
 const POSITIONS_PER_FUNCTION = 60; // fewer and the regression gets ragged
 
 /**
@@ -43,21 +47,27 @@ const POSITIONS_PER_FUNCTION = 60; // fewer and the regression gets ragged
  *
  * @param tracks  the recording the fit was made from
  * @param frictionForm  replaces the fit's form of the friction
- * @throws DataError, NumericalError  as the estimator does
+ * @throws DataError, NumericalError  as the estimators do
  */
 export function estimateFlexibly(
-  fit: FitDocument,
+  fit: FitResult,
   tracks: TrackSet,
   flexible: readonly PlannedField[],
   frictionForm?: FieldForm,
 ): FlexibleEstimate {
   const planned = planFlexibly(fit, tracks, flexible, frictionForm);
-  return { ...planned, estimate: chooseEstimator(fit.study.estimator)(planned.tracks, planned.plan) };
+  const estimate = isCovered(planned.plan) ? estimateLikelihood : estimateDifferences;
+  return { ...planned, estimate: estimate(planned.tracks, planned.plan) };
+}
+
+/** Whether the likelihood takes the plan. */
+function isCovered({ friction, noise, exposure }: EstimationPlan): boolean {
+  return friction.form !== 'matrix' && noise.form !== 'matrix' && exposure === 0;
 }
 
 /** What `estimateFlexibly` estimates. */
 export function planFlexibly(
-  fit: FitDocument,
+  fit: FitResult,
   tracks: TrackSet,
   flexible: readonly PlannedField[],
   frictionForm: FieldForm = fit.study.frictionForm,
@@ -84,8 +94,8 @@ export function planFlexibly(
 
 /**
  * Stretches of equal numbers of positions as blocks. They may be shorter than the memory of the motion, because what an
- * estimating equation adds up is new to its past: in a right model its terms are uncorrelated beyond the two or three
- * frames a difference spans, however long velocities last.
+ * estimating equation adds up is new to its past: in a right model its terms are uncorrelated beyond the few frames a
+ * difference spans or a filter remembers, however long velocities last.
  */
 export function cutStretches(tracks: TrackSet, most: number): Blocks {
   const n = countPositions(tracks);

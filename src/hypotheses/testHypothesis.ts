@@ -3,7 +3,7 @@
  * several levels of detail, by Hotelling's T² with the covariance of independent blocks.
  */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitResult } from '../documents/FitDocument.js';
 import { UsageError } from '../errors.js';
 import type { Model } from '../fields/CoefficientField.js';
 import { studentQuantile } from '../numerics/special/student.js';
@@ -53,7 +53,7 @@ const MODES = 8; // beyond those the parameters need
  * @throws UsageError  where the hypothesis has no meaning for this fit
  * @throws DataError, NumericalError  as the estimator does
  */
-export function testHypothesis(fit: FitDocument, tracks: TrackSet, request: TestRequest): TestResult {
+export function testHypothesis(fit: FitResult, tracks: TrackSet, request: TestRequest): TestResult {
   const plan = planTest(fit, request);
   const flexible = estimateFlexibly(fit, tracks, plan.fields, plan.frictionForm);
   const nodes = pickOccupancyNodes(flexible.tracks, NODES);
@@ -77,7 +77,7 @@ interface TestPlan {
   createStatements(model: Model, nodes: Float64Array): Statement[];
 }
 
-function planTest(fit: FitDocument, request: TestRequest): TestPlan {
+function planTest(fit: FitResult, request: TestRequest): TestPlan {
   const { model, visited } = fit;
   const { hypothesis } = request;
   const d = model.dimensions;
@@ -164,7 +164,7 @@ function planTest(fit: FitDocument, request: TestRequest): TestPlan {
 }
 
 /** A coefficient that the study set to zero cannot be tested. */
-function checkPresent(fit: FitDocument, field: 'friction'): void {
+function checkPresent(fit: FitResult, field: 'friction'): void {
   if (fit.study[field].trim() !== 'zero') return;
   throw new UsageError(`the fit was made with --${field} zero, so there is no ${field} to test; fit again`, {
     field,
@@ -182,7 +182,7 @@ function checkParameterCounts(statements: readonly Statement[], modes: Occupancy
 }
 
 function describeVerdict(
-  fit: FitDocument,
+  fit: FitResult,
   { hypothesis, confidence }: TestRequest,
   verdict: Verdict,
   _flexible: FlexibleEstimate,
@@ -239,7 +239,7 @@ function sayVerdict(statement: string, rejected: boolean, confidence: number): s
 }
 
 function describeLaws(
-  fit: FitDocument,
+  fit: FitResult,
   request: TestRequest,
   verdicts: readonly Verdict[],
   contrasts: Contrasts,

@@ -109,11 +109,13 @@ async function readLaws(fit: FitDocument, options: Call['options'], ownLaws: Stu
 /** Laws of the study and of the shelf, in one form. */
 function listLaws(own: Study['laws']): ListedLaw[] {
   const named = Object.entries(own).map(([name, law]) => ({ name, ...law }));
-  return [...named, ...NAMED_LAWS].map(({ name, formula, about, source, range }): ListedLaw => ({
-    name,
-    formula: typeof formula === 'string' ? { any: formula } : ({ ...formula } as Record<string, string>),
-    about,
-    source,
-    range,
-  }));
+  return [...named, ...NAMED_LAWS].map(
+    ({ name, formula, about, source, range }): ListedLaw => ({
+      name,
+      formula: typeof formula === 'string' ? { any: formula } : ({ ...formula } as Record<string, string>),
+      about,
+      source,
+      range,
+    }),
+  );
 }

@@ -1,6 +1,6 @@
 /** Tries the model's own assumptions against the data, one check after another. */
 
-import type { FitDocument } from '../../documents/FitDocument.js';
+import type { FitResult } from '../../documents/FitDocument.js';
 import type { Warning } from '../../errors.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { ChallengeResult, Check } from './ChallengeResult.js';
@@ -23,7 +23,7 @@ import { measureInnovations } from './innovations.js';
  * @param tracks  the recording the fit was made from
  * @throws DataError, NumericalError  as the likelihood estimator does
  */
-export function challengeModel(fit: FitDocument, tracks: TrackSet, confidence: number): ChallengeResult {
+export function challengeModel(fit: FitResult, tracks: TrackSet, confidence: number): ChallengeResult {
   const { relaxationTime } = fit.survey;
   const memory = typeof relaxationTime === 'number' ? relaxationTime : null;
   const innovations = measureInnovations(fit, tracks);
@@ -60,7 +60,7 @@ export function challengeModel(fit: FitDocument, tracks: TrackSet, confidence: n
 }
 
 /** What the innovations leave out of the fit's model. */
-function warnOfSimplifications(fit: FitDocument): Warning[] {
+function warnOfSimplifications(fit: FitResult): Warning[] {
   const warnings: Warning[] = [];
   const { frictionForm, noiseForm, exposure } = fit.study;
   if (noiseForm === 'matrix' || (frictionForm === 'matrix' && fit.model.order === 'second')) {

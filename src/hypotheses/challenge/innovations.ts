@@ -7,7 +7,7 @@
  * normals, whatever the coefficients; every challenge looks for a way in which they are not.
  */
 
-import type { FitDocument } from '../../documents/FitDocument.js';
+import type { FitResult } from '../../documents/FitDocument.js';
 import type { Estimate, EstimationPlan } from '../../estimation/Estimate.js';
 import { createFirstOrderPass } from '../../estimation/likelihood/firstOrderPass.js';
 import { layOutLikelihood, type LikelihoodLayout } from '../../estimation/likelihood/layout.js';
@@ -49,7 +49,7 @@ const RIDGE = 1e-9; // relative: functions no node reaches stay at zero
  *
  * @param tracks  the recording the fit was made from
  */
-export function measureInnovations(fit: FitDocument, tracks: TrackSet): Innovations {
+export function measureInnovations(fit: FitResult, tracks: TrackSet): Innovations {
   const { order } = fit.model;
   const flexible = planFlexibly(fit, tracks, []);
   const usable = flexible.tracks;

@@ -2,10 +2,10 @@
  * A test that sums of innovation products vanish, made blind to what estimating the coefficients does to them.
  *
  * Each sum s has, under a right model, mean zero, and moves with the coefficients by as much as it is correlated with
- * their scores u. So what the scores explain is taken off, s − Cov(s, u) Var(u)⁻¹ u, and the rest is judged by
- * Hotelling's T². To first order an error of the estimate, of whatever origin, then has no effect. In a right model the
- * terms of all sums are new to their past, hence uncorrelated, so their covariance is that of single rows, or of short
- * stretches of rows where rows are many.
+ * their scores u. At the estimate the scores add up to nothing, so the sum there has the variance of what the scores
+ * do not explain, s − Cov(s, u) Var(u)⁻¹ u, and is judged against it by Hotelling's T². In a right model the terms of all
+ * sums are new to their past, hence uncorrelated, so their covariance is that of single rows, or of short stretches of
+ * rows where rows are many.
  *
  * Source  C(α) tests: Neyman, Optimal asymptotic tests of composite statistical hypotheses, in Probability and
  *         Statistics: The Harald Cramér Volume (1959) 213; moment form: Wooldridge, A unified approach to robust,
@@ -21,7 +21,7 @@ import { judgeHotelling } from '../nestedLevels.js';
 import type { Innovations } from './innovations.js';
 
 export interface ScoreTest {
-  /** Length q: sums with the estimate's share taken off, and their standard errors. */
+  /** Length q: the sums, and their standard errors. */
   readonly sums: Float64Array;
   readonly errors: Float64Array;
   readonly f: number;
@@ -40,12 +40,11 @@ export function testSums(innovations: Innovations, products: Float64Array, q: nu
   const n = products.length / q;
   const stretches = Math.min(n, MOST_STRETCHES);
   const sums = sumStretches(products, q, stretches);
+  const totals = sumStretches(products, q, 1);
   takeOff(sums, q, sumStretches(scores, r, stretches), r);
-  const totals = new Float64Array(q);
   const spread = new Float64Array(q * q);
   for (let stretch = 0; stretch < stretches; stretch++) {
     for (let i = 0; i < q; i++) {
-      totals[i] += sums[stretch * q + i];
       for (let j = 0; j < q; j++) spread[i * q + j] += sums[stretch * q + i] * sums[stretch * q + j];
     }
   }
