@@ -52,6 +52,16 @@ export type {
 export { createModelEvaluator } from './fields/evaluateModel.js';
 export { evaluateFit, type EvaluatedColumn } from './uncertainty/evaluateFit.js';
 
+// statements about coefficients, and about the model itself
+export { type Formula, type FormulaReader, loadFormulaReader } from './fields/formula.js';
+export type { ChallengeResult } from './hypotheses/challenge/ChallengeResult.js';
+export { challengeModel } from './hypotheses/challenge/challengeModel.js';
+export type { Law } from './hypotheses/lawStatement.js';
+export { type NamedLaw, NAMED_LAWS } from './hypotheses/namedLaws.js';
+export { type LawContext, resolveLaws } from './hypotheses/resolveLaw.js';
+export { testHypothesis, type TestRequest } from './hypotheses/testHypothesis.js';
+export type { HypothesisName, TestResult } from './hypotheses/TestResult.js';
+
 // simulation and checks
 export { mapTasksSerially, type MapTasks, type Task } from './numerics/MapTasks.js';
 export { RandomStream, randomStream } from './numerics/random/RandomStream.js';
