@@ -188,6 +188,32 @@ describe('outside the visited box', () => {
   });
 });
 
+it('reads the noise alone as it reads it with the rest, inside and outside, for draws too', async () => {
+  const basis: BasisSpec = { kind: 'spline', counts: [5, 6], low: [-1, -1], high: [1, 1], periods: [0, 0] };
+  const model: Model = {
+    order: 'second',
+    dimensions: 2,
+    periods: [0, 0],
+    force: randomField('force', 'vector', 'identity', basis, 2, 0),
+    friction: randomField('friction', 'scalar', 'log', basis, 2, 0),
+    noise: randomField('noise', 'matrix', 'log-matrix', basis, 2, 1),
+  };
+  const scenario = toScenario(model, {
+    visited: { low: [-1, -1], high: [1, 1] },
+    continuation: { kind: 'fade', width: 0.7 },
+  });
+  const draw = [...modelParameters(model)].map((value) => 0.9 * value + 0.05);
+  for (const evaluator of [createBasisEvaluator(scenario), createBasisEvaluator(scenario, draw)]) {
+    const [together, alone] = [new Float64Array(4), new Float64Array(4)];
+    for (let trial = 0; trial < 30; trial++) {
+      const place = Float64Array.of(4 * stream.uniform() - 2, 4 * stream.uniform() - 2);
+      evaluator.evaluateInto(place, new Float64Array(2), new Float64Array(4), together);
+      evaluator.noiseInto(place, alone);
+      expect(alone).toEqual(together);
+    }
+  }
+});
+
 describe('fading to given constants', () => {
   const spline: BasisSpec = { kind: 'spline', counts: [5], low: [-1], high: [1], periods: [0] };
   const scenario = (link: FieldLink, towards: number[]): Scenario =>
