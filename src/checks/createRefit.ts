@@ -19,11 +19,16 @@ export function createRefit(fit: FitOfAnyOrigin): (tracks: TrackSet) => Promise<
   const { relaxationTime } = fit.survey;
   const memory = typeof relaxationTime === 'number' ? relaxationTime : null;
   const estimate = chooseEstimator(fit.study.estimator);
+  const { roughnessStrengths } = fit.diagnostics;
+  const start = {
+    coefficients: modelParameters(fit.model),
+    strengths: Array.isArray(roughnessStrengths) ? roughnessStrengths.map(Number) : [],
+  };
   return async (tracks) => {
     try {
       const usable = checkTrackLengths(tracks, order).tracks;
       const plan = planEstimation(usable, fit.study, order, memory, fit.visited);
-      return modelParameters(estimate(usable, plan).model);
+      return modelParameters(estimate(usable, { ...plan, start }).model);
     } catch (error) {
       if (error instanceof DataError || error instanceof NumericalError) return null;
       throw error;

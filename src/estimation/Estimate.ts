@@ -31,6 +31,9 @@ export interface EstimationPlan {
   /** Fraction of the sampling interval a position is averaged over. */
   readonly exposure: number;
   readonly blocks: Blocks;
+  /** Where an iterative estimator may start, where a good place is known: coefficients in the order of
+   * `modelParameters`, and roughness strengths as its diagnostics give them. It changes the way, not the answer. */
+  readonly start?: { readonly coefficients: ArrayLike<number>; readonly strengths: readonly number[] };
 }
 
 export interface Estimate {

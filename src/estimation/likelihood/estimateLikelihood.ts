@@ -79,6 +79,7 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
       confine: (parameters, from) => confine(parameters, from, layout, floors),
     },
     findStart(tracks, plan, layout, floors),
+    plan.start?.strengths.length === groups.length ? plan.start.strengths : [],
   );
   const { parameters } = solution;
   return {

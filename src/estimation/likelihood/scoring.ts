@@ -60,8 +60,16 @@ const SHORTENED = 0.75; // of a step that turned back
 const HALVINGS = 6;
 const RIDGE = 1e-9; // relative; keeps directions that nothing tells apart from making the system singular
 
-/** Solves the penalised score equation. */
-export function solveScores(problem: ScoringProblem, start: Float64Array): ScoringSolution {
+/**
+ * Solves the penalised score equation.
+ *
+ * @param startStrengths  one per group, or none: a share of the information
+ */
+export function solveScores(
+  problem: ScoringProblem,
+  start: Float64Array,
+  startStrengths: readonly number[] = [],
+): ScoringSolution {
   const { size: p, groups } = problem;
   let parameters = start.slice();
   problem.confine(parameters, start);
@@ -71,7 +79,9 @@ export function solveScores(problem: ScoringProblem, start: Float64Array): Scori
   let information = problem.information(parameters, true);
   const strengths = Float64Array.from(
     groups,
-    (group) => (group.fixedStrength ?? START_SHARE) * scaleOf(information, p, group),
+    (group, g) =>
+      (group.fixedStrength === undefined ? startStrengths[g] : undefined) ??
+      (group.fixedStrength ?? START_SHARE) * scaleOf(information, p, group),
   );
   const paces = groups.map(() => ({ factor: 1, last: 0 }));
   let relaxation = 1;

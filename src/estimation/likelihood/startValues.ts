@@ -33,7 +33,8 @@ export function findStart(
   floors: Float64Array,
 ): Float64Array {
   const parameters = new Float64Array(layout.size);
-  const estimate = tryDifferences(tracks, plan);
+  const known = plan.start && plan.start.coefficients.length === layout.modelSize ? plan.start : null;
+  const estimate = known ? null : tryDifferences(tracks, plan);
   const constants = findConstants(tracks, plan);
   const d = layout.dimensions;
   const places = samplePlaces(tracks);
@@ -42,6 +43,7 @@ export function findStart(
   if (layout.friction)
     setPositive(parameters, layout.friction, d, places, evaluator?.frictionInto, constants.friction);
   setPositive(parameters, layout.noise, d, places, evaluator?.noiseInto, constants.noise);
+  if (known) parameters.set(known.coefficients);
   if (layout.errorOffset >= 0) {
     for (let axis = 0; axis < d; axis++) {
       const variance = constants.errorVariance[axis];
