@@ -8,6 +8,7 @@ import { COORDINATE_NAMES } from '../tracks/TrackSet.js';
 import { meanOf } from '../numerics/statistics/meanOf.js';
 import type { VisitedRegion } from '../tracks/visitedRegion.js';
 import { createForceReader, readCurl } from './readForce.js';
+import { imposePotential } from './imposePotential.js';
 import { identity, type Statement } from './Statement.js';
 
 const POINTS_ROUND = 48; // per loop; the spline has a few functions to a loop
@@ -53,6 +54,7 @@ export function createConservativeStatement(
     columnNames: curls,
     residualNames: curls,
     extraNames: loopNames,
+    logarithmic: false,
     columns: readCurls,
     extras: readLoops,
     reportNames: [...curls, ...(core === null ? [] : ['circulation']), ...loopNames],
@@ -63,6 +65,7 @@ export function createConservativeStatement(
     ],
     combination: () => identity(curls.length),
     target: () => null,
+    impose: (at, _parameters, places) => imposePotential(at, places, steps),
     starts: () => [new Float64Array(0)],
   };
 }

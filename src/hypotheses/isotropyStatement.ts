@@ -2,6 +2,7 @@
 
 import type { Model } from '../fields/CoefficientField.js';
 import { meanOf } from '../numerics/statistics/meanOf.js';
+import { imposeMatrix } from './imposeField.js';
 import { distinctColumnNames, readColumns } from './readColumns.js';
 import type { Statement } from './Statement.js';
 
@@ -35,11 +36,21 @@ export function createIsotropyStatement(model: Model & { order: 'second' }, node
     residualNames: rows.map(({ name }) => name),
     extraNames: [],
     reportNames: names,
+    logarithmic: false,
     columns: (at, places) => readColumns(at, names, places),
     extras: () => [],
     reports: (at) => readColumns(at, names, nodes).map(meanOf),
     combination: () => combination,
     target: () => null,
+    impose: (at, _parameters, places) => {
+      const diagonal = readColumns(at, names.slice(0, d), places);
+      return imposeMatrix(
+        at,
+        'friction',
+        (node, i, j) => (i === j ? meanOf(diagonal.map((values) => values[node])) : 0),
+        places,
+      );
+    },
     starts: () => [new Float64Array(0)],
   };
 }

@@ -2,8 +2,10 @@
 
 import type { Formula } from '../fields/formula.js';
 import type { Model } from '../fields/CoefficientField.js';
+import { createModelEvaluator } from '../fields/evaluateModel.js';
+import { imposeMatrix, imposeVector } from './imposeField.js';
+import { entryOf, isLogarithmic, readColumns } from './readColumns.js';
 import { identity, type Statement } from './Statement.js';
-import { readColumns } from './readColumns.js';
 import { proposeStarts } from './proposeStarts.js';
 
 /** A formula with what is known of its parameters beforehand. */
@@ -25,8 +27,11 @@ export function freeParameters(law: Law): string[] {
  * c_j(q) = formula(q; φ) for every column named.
  *
  * @param columnNames  as in `evaluate`; more than one where a law is meant for every axis
+ * @param model  of the flexible fit: decides whether the law is compared on a logarithmic scale
  */
-export function createLawStatement(law: Law, columnNames: readonly string[], dimensions: number): Statement {
+export function createLawStatement(law: Law, columnNames: readonly string[], model: Model): Statement {
+  const { dimensions } = model;
+  const logarithmic = isLogarithmic(model, columnNames);
   const names = freeParameters(law);
   const evaluateInto = createLawEvaluator(law);
   return {
@@ -35,17 +40,79 @@ export function createLawStatement(law: Law, columnNames: readonly string[], dim
     residualNames: columnNames,
     extraNames: [],
     reportNames: [],
-    columns: (model: Model, places) => readColumns(model, columnNames, places),
+    logarithmic,
+    columns: (at, places) => {
+      const columns = readColumns(at, columnNames, places);
+      return logarithmic ? columns.map((values) => values.map(Math.log)) : columns;
+    },
     extras: () => [],
     reports: () => [],
     combination: () => identity(columnNames.length),
     target: (parameters, places) => {
       const values = new Float64Array(places.length / dimensions);
       evaluateInto(parameters, places, values);
+      if (logarithmic) for (let i = 0; i < values.length; i++) values[i] = Math.log(values[i]); // NaN forbids
       return columnNames.map(() => values);
     },
-    starts: (columns, nodes) => proposeStarts(law, columns, nodes, dimensions),
+    impose: (at, parameters, nodes) => imposeLaw(at, columnNames, evaluateInto, parameters, nodes),
+    starts: (columns, nodes) => {
+      const values = logarithmic ? columns.map((column) => column.map(Math.exp)) : columns;
+      return proposeStarts(law, values, nodes, dimensions);
+    },
   };
+}
+
+/** Entries or components named follow the law, the others stay; a temperature is imposed through the noise. */
+function imposeLaw(
+  model: Model,
+  columnNames: readonly string[],
+  evaluateInto: ReturnType<typeof createLawEvaluator>,
+  parameters: ArrayLike<number>,
+  nodes: Float64Array,
+): Model {
+  const d = model.dimensions;
+  const values = new Float64Array(nodes.length / d);
+  evaluateInto(parameters, nodes, values);
+  const [coefficient] = columnNames[0].split('_');
+  const named = columnNames.map(entryOf);
+  const evaluator = createModelEvaluator(model);
+  if (coefficient === 'force' || coefficient === 'drift') {
+    const vector = new Float64Array(d);
+    const vectors = Array.from({ length: d }, () => values.slice());
+    for (let node = 0; node < values.length; node++) {
+      evaluator.forceInto(nodes, node * d, vector);
+      for (let axis = 0; axis < d; axis++)
+        if (!named.some(([row]) => row === axis)) vectors[axis][node] = vector[axis];
+    }
+    return imposeVector(model, vectors, nodes);
+  }
+  const matrix = new Float64Array(d * d);
+  const isScalar = columnNames.length === 1 && columnNames[0].endsWith('_xx');
+  const isNamed = (i: number, j: number): boolean =>
+    named.some(([a, b]) => a === i && b === j) || (isScalar && i === j);
+  if (coefficient === 'temperature') {
+    return imposeMatrix(
+      model,
+      'noise',
+      (node, i, j) => {
+        evaluator.frictionInto(nodes, node * d, matrix);
+        return values[node] * (matrix[i * d + j] + matrix[j * d + i]);
+      },
+      nodes,
+    );
+  }
+  const isFriction = coefficient === 'friction';
+  return imposeMatrix(
+    model,
+    isFriction ? 'friction' : model.order === 'first' ? 'diffusion' : 'noise',
+    (node, i, j) => {
+      if (isNamed(i, j)) return values[node];
+      if (isFriction) evaluator.frictionInto(nodes, node * d, matrix);
+      else evaluator.noiseInto(nodes, node * d, matrix);
+      return matrix[i * d + j];
+    },
+    nodes,
+  );
 }
 
 /** Writes the law's values at places, given its free parameters. */

@@ -99,7 +99,7 @@ export const NAMED_LAWS: readonly NamedLaw[] = [
     fixed: { wall: 0 },
     source:
       'Faxén, Ark. Mat. Astron. Fys. 17 (1923) no. 27; Happel & Brenner, Low Reynolds Number Hydrodynamics (1983), eq. 7-4.28 (from memory)',
-    range: 'h above about 1.2 radii (error below 1 % there; the series has no meaning at contact)',
+    range: 'h above 2.4 radii within 0.1 %, above 1.6 radii within 1 %; nearer the series breaks down',
   },
   {
     name: 'faxen-perpendicular',

@@ -3,14 +3,7 @@
 import type { Model } from '../fields/CoefficientField.js';
 import { createModelEvaluator } from '../fields/evaluateModel.js';
 import { COORDINATE_NAMES } from '../tracks/TrackSet.js';
-import { entriesOf, planColumns } from '../uncertainty/columns.js';
-
-/** Names of the printed columns of one coefficient, e.g. `friction_xx`, `friction_yy`. */
-export function columnNamesOf(model: Model, coefficient: string): string[] {
-  return planColumns(model)
-    .map(({ name }) => name)
-    .filter((name) => name.split('_')[0] === coefficient);
-}
+import { entriesOf } from '../uncertainty/columns.js';
 
 /** Names of the columns that differ by form: one for a scalar, one per axis, or every entry of a matrix. */
 export function distinctColumnNames(model: Model, coefficient: 'friction' | 'noise' | 'diffusion'): string[] {
@@ -19,6 +12,28 @@ export function distinctColumnNames(model: Model, coefficient: 'friction' | 'noi
   const entries = entriesOf(field.form, model.dimensions, coefficient !== 'friction');
   const kept = field.form === 'scalar' ? entries.slice(0, 1) : entries;
   return kept.map(([i, j]) => `${coefficient}_${COORDINATE_NAMES[i]}${COORDINATE_NAMES[j]}`);
+}
+
+/** Names of the temperatures that differ by form: one where friction and noise are scalars, else one per axis. */
+export function distinctTemperatures(model: Model & { order: 'second' }): string[] {
+  const isScalar = model.friction.form === 'scalar' && model.noise.form === 'scalar';
+  return COORDINATE_NAMES.slice(0, isScalar ? 1 : model.dimensions).map(
+    (axis) => `temperature_${axis}${axis}`,
+  );
+}
+
+/**
+ * Whether columns are exponentials of weighted sums. Their errors then follow a normal law on the logarithmic scale, and
+ * statements about them are judged there.
+ */
+export function isLogarithmic(model: Model, names: readonly string[]): boolean {
+  return names.every((name) => {
+    const [coefficient] = name.split('_');
+    if (coefficient === 'force' || coefficient === 'drift') return false;
+    if (model.order === 'first') return model.diffusion.link === 'log';
+    if (coefficient === 'temperature') return model.noise.link === 'log' && model.friction.link === 'log';
+    return (coefficient === 'friction' ? model.friction : model.noise).link === 'log';
+  });
 }
 
 /**
@@ -59,19 +74,26 @@ export function readColumns(model: Model, names: readonly string[], places: Floa
   return columns;
 }
 
+/** Row and column of the matrix entry a name stands for: `friction_xy` is (0, 1); of a vector component, twice its axis. */
+export function entryOf(name: string): [number, number] {
+  const letters = name.split('_')[1] ?? '';
+  const axes = Array.from(letters, (letter) => COORDINATE_NAMES.findIndex((known) => known === letter));
+  return [axes[0], axes[axes.length - 1]];
+}
+
 type ColumnKind = 'vector' | 'friction' | 'noise' | 'temperature';
 
 function parseColumn(name: string, d: number): { kind: ColumnKind; index: number } {
-  const [coefficient, letters = ''] = name.split('_');
-  const axes = Array.from(letters, (letter) => COORDINATE_NAMES.findIndex((known) => known === letter));
+  const [coefficient] = name.split('_');
+  const [row, column] = entryOf(name);
   switch (coefficient) {
     case 'force':
     case 'drift':
-      return { kind: 'vector', index: axes[0] };
+      return { kind: 'vector', index: row };
     case 'friction':
     case 'temperature':
-      return { kind: coefficient, index: axes[0] * d + axes[1] };
+      return { kind: coefficient, index: row * d + column };
     default:
-      return { kind: 'noise', index: axes[0] * d + axes[1] };
+      return { kind: 'noise', index: row * d + column };
   }
 }

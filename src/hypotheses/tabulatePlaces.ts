@@ -47,6 +47,7 @@ export function tabulatePlaces(
   const expected = statement.target(fit.parameters, places);
   const keep = projectAway(fit.jacobian, count, fit.parameters.length);
   const t = studentQuantile((1 + confidence) / 2, contrasts.blocks - 1);
+  const turnBack = statement.logarithmic ? Math.exp : (value: number): number => value;
   const direction = new Float64Array(count);
   const table: PlaceRow[] = [];
   for (let row = 0; row < rows; row++) {
@@ -63,10 +64,10 @@ export function tabulatePlaces(
       table.push({
         column: statement.residualNames[row],
         ...Object.fromEntries(coordinates.map((name, axis) => [name, places[place * d + axis]])),
-        expected: law,
-        value: law + difference,
-        low: law + difference - t * error,
-        high: law + difference + t * error,
+        expected: turnBack(law),
+        value: turnBack(law + difference),
+        low: turnBack(law + difference - t * error),
+        high: turnBack(law + difference + t * error),
         deviation: error > 0 ? difference / error : 0,
       });
     }

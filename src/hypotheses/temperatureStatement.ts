@@ -1,6 +1,7 @@
 /**
  * One temperature: noise and friction belong together everywhere by one and the same number, N = T (Γ + Γᵀ), which for
- * scalars is N = 2 T Γ (fluctuation–dissipation relation; Kubo, Rep. Prog. Phys. 29 (1966) 255).
+ * scalars is N = 2 T Γ (fluctuation–dissipation relation; Kubo, Rep. Prog. Phys. 29 (1966) 255). For estimates that may
+ * turn negative, so that a ratio had better not be formed.
  */
 
 import type { Model } from '../fields/CoefficientField.js';
@@ -8,6 +9,7 @@ import { COORDINATE_NAMES } from '../tracks/TrackSet.js';
 import { entriesOf } from '../uncertainty/columns.js';
 import { distinctColumnNames, readColumns } from './readColumns.js';
 import type { Statement } from './Statement.js';
+import { imposeTemperature } from './uniformStatement.js';
 
 /** N_ij(q) − T (Γ_ij(q) + Γ_ji(q)) = 0 for every entry that friction or noise keep apart. */
 export function createTemperatureStatement(model: Model & { order: 'second' }): Statement {
@@ -31,6 +33,7 @@ export function createTemperatureStatement(model: Model & { order: 'second' }): 
     }),
     extraNames: [],
     reportNames: [],
+    logarithmic: false,
     columns: (at, places) => readColumns(at, names, places),
     extras: () => [],
     reports: () => [],
@@ -51,6 +54,7 @@ export function createTemperatureStatement(model: Model & { order: 'second' }): 
       return out;
     },
     target: () => null,
+    impose: (at, parameters, nodes) => imposeTemperature(at, parameters[0], nodes),
     starts: (columns) => {
       let noise = 0;
       let friction = 0;

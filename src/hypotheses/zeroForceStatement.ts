@@ -1,8 +1,10 @@
 /** No force: every component of the force (at first order, of the drift less that of diffusion gradients) vanishes. */
 
 import type { Model } from '../fields/CoefficientField.js';
+import { createModelEvaluator } from '../fields/evaluateModel.js';
 import { COORDINATE_NAMES } from '../tracks/TrackSet.js';
 import { meanOf } from '../numerics/statistics/meanOf.js';
+import { imposeVector } from './imposeField.js';
 import { createForceReader } from './readForce.js';
 import { identity, type Statement } from './Statement.js';
 
@@ -29,11 +31,29 @@ export function createZeroForceStatement(model: Model, nodes: Float64Array, step
     residualNames: names,
     extraNames: [],
     reportNames: names,
+    logarithmic: false,
     columns: read,
     extras: () => [],
     reports: (at) => read(at, nodes).map(meanOf),
     combination: () => identity(d),
     target: () => null,
+    impose: (at, _parameters, places) => {
+      if (at.order === 'second')
+        return imposeVector(
+          at,
+          names.map(() => new Float64Array(places.length / d)),
+          places,
+        );
+      // At first order the part that gradients of diffusion bring about stays.
+      const evaluator = createModelEvaluator(at);
+      const force = read(at, places);
+      const drift = new Float64Array(d);
+      for (let place = 0; place < places.length / d; place++) {
+        evaluator.forceInto(places, place * d, drift);
+        for (let axis = 0; axis < d; axis++) force[axis][place] = drift[axis] - force[axis][place];
+      }
+      return imposeVector(at, force, places);
+    },
     starts: () => [new Float64Array(0)],
   };
 }

@@ -5,6 +5,7 @@ import { NumericalError, UsageError } from '../../src/errors.js';
 import { solveLeastSquares } from '../../src/numerics/linear/leastSquares.js';
 import { fitStraightLine } from '../../src/numerics/linear/plainRegression.js';
 import { randomStream } from '../../src/numerics/random/RandomStream.js';
+import { LONGLEY } from '../support/longley.js';
 
 // NIST Statistical Reference Datasets, linear regression: Norris (lower difficulty) and Longley (higher; Longley, An
 // appraisal of least squares programs for the electronic computer, J. Am. Stat. Assoc. 62 (1967) 819). Data and
@@ -47,25 +48,6 @@ const NORRIS: readonly (readonly [number, number])[] = [
   [449.2, 448.9],
   [0.2, 0.5],
 ]; // y, x
-
-const LONGLEY = [
-  [60323, 83.0, 234289, 2356, 1590, 107608, 1947],
-  [61122, 88.5, 259426, 2325, 1456, 108632, 1948],
-  [60171, 88.2, 258054, 3682, 1616, 109773, 1949],
-  [61187, 89.5, 284599, 3351, 1650, 110929, 1950],
-  [63221, 96.2, 328975, 2099, 3099, 112075, 1951],
-  [63639, 98.1, 346999, 1932, 3594, 113270, 1952],
-  [64989, 99.0, 365385, 1870, 3547, 115094, 1953],
-  [63761, 100.0, 363112, 3578, 3350, 116219, 1954],
-  [66019, 101.2, 397469, 2904, 3048, 117388, 1955],
-  [67857, 104.6, 419180, 2822, 2857, 118734, 1956],
-  [68169, 108.4, 442769, 2936, 2798, 120445, 1957],
-  [66513, 110.8, 444546, 4681, 2637, 121950, 1958],
-  [68655, 112.6, 482704, 3813, 2552, 123366, 1959],
-  [69564, 114.2, 502601, 3931, 2514, 125368, 1960],
-  [69331, 115.7, 518173, 4806, 2572, 127852, 1961],
-  [70551, 116.9, 554894, 4007, 2827, 130081, 1962],
-]; // y, x1 … x6
 
 /** Rows of explanatory variables with an intercept in front. */
 function withIntercept(rows: readonly (readonly number[])[]): Float64Array {

@@ -14,15 +14,10 @@ import { layOutLikelihood, type LikelihoodLayout } from '../../estimation/likeli
 import { createSecondOrderPass } from '../../estimation/likelihood/secondOrderPass.js';
 import { estimateLikelihood } from '../../estimation/likelihood/estimateLikelihood.js';
 import { modelFields } from '../../fields/modelParameters.js';
-import type { BasisSpec } from '../../fields/Basis.js';
 import { createBasis } from '../../fields/createBasis.js';
-import {
-  factorCholeskyInto,
-  solveLowerInPlace,
-  solveUpperInPlace,
-} from '../../numerics/linear/choleskyFactor.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
 import { pickOccupancyNodes, planFlexibly } from '../flexibleEstimate.js';
+import { projectOnBasis } from '../imposeField.js';
 import { findOccupancyModes, type OccupancyModes } from '../occupancyModes.js';
 
 export interface Innovations {
@@ -42,7 +37,6 @@ export interface Innovations {
 const NODES = 1000;
 const MODES = 6; // of each coefficient: what sums over the whole recording can feel of it
 const STEP = 0.3; // standard errors over which scores are taken: short against curvature, long against rounding
-const RIDGE = 1e-9; // relative: functions no node reaches stay at zero
 
 /**
  * Estimates the fit's model class by likelihood on smooth functions and measures its innovations.
@@ -127,7 +121,7 @@ function listDirections(
     const isZero =
       (field.name === force.field.name && force.basis < 0) ||
       (field.name === friction?.field.name && friction.basis < 0);
-    const weights = isZero ? [] : followModes(field.basis, nodes, modes, d);
+    const weights = isZero ? [] : projectOnBasis(field.basis, nodes, modes.atNodes, d);
     for (let component = 0; component < field.coefficients.length; component++) {
       for (const weight of weights) {
         const direction = new Float64Array(size);
@@ -143,36 +137,6 @@ function listDirections(
     add(direction);
   }
   return directions;
-}
-
-/** Coefficients in a basis that come closest to each mode at the nodes. */
-function followModes(spec: BasisSpec, nodes: Float64Array, modes: OccupancyModes, d: number): Float64Array[] {
-  const basis = createBasis(spec, d);
-  const k = basis.functionCount;
-  const m = nodes.length / d;
-  const count = Math.min(modes.count, k);
-  const indices = new Int32Array(basis.support);
-  const values = new Float64Array(basis.support);
-  const normal = new Float64Array(k * k);
-  const rights = Array.from({ length: count }, () => new Float64Array(k));
-  for (let node = 0; node < m; node++) {
-    const found = basis.evaluateInto(nodes, node * d, indices, values);
-    for (let i = 0; i < found; i++) {
-      for (let j = 0; j < found; j++) normal[indices[i] * k + indices[j]] += values[i] * values[j];
-      for (let mode = 0; mode < count; mode++)
-        rights[mode][indices[i]] += values[i] * modes.atNodes[mode][node];
-    }
-  }
-  let trace = 0;
-  for (let i = 0; i < k; i++) trace += normal[i * k + i];
-  for (let i = 0; i < k; i++) normal[i * k + i] += (RIDGE * trace) / k;
-  const lower = new Float64Array(k * k);
-  if (!factorCholeskyInto(normal, k, lower)) return [];
-  for (const right of rights) {
-    solveLowerInPlace(lower, k, right);
-    solveUpperInPlace(lower, k, right);
-  }
-  return rights;
 }
 
 /** Standard error of the estimate along a direction, the other directions held: 1/√(dᵀ I d) with I⁻¹ ≈ Σ ψ ψᵀ. */
