@@ -29,7 +29,7 @@ export interface KernelGrid {
   readonly periods: readonly number[];
 }
 
-const CELLS = [64, 20, 8]; // by dimensions: fine enough for features a tenth of the region wide
+const CELLS = [64, 20, 7]; // by dimensions: fine enough for features a tenth of the region wide
 const FEW_POSITIONS = 25; // per cell on average; with fewer the grid is made coarser
 const FEWEST_CELLS = 5;
 
