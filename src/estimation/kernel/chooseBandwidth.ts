@@ -3,7 +3,8 @@
  * of the other half. Leaving out that much makes the choice far steadier than leaving out a tenth; as the half data want
  * a wider window, the choice is scaled to all of them by (1/2)^{1/(4+d)}.
  *
- * The search runs over powers of √2 around the start, with the axes in fixed proportion, then lets each axis differ.
+ * The search goes up and down from the start in half octaves with the axes in fixed proportion, lets each axis differ, and
+ * ends at the bottom of a parabola.
  *
  * Source  whole blocks, because errors along a track are correlated: Rice & Silverman, Estimating the mean and covariance
  *         structure nonparametrically when the data are curves, J. R. Stat. Soc. B 53 (1991) 233; steadier from part of the
@@ -22,11 +23,11 @@ import { type KnotWindows, spreadBandwidth, WIDEST_ON_PERIOD } from './windows.j
 /** Parts the blocks are dealt to; half of them are left out in every rotation. */
 export const PARTS = 8;
 
-const STEP = Math.SQRT2;
-const FINE_STEP = 2 ** 0.25;
+const STEP = 0.5; // octaves
+const FINE_STEP = 0.25;
 const LEAST = 0.75; // knot spacings: below, a window holds hardly more than one knot
 const MOST = 1; // widths of the box: wider windows make the same line
-const AXIS_STEPS = [0.5, Math.SQRT1_2, Math.SQRT2, 2, 4];
+const AXIS_FACTORS = [0.5, Math.SQRT1_2, Math.SQRT2, 2, 4];
 
 /**
  * Chooses a field's bandwidth.
@@ -43,48 +44,60 @@ export function chooseBandwidth(
   windows: KnotWindows,
   start: readonly number[],
 ): number[] {
-  const score = crossValidation(moments, field, residuals, grid, windows);
+  const judge = crossValidation(moments, field, residuals, grid, windows);
   const limit = (bandwidth: readonly number[]): number[] =>
     bandwidth.map((width, axis) => {
       const most = grid.periods[axis] > 0 ? WIDEST_ON_PERIOD * grid.periods[axis] : MOST * grid.widths[axis];
       return Math.max(LEAST * grid.spacing[axis], Math.min(most, width));
     });
-  const scaled = (factor: number): number[] => limit(start.map((width) => width * factor));
-  let best = { bandwidth: scaled(1), score: Infinity };
-  const seen = new Set<string>();
-  const consider = (bandwidth: number[]): boolean => {
+  const known = new Map<string, number>();
+  const score = (bandwidth: readonly number[]): number => {
     const key = bandwidth.join();
-    if (seen.has(key)) return true;
-    seen.add(key);
-    const value = score(bandwidth);
-    if (value < best.score) best = { bandwidth, score: value };
-    return false;
+    const value = known.get(key) ?? judge(bandwidth);
+    known.set(key, value);
+    return value;
   };
-  for (const direction of [1, -1]) {
-    for (let step = direction > 0 ? 0 : -1; Math.abs(step) < 24; step += direction) {
-      if (consider(scaled(STEP ** step))) break; // both ends of the range repeat themselves
+  const better = (left: readonly number[], right: readonly number[]): readonly number[] =>
+    score(right) < score(left) ? right : left;
+  const scaled = (base: readonly number[], octaves: number): number[] =>
+    limit(base.map((width) => width * 2 ** octaves));
+
+  const origin = limit(start);
+  let best: readonly number[] = origin;
+  for (const direction of [STEP, -STEP]) {
+    let last = origin;
+    for (let octaves = direction; ; octaves += direction) {
+      const next = scaled(origin, octaves);
+      if (next.every((width, axis) => width === last[axis])) break; // the end of the range on every axis
+      best = better(best, next);
+      last = next;
     }
   }
-  const common = best.bandwidth;
   if (grid.dimensions > 1) {
     // Each axis by itself from the common start, then together, so that no axis comes first.
-    const singles = common.map((_, axis) => {
-      let own = { factor: 1, score: best.score };
-      for (const factor of AXIS_STEPS) {
-        const value = score(limit(common.map((width, other) => (other === axis ? width * factor : width))));
-        if (value < own.score) own = { factor, score: value };
-      }
-      return own;
-    });
-    consider(limit(common.map((width, axis) => width * singles[axis].factor)));
-    singles.forEach(({ factor }, axis) =>
-      consider(limit(common.map((width, other) => (other === axis ? width * factor : width)))),
+    const common = best;
+    const changed = (factors: readonly number[]): number[] =>
+      limit(common.map((width, axis) => width * factors[axis]));
+    const singles = common.map((_, axis) =>
+      AXIS_FACTORS.map((factor) => changed(common.map((__, other) => (other === axis ? factor : 1)))).reduce<
+        readonly number[]
+      >(better, common),
     );
+    const together = singles.map((single, axis) => single[axis]);
+    best = [together, ...singles].reduce(better, common);
   }
-  const coarse = best.bandwidth;
-  for (const factor of [FINE_STEP, 1 / FINE_STEP]) consider(limit(coarse.map((width) => width * factor)));
-  const toAll = 0.5 ** (1 / (4 + grid.dimensions));
-  return limit(best.bandwidth.map((width) => width * toAll));
+  return scaled(best, bottomOf((octaves) => score(scaled(best, octaves))) - 1 / (4 + grid.dimensions));
+}
+
+/** The bottom of the parabola through three scores a fine step apart, around the lowest of them; in octaves. */
+function bottomOf(score: (octaves: number) => number): number {
+  let middle = 0;
+  if (score(-FINE_STEP) < score(middle)) middle = -FINE_STEP;
+  if (score(FINE_STEP) < score(middle)) middle = FINE_STEP;
+  const [left, centre, right] = [-FINE_STEP, 0, FINE_STEP].map((offset) => score(middle + offset));
+  const curvature = left - 2 * centre + right;
+  if (!(left >= centre && right >= centre && curvature > 0)) return middle;
+  return middle + (FINE_STEP * (left - right)) / (2 * curvature);
 }
 
 /** Returns the function that scores a bandwidth by the moments of the halves left out. */
