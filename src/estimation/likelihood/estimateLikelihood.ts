@@ -17,7 +17,7 @@ import { createLocalInformation, expectInformation } from './expectedInformation
 import { createFirstOrderPass } from './firstOrderPass.js';
 import { type FieldSlot, layOutLikelihood, type LikelihoodLayout } from './layout.js';
 import type { PassSetting } from './PathPass.js';
-import { type RankedPenalty, type ScoringSolution, solveScores } from './scoring.js';
+import { type Pull, type RankedPenalty, type ScoringSolution, solveScores } from './scoring.js';
 import { measureFlow } from './measureFlow.js';
 import { createSecondOrderPass } from './secondOrderPass.js';
 import { findStart } from './startValues.js';
@@ -25,6 +25,7 @@ import { findStart } from './startValues.js';
 const FLOOR = 1e-7; // smallest localization error variance, relative to the mean squared displacement per step
 const ROUGH_POSITIONS = 150; // per function: enough for the metric of the iteration
 const LONGEST_STEP = 2; // of the logarithm of an error variance: near zero its information is no guide
+const PULL = 0.2; // precision of a logarithm: one standard deviation is a factor of nine
 const HELD = 1e12; // information that leaves no step worth speaking of
 const WIDEST = 40; // |log| of positive coefficients and variances stays below; nothing recorded spans e^40
 
@@ -57,11 +58,13 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
   const functions = Math.max(...layout.bases.map((basis) => basis.functionCount));
   const stride = Math.max(1, Math.floor(countPositions(tracks) / (ROUGH_POSITIONS * functions)));
   const groups = listPenalties(layout, plan);
+  const start = findStart(tracks, plan, layout, floors);
   const solution = solveScores(
     {
       size: layout.size,
       blocks: plan.blocks.count,
       groups,
+      pull: pullToMean(layout, start),
       evaluate: (parameters, scores) => pass.run(parameters, scores),
       information: (parameters, rough) => {
         const matrix = expectInformation(
@@ -78,7 +81,7 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
       },
       confine: (parameters, from) => confine(parameters, from, layout, floors),
     },
-    findStart(tracks, plan, layout, floors),
+    start,
     plan.start?.strengths.length === groups.length ? plan.start.strengths : [],
   );
   const { parameters } = solution;
@@ -164,6 +167,24 @@ function confine(
     const reach = Math.min(Math.max(parameters[i], from[i] - LONGEST_STEP), from[i] + LONGEST_STEP);
     parameters[i] = Math.min(Math.max(reach, Math.log(floors[axis])), WIDEST);
   }
+}
+
+/**
+ * Holds logarithms of friction, noise and diffusion within about a factor of ten of their typical value where no data
+ * speak: weaker by far than a single visit of some frames, it keeps straight lines from running off at the edges.
+ */
+function pullToMean(layout: LikelihoodLayout, start: Float64Array): Pull {
+  const precision = new Float64Array(layout.size);
+  const centre = new Float64Array(layout.size);
+  for (const slot of [layout.friction, layout.noise]) {
+    if (!slot || slot.basis < 0 || layout.bases[slot.basis].spec.kind !== 'spline') continue;
+    const end = slot.offset + slot.components * slot.functionCount;
+    const mean =
+      start.subarray(slot.offset, end).reduce((sum, value) => sum + value, 0) / (end - slot.offset);
+    precision.fill(PULL, slot.offset, end);
+    centre.fill(mean, slot.offset, end);
+  }
+  return { precision, centre };
 }
 
 /**

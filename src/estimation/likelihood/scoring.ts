@@ -21,10 +21,17 @@ export interface RankedPenalty extends PenaltyGroup {
   readonly rank: number;
 }
 
+/** A weak pull of every parameter towards a centre, which holds those that hardly any data reach; length p each. */
+export interface Pull {
+  readonly precision: Float64Array;
+  readonly centre: Float64Array;
+}
+
 export interface ScoringProblem {
   readonly size: number;
   readonly blocks: number;
   readonly groups: readonly RankedPenalty[];
+  readonly pull: Pull;
   /** Log-likelihood at a point; fills the block scores, shape (B, p), where given. */
   evaluate(parameters: Float64Array, scores: Float64Array | null): number;
   /** The metric at a point, shape (p, p), positive semi-definite; a rough one will do on the way. */
@@ -70,7 +77,7 @@ export function solveScores(
   start: Float64Array,
   startStrengths: readonly number[] = [],
 ): ScoringSolution {
-  const { size: p, groups } = problem;
+  const { size: p, groups, pull } = problem;
   let parameters = start.slice();
   problem.confine(parameters, start);
   let scores = new Float64Array(problem.blocks * p);
@@ -88,13 +95,13 @@ export function solveScores(
   let lastStep: Float64Array = new Float64Array(p);
   let converged = false;
   let iterations = 0;
-  let inverse = invertSystem(information, groups, strengths, p);
+  let inverse = invertSystem(information, groups, strengths, pull, p);
   while (iterations < MOST_ITERATIONS && !converged) {
     iterations++;
-    const gradient = penalizedScore(scores, groups, strengths, parameters);
+    const gradient = penalizedScore(scores, groups, strengths, pull, parameters);
     const step = multiply(inverse, gradient);
     const decrement = innerProduct(gradient, step);
-    const before = logLikelihood - penaltyOf(groups, strengths, parameters) / 2;
+    const before = logLikelihood - penaltyOf(groups, strengths, pull, parameters) / 2;
     // Steps that turn back on the one before overshoot: the metric is too small in some direction.
     relaxation =
       innerProduct(gradient, lastStep) < 0 ? relaxation * SHORTENED : Math.min(1, relaxation / SHORTENED);
@@ -107,8 +114,8 @@ export function solveScores(
       logLikelihood = problem.evaluate(moved, trialScores);
       // The places where coefficients are read move with them, so the score is not quite the gradient of the
       // likelihood: a step is good if it brings either nearer to where it should be.
-      if (logLikelihood - penaltyOf(groups, strengths, moved) / 2 > before) break;
-      const left = penalizedScore(trialScores, groups, strengths, moved);
+      if (logLikelihood - penaltyOf(groups, strengths, pull, moved) / 2 > before) break;
+      const left = penalizedScore(trialScores, groups, strengths, pull, moved);
       if (innerProduct(left, multiply(inverse, left)) < decrement) break;
     }
     parameters = moved;
@@ -119,11 +126,11 @@ export function solveScores(
     const change = settled
       ? updateStrengths(groups, strengths, paces, information, inverse, parameters, p)
       : Infinity;
-    inverse = invertSystem(information, groups, strengths, p);
+    inverse = invertSystem(information, groups, strengths, pull, p);
     converged = decrement < TOLERANCE && change < STRENGTH_TOLERANCE;
   }
   information = problem.information(parameters, false);
-  inverse = invertSystem(information, groups, strengths, p);
+  inverse = invertSystem(information, groups, strengths, pull, p);
   return {
     parameters,
     scores,
@@ -197,10 +204,13 @@ function penalizedScore(
   scores: Float64Array,
   groups: readonly PenaltyGroup[],
   strengths: Float64Array,
+  pull: Pull,
   parameters: Float64Array,
 ): Float64Array {
   const gradient = new Float64Array(parameters.length);
   for (let i = 0; i < scores.length; i++) gradient[i % gradient.length] += scores[i];
+  for (let i = 0; i < gradient.length; i++)
+    gradient[i] -= pull.precision[i] * (parameters[i] - pull.centre[i]);
   groups.forEach(({ offsets, functionCount: k, roughness }, g) => {
     for (const offset of offsets) {
       for (let i = 0; i < k; i++) {
@@ -216,9 +226,12 @@ function penalizedScore(
 function penaltyOf(
   groups: readonly PenaltyGroup[],
   strengths: Float64Array,
+  pull: Pull,
   parameters: Float64Array,
 ): number {
   let total = 0;
+  for (let i = 0; i < parameters.length; i++)
+    total += pull.precision[i] * (parameters[i] - pull.centre[i]) ** 2;
   groups.forEach(({ offsets, functionCount: k, roughness }, g) => {
     for (const offset of offsets) {
       for (let i = 0; i < k; i++) {
@@ -235,9 +248,11 @@ function invertSystem(
   information: Float64Array,
   groups: readonly PenaltyGroup[],
   strengths: Float64Array,
+  pull: Pull,
   p: number,
 ): Float64Array {
   const system = information.slice();
+  for (let i = 0; i < p; i++) system[i * p + i] += pull.precision[i];
   const typical = Float64Array.from({ length: p }, (_, i) => information[i * p + i]);
   for (const group of groups) {
     const scale = scaleOf(information, p, group);
