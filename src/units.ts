@@ -45,5 +45,7 @@ function power(label: string, exponent: number): string {
 export function formatUnit(quantity: Quantity, units: Units): string {
   const [lengthPower, timePower] = QUANTITY_POWERS[quantity];
   if ((lengthPower !== 0 && units.length === null) || (timePower !== 0 && units.time === null)) return '';
-  return [power(units.length ?? '', lengthPower), power(units.time ?? '', timePower)].filter(Boolean).join(' ');
+  return [power(units.length ?? '', lengthPower), power(units.time ?? '', timePower)]
+    .filter(Boolean)
+    .join(' ');
 }

@@ -45,6 +45,7 @@ export function findRuns(tracks: TrackSet, tolerance = INTERVAL_TOLERANCE): Runs
 /** Rows of the longest run. */
 export function longestRun(runs: Runs): number {
   let longest = 0;
-  for (let run = 0; run < runs.starts.length; run++) longest = Math.max(longest, runs.ends[run] - runs.starts[run]);
+  for (let run = 0; run < runs.starts.length; run++)
+    longest = Math.max(longest, runs.ends[run] - runs.starts[run]);
   return longest;
 }

@@ -23,8 +23,8 @@ export function sampleTracks(tracks: TrackSet): { name: string; points: number[]
       points: Array.from({ length: points }, (_, point) => {
         const row = start + (points === 1 ? 0 : Math.floor((point * (length - 1)) / (points - 1)));
         const base = row * tracks.dimensions;
-        return [tracks.times[row], ...tracks.positions.subarray(base, base + tracks.dimensions)].map((value) =>
-          Number(value.toPrecision(7)),
+        return [tracks.times[row], ...tracks.positions.subarray(base, base + tracks.dimensions)].map(
+          (value) => Number(value.toPrecision(7)),
         );
       }),
     };
