@@ -17,6 +17,7 @@ import { createResiduals, fitStatement, type StatementProblem } from './fitState
 import { solveLowerInPlace } from '../numerics/linear/choleskyFactor.js';
 
 const FOLDS = 10;
+const NO_ODDS = 2; // a useless parameter costs ½ to 1 of score; odds below e² to 1 are no ground to call a law worse
 
 export interface ScoredLaw {
   readonly score: number;
@@ -54,7 +55,7 @@ export function compareLaws(problems: readonly StatementProblem[], confidence: n
       scoreError: errorOfSum(scores[law]),
       difference,
       differenceError,
-      tie: law !== best && Math.abs(difference) <= t * differenceError,
+      tie: law !== best && Math.abs(difference) <= Math.max(NO_ODDS, t * differenceError),
       criterion: whole[law].statistic + 2 * problem.statement.parameterNames.length,
     };
   });

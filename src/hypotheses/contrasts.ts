@@ -41,7 +41,7 @@ export interface Contrasts {
  *
  * @param nodes  shape (m, d): places that stand for the occupancy, those of `modes`
  *
- * Cost  2 p evaluations of the model at the nodes.
+ * Cost  twice as many evaluations of the model at the nodes as there are parameters, or blocks where those are fewer.
  */
 export function measureContrasts(
   estimate: Estimate,
@@ -65,17 +65,16 @@ export function measureContrasts(
     return Float64Array.from([...statement.extras(model), ...averages, ...statement.reports(model)]);
   };
   const values = measure(parameters);
-  const slopes = differentiate(measure, parameters, influences, width);
-  const effects = multiplyRows(influences, slopes, p, width);
+  const factor = smoothingFactor === null ? new Float64Array(0) : transpose(smoothingFactor.values, p);
+  // Fewer directions than parameters: follow them; otherwise work out every derivative once.
+  const carry =
+    (influences.length + factor.length) / p < p
+      ? carryRows(measure, parameters, width)
+      : carryByDerivatives(measure, parameters, influences, width);
+  const effects = carry(influences);
   const whole = new Float64Array(width * width);
   addOuterProducts(whole, effects, width, blocks / Math.max(1, blocks - 1));
-  if (smoothingFactor !== null) {
-    const { values: factor, columns } = smoothingFactor;
-    const transposed = Float64Array.from({ length: p * columns }, (_, at) => {
-      return factor[(at % p) * columns + Math.floor(at / p)];
-    });
-    addOuterProducts(whole, multiplyRows(transposed, slopes, p, width), width, 1);
-  }
+  addOuterProducts(whole, carry(factor), width, 1);
   const covariance = new Float64Array(size * size);
   for (let i = 0; i < size; i++) covariance.set(whole.subarray(i * width, i * width + size), i * size);
   return {
@@ -97,15 +96,34 @@ export function measureContrasts(
 
 const STEP = 0.3; // standard errors of a parameter over which derivatives are taken: short against curvature
 
-/** Derivatives of the contrasts by the raw parameters, shape (p, width), by central differences. */
-function differentiate(
-  measure: (raw: Float64Array) => Float64Array,
+type Measure = (raw: Float64Array) => Float64Array;
+
+/** Carries changes of the parameters, shape (count, p), to changes of the contrasts, shape (count, width). */
+type Carry = (rows: Float64Array) => Float64Array;
+
+/** Row by row, by central differences over the whole of it. */
+function carryRows(measure: Measure, parameters: Float64Array, width: number): Carry {
+  const p = parameters.length;
+  return (rows) => {
+    const out = new Float64Array((rows.length / p) * width);
+    for (let row = 0; row < rows.length / p; row++) {
+      const above = measure(parameters.map((value, i) => value + rows[row * p + i]));
+      const below = measure(parameters.map((value, i) => value - rows[row * p + i]));
+      for (let j = 0; j < width; j++) out[row * width + j] = (above[j] - below[j]) / 2;
+    }
+    return out;
+  };
+}
+
+/** By the derivatives of the contrasts by every parameter, from central differences. */
+function carryByDerivatives(
+  measure: Measure,
   parameters: Float64Array,
   influences: Float64Array,
   width: number,
-): Float64Array {
+): Carry {
   const p = parameters.length;
-  const out = new Float64Array(p * width);
+  const slopes = new Float64Array(p * width);
   const moved = parameters.slice();
   for (let i = 0; i < p; i++) {
     let square = 0;
@@ -117,9 +135,15 @@ function differentiate(
     moved[i] = parameters[i] - step;
     const below = measure(moved);
     moved[i] = parameters[i];
-    for (let j = 0; j < width; j++) out[i * width + j] = (above[j] - below[j]) / (2 * step);
+    for (let j = 0; j < width; j++) slopes[i * width + j] = (above[j] - below[j]) / (2 * step);
   }
-  return out;
+  return (rows) => multiplyRows(rows, slopes, p, width);
+}
+
+/** From shape (p, columns) to shape (columns, p). */
+function transpose(values: Float64Array, p: number): Float64Array {
+  const columns = values.length / p;
+  return Float64Array.from(values, (_, at) => values[(at % p) * columns + Math.floor(at / p)]);
 }
 
 /** Rows of shape (count, p) times a matrix of shape (p, width). */

@@ -11,6 +11,7 @@ import type { TestedParameter, TestResult } from './TestResult.js';
 
 /** A verdict with the p-value that counts, and how it was come by. */
 export interface JudgedVerdict extends Verdict {
+  readonly p: number;
   readonly method: 'theory' | 'simulation';
 }
 

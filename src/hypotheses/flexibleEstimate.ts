@@ -16,9 +16,9 @@ import { estimateLikelihood } from '../estimation/likelihood/estimateLikelihood.
 import { planEstimation } from '../estimation/planEstimation.js';
 import type { BasisSpec } from '../fields/Basis.js';
 import type { FieldForm } from '../fields/CoefficientField.js';
+import { quantileSorted } from '../numerics/statistics/quantile.js';
 import { countPositions, type TrackSet } from '../tracks/TrackSet.js';
 import { checkTrackLengths } from '../tracks/usableTracks.js';
-import type { VisitedRegion } from '../tracks/visitedRegion.js';
 
 /** The planned coefficients, by their names in the plan: `force` is the drift at first order, `noise` the diffusion. */
 export type PlannedField = 'force' | 'friction' | 'noise';
@@ -28,7 +28,7 @@ export interface FlexiblePlan {
   readonly tracks: TrackSet;
   readonly plan: EstimationPlan;
   /** Basis of the coefficients in question, over which modes are formed. */
-  readonly basis: BasisSpec;
+  readonly basis: SplineSpec;
 }
 
 export interface FlexibleEstimate extends FlexiblePlan {
@@ -37,10 +37,13 @@ export interface FlexibleEstimate extends FlexiblePlan {
 
 type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
 
-const SPLINES = [14, 6, 4] as const; // per axis, by dimensions: room for the modes that are looked at, and some more
+const SPLINES = [14, 5, 4] as const; // per axis, by dimensions: room for the modes that are looked at, and some more
 const MOST_STRETCHES = 250; // degrees of freedom of the covariance; more hardly narrow an F law
 const SHORTEST_STRETCH = 80; // positions: many times what a difference spans or a filter remembers
-const POSITIONS_PER_FUNCTION = 60; // fewer and the regression gets ragged
+const POSITIONS_PER_FUNCTION = 60; // fewer and the estimate gets ragged
+const OUTERMOST_POSITIONS = 100; // on either side of an axis …
+const OUTERMOST_SHARE = 0.01; // … but at most this share
+const RELAXATIONS_PER_FUNCTION = 40; // the same for friction, which is learnt once per relaxation time and axis
 
 /**
  * Estimates anew with the named coefficients flexible.
@@ -76,7 +79,8 @@ export function planFlexibly(
   const usable = checkTrackLengths(tracks, order).tracks;
   const study = { ...fit.study, frictionForm: frictionForm as typeof fit.study.frictionForm };
   const planned = planEstimation(usable, study, order, null, fit.visited);
-  const basis = testBasis(fit.visited, usable);
+  const { relaxationTime } = fit.survey;
+  const basis = testBasis(usable, typeof relaxationTime === 'number' ? relaxationTime : null);
   const loosen = (name: PlannedField): FieldPlan => {
     const field = planned[name];
     const isFine = field.basis?.kind === 'spline' && countFunctions(field.basis) >= countFunctions(basis);
@@ -108,28 +112,47 @@ function countFunctions(spline: SplineSpec): number {
   return spline.counts.reduce((product, count) => product * count, 1);
 }
 
-function testBasis(visited: VisitedRegion, tracks: TrackSet): SplineSpec {
-  const { dimensions: d, periods } = tracks;
-  const affordable = Math.floor((countPositions(tracks) / POSITIONS_PER_FUNCTION) ** (1 / d));
-  const count = Math.max(4, Math.min(SPLINES[d - 1], affordable));
+/**
+ * Splines over the box that holds all but the outermost positions along each open axis: beyond, where single turning
+ * points would decide, the coefficients are held at their edge.
+ */
+function testBasis(tracks: TrackSet, relaxationTime: number | null): SplineSpec {
+  const { dimensions: d, periods, samplingInterval, positions } = tracks;
+  const n = countPositions(tracks);
+  const relaxations = relaxationTime === null ? Infinity : (n * d * samplingInterval) / relaxationTime;
+  const functions = Math.min(n / POSITIONS_PER_FUNCTION, relaxations / RELAXATIONS_PER_FUNCTION);
+  const count = Math.max(4, Math.min(SPLINES[d - 1], Math.floor(functions ** (1 / d))));
+  const outside = Math.min(OUTERMOST_SHARE, OUTERMOST_POSITIONS / n);
+  const box = periods.map((period, axis) => {
+    if (period > 0) return [0, period];
+    const along = Float64Array.from({ length: n }, (_, row) => positions[row * d + axis]).sort();
+    return [quantileSorted(along, outside), quantileSorted(along, 1 - outside)];
+  });
   return {
     kind: 'spline',
     counts: new Array<number>(d).fill(count),
-    low: periods.map((period, axis) => (period > 0 ? 0 : visited.low[axis])),
-    high: periods.map((period, axis) => (period > 0 ? period : visited.high[axis])),
+    low: box.map(([low]) => low),
+    high: box.map(([, high]) => high),
     periods: [...periods],
   };
 }
 
-/** Rows evenly spaced through the recording: places in the measure of the time spent there, shape (m, d). */
-export function pickOccupancyNodes(tracks: TrackSet, most: number): Float64Array {
+/**
+ * Rows evenly spaced through the recording, those outside the box of the splines left out: places in the measure of the
+ * time spent there, shape (m, d).
+ */
+export function pickOccupancyNodes({ tracks, basis }: FlexiblePlan, most: number): Float64Array {
   const { dimensions: d, positions } = tracks;
   const n = countPositions(tracks);
   const count = Math.min(n, most);
-  const nodes = new Float64Array(count * d);
+  const nodes: number[] = [];
   for (let node = 0; node < count; node++) {
     const row = Math.floor(((node + 0.5) * n) / count);
-    for (let axis = 0; axis < d; axis++) nodes[node * d + axis] = positions[row * d + axis];
+    const place = positions.subarray(row * d, row * d + d);
+    const isInside = place.every(
+      (value, axis) => basis.periods[axis] > 0 || (value >= basis.low[axis] && value <= basis.high[axis]),
+    );
+    if (isInside) nodes.push(...place);
   }
-  return nodes;
+  return Float64Array.from(nodes);
 }

@@ -1,5 +1,6 @@
-/** The verdict on a statement: nested levels of detail, one p-value, parameters with intervals. */
+/** How far a statement is from the contrasts, at nested levels of detail. */
 
+import { NumericalError } from '../errors.js';
 import type { Contrasts } from './contrasts.js';
 import { countComparisons, fitStatement, type StatementFit, type StatementProblem } from './fitStatement.js';
 import { correctForLevels, judgeHotelling } from './nestedLevels.js';
@@ -22,8 +23,6 @@ export interface Verdict {
   readonly levels: readonly Level[];
   /** The level with the smallest p-value. */
   readonly strongest: Level;
-  /** p-value of the statement, corrected for the levels. */
-  readonly p: number;
   /** The fit at the most detailed level. */
   readonly fit: StatementFit;
   readonly problem: StatementProblem;
@@ -32,17 +31,12 @@ export interface Verdict {
 const DETAIL = [1, 2, 3, 5] as const; // modes beyond those the parameters need, from smooth to fine; finer ones live at the edges
 const BLOCKS_PER_COMPARISON = 5; // fewer and the covariance is known too badly to weigh by
 
-/**
- * Judges a statement.
- *
- * @param seed  of the simulated law of the smallest p-value
- */
+/** Judges a statement at every level the data can carry. */
 export function judgeStatement(
   statement: Statement,
   contrasts: Contrasts,
   nodes: Float64Array,
   modes: OccupancyModes,
-  seed: number,
 ): Verdict {
   const rows = statement.residualNames.length;
   const parameters = statement.parameterNames.length;
@@ -56,17 +50,27 @@ export function judgeStatement(
     const problem = { statement, contrasts, nodes, modes, modeCount };
     return { problem, fit: fitStatement(problem) };
   });
+  if (fits.some(({ fit }) => !Number.isFinite(fit.statistic))) {
+    throw new NumericalError(
+      `the statement about ${statement.residualNames.join(', ') || statement.extraNames.join(', ')} has no value near these data for any parameters tried; give start values with --start, or a formula that is positive where the tracks have been`,
+      { residuals: [...statement.residualNames] },
+    );
+  }
   const levels = fits.map(({ problem, fit }): Level => {
     const between = countComparisons(problem) - parameters;
     const judged = judgeHotelling(fit.statistic, between, freedom);
     return { modes: problem.modeCount, distance: fit.statistic, between, ...judged };
   });
   const strongest = levels.reduce((best, level) => (level.p < best.p ? level : best));
-  const sizes = levels.map(({ between }) => between);
   return {
     levels,
     strongest,
-    p: correctForLevels(sizes, freedom, strongest.p, seed),
     ...fits[fits.length - 1],
   };
+}
+
+/** p-value of a statement by theory: the smallest of the levels', corrected for having looked at all. */
+export function computeP({ levels, strongest, problem }: Verdict, seed: number): number {
+  const sizes = levels.map(({ between }) => between);
+  return correctForLevels(sizes, problem.contrasts.blocks - 1, strongest.p, seed);
 }

@@ -7,6 +7,7 @@ import { imposeMatrix, imposeVector } from './imposeField.js';
 import { entryOf, isLogarithmic, readColumns } from './readColumns.js';
 import { identity, type Statement } from './Statement.js';
 import { proposeStarts } from './proposeStarts.js';
+import type { ConcentrationReader } from './readConcentration.js';
 
 /** A formula with what is known of its parameters beforehand. */
 export interface Law {
@@ -28,12 +29,18 @@ export function freeParameters(law: Law): string[] {
  *
  * @param columnNames  as in `evaluate`; more than one where a law is meant for every axis
  * @param model  of the flexible fit: decides whether the law is compared on a logarithmic scale
+ * @param concentration  for formulas that know the concentration beside the coordinates
  */
-export function createLawStatement(law: Law, columnNames: readonly string[], model: Model): Statement {
+export function createLawStatement(
+  law: Law,
+  columnNames: readonly string[],
+  model: Model,
+  concentration: ConcentrationReader | null = null,
+): Statement {
   const { dimensions } = model;
   const logarithmic = isLogarithmic(model, columnNames);
   const names = freeParameters(law);
-  const evaluateInto = createLawEvaluator(law);
+  const evaluateInto = createLawEvaluator(law, dimensions, concentration);
   return {
     parameterNames: names,
     columnNames,
@@ -57,7 +64,7 @@ export function createLawStatement(law: Law, columnNames: readonly string[], mod
     impose: (at, parameters, nodes) => imposeLaw(at, columnNames, evaluateInto, parameters, nodes),
     starts: (columns, nodes) => {
       const values = logarithmic ? columns.map((column) => column.map(Math.exp)) : columns;
-      return proposeStarts(law, values, nodes, dimensions);
+      return proposeStarts(law, evaluateInto, values, nodes, dimensions);
     },
   };
 }
@@ -66,7 +73,7 @@ export function createLawStatement(law: Law, columnNames: readonly string[], mod
 function imposeLaw(
   model: Model,
   columnNames: readonly string[],
-  evaluateInto: ReturnType<typeof createLawEvaluator>,
+  evaluateInto: LawEvaluator,
   parameters: ArrayLike<number>,
   nodes: Float64Array,
 ): Model {
@@ -115,17 +122,48 @@ function imposeLaw(
   );
 }
 
-/** Writes the law's values at places, given its free parameters. */
+/** Writes a law's values at places, shape (m, d), given its free parameters. */
+export type LawEvaluator = (parameters: ArrayLike<number>, places: Float64Array, out: Float64Array) => void;
+
+/** @param concentration  where the formula knows the concentration beside the coordinates */
 export function createLawEvaluator(
   law: Law,
-): (parameters: ArrayLike<number>, places: Float64Array, out: Float64Array) => void {
+  d: number,
+  concentration: ConcentrationReader | null = null,
+): LawEvaluator {
   const { formula, fixed } = law;
   const free = freeParameters(law);
   const all = Float64Array.from(formula.parameters, (name) => fixed[name] ?? 0);
   const slots = free.map((name) => formula.parameters.indexOf(name));
-  const d = formula.coordinates.length;
+  const variables = createVariables(formula, d, concentration);
   return (parameters, places, out) => {
     for (let i = 0; i < slots.length; i++) all[slots[i]] = parameters[i];
-    for (let place = 0; place < out.length; place++) out[place] = formula.evaluate(places, place * d, all);
+    const { values, width } = variables(places);
+    for (let place = 0; place < out.length; place++)
+      out[place] = formula.evaluate(values, place * width, all);
+  };
+}
+
+/** The variables of a formula at places: the coordinates, and behind them the concentration where it is known. */
+function createVariables(
+  formula: Formula,
+  d: number,
+  concentration: ConcentrationReader | null,
+): (places: Float64Array) => { values: Float64Array; width: number } {
+  if (concentration === null || formula.coordinates.length === d)
+    return (places) => ({ values: places, width: d });
+  let last: Float64Array | null = null; // laws are asked for the same nodes again and again
+  let extended = new Float64Array(0);
+  return (places) => {
+    if (places !== last) {
+      const column = concentration(places);
+      extended = new Float64Array(column.length * (d + 1));
+      for (let place = 0; place < column.length; place++) {
+        extended.set(places.subarray(place * d, place * d + d), place * (d + 1));
+        extended[place * (d + 1) + d] = column[place];
+      }
+      last = places;
+    }
+    return { values: extended, width: d + 1 };
   };
 }

@@ -6,6 +6,8 @@
  * wall to the centre of the particle, h = q − wall.
  */
 
+import { CONCENTRATION } from './readConcentration.js';
+
 export interface NamedLaw {
   readonly name: string;
   /** The law in words. */
@@ -16,6 +18,8 @@ export interface NamedLaw {
   readonly along: 'first' | 'last';
   /** Parameters held unless the user says otherwise. */
   readonly fixed?: Readonly<Record<string, number>>;
+  /** A column of the table that the law speaks of besides the coordinates. */
+  readonly needs?: typeof CONCENTRATION;
   readonly source: string;
   readonly range: string;
 }
@@ -79,6 +83,20 @@ export const NAMED_LAWS: readonly NamedLaw[] = [
     along: 'first',
     source: 'definition',
     range: 'everywhere; |a| < 1 keeps it positive',
+  },
+  {
+    name: 'crowding',
+    about: 'growth in proportion to a local concentration',
+    formula: {
+      friction: 'c0*(1 + k*concentration)',
+      diffusion: 'c0/(1 + k*concentration)',
+    },
+    along: 'first',
+    needs: CONCENTRATION,
+    source:
+      'first term of an expansion in the concentration, as Einstein, Ann. Phys. 19 (1906) 289, for the viscosity of suspensions (from memory)',
+    range:
+      'low concentrations, k × concentration well below 1; needs a column: --columns concentration=NAME in the fit',
   },
   {
     name: 'stokes',

@@ -7,6 +7,7 @@ import { createConservativeStatement } from './conservativeStatement.js';
 import type { PlannedField } from './flexibleEstimate.js';
 import { createIsotropyStatement } from './isotropyStatement.js';
 import { createLawStatement, type Law } from './lawStatement.js';
+import type { ConcentrationReader } from './readConcentration.js';
 import { distinctColumnNames, distinctTemperatures, isLogarithmic } from './readColumns.js';
 import { differenceSteps } from './readForce.js';
 import { resolveLawField } from './resolveLawField.js';
@@ -31,7 +32,7 @@ export interface TestPlan {
   readonly frictionForm?: 'matrix';
   /** What is stated, in words that follow "the statement that". */
   readonly statement: string;
-  createStatements(model: Model, nodes: Float64Array): Statement[];
+  createStatements(model: Model, nodes: Float64Array, concentration: ConcentrationReader | null): Statement[];
 }
 
 /**
@@ -128,7 +129,8 @@ export function planTest(fit: FitResult, request: PlannedRequest): TestPlan {
       return {
         fields: resolved.fields,
         statement: '',
-        createStatements: (at) => laws.map((law) => createLawStatement(law, resolved.columns, at)),
+        createStatements: (at, _nodes, concentration) =>
+          laws.map((law) => createLawStatement(law, resolved.columns, at, concentration)),
       };
     }
   }

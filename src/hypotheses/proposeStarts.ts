@@ -10,19 +10,21 @@ import {
 } from '../numerics/linear/choleskyFactor.js';
 import { randomStream, type RandomStream } from '../numerics/random/RandomStream.js';
 import { meanOf } from '../numerics/statistics/meanOf.js';
-import { createLawEvaluator, freeParameters, type Law } from './lawStatement.js';
+import { freeParameters, type Law, type LawEvaluator } from './lawStatement.js';
 
 const COMBINATIONS = 400;
 const SEED = 0; // the starts are part of the method, not of the study
 const ROWS = 200; // nodes the linear parameters are set by
 
 /**
+ * @param evaluate  the law's values given its free parameters
  * @param columns  K columns at the nodes
  * @param nodes  shape (m, d)
  * @returns points of the free parameters; those given in `law.start` keep the value given
  */
 export function proposeStarts(
   law: Law,
+  evaluate: LawEvaluator,
   columns: readonly Float64Array[],
   nodes: Float64Array,
   d: number,
@@ -34,12 +36,12 @@ export function proposeStarts(
   const { places, response } = thin(columns, nodes, d);
   const sizes = listSizes(response, places, d);
   const stream = randomStream(SEED, 'starts of a law');
-  const linear = findLinear(law, names, given, places, stream);
+  const linear = findLinear(evaluate, names, given, places, response.length, stream);
   const starts: Float64Array[] = [];
   const trials = names.length === linear.length ? 1 : COMBINATIONS;
   for (let trial = 0; trial < trials; trial++) {
     const start = Float64Array.from(given, (value) => value ?? sizes[stream.integer(sizes.length)]);
-    if (setLinear(law, linear, start, places, response)) starts.push(start);
+    if (setLinear(evaluate, linear, start, places, response)) starts.push(start);
   }
   return starts;
 }
@@ -90,14 +92,13 @@ function deviationOf(values: Float64Array): number {
  * equal steps, wherever the others stand.
  */
 function findLinear(
-  law: Law,
+  evaluate: LawEvaluator,
   names: readonly string[],
   given: readonly (number | null)[],
   places: Float64Array,
+  rows: number,
   stream: RandomStream,
 ): number[] {
-  const evaluate = createLawEvaluator(law);
-  const rows = places.length / law.formula.coordinates.length;
   const value = (point: Float64Array): Float64Array => {
     const out = new Float64Array(rows);
     evaluate(point, places, out);
@@ -130,14 +131,13 @@ function findLinear(
 
 /** Sets the linear parameters by plain least squares; false where the law has no value or they cannot be told apart. */
 function setLinear(
-  law: Law,
+  evaluate: LawEvaluator,
   linear: readonly number[],
   start: Float64Array,
   places: Float64Array,
   response: Float64Array,
 ): boolean {
   const p = linear.length;
-  const evaluate = createLawEvaluator(law);
   const rows = response.length;
   const rest = new Float64Array(rows);
   for (const i of linear) start[i] = 0;

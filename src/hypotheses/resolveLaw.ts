@@ -5,10 +5,13 @@ import { UsageError } from '../errors.js';
 import type { FormulaReader } from '../fields/formula.js';
 import type { Law } from './lawStatement.js';
 import { NAMED_LAWS, writeNamedLaw } from './namedLaws.js';
+import { CONCENTRATION } from './readConcentration.js';
 
 export interface LawContext {
   readonly readFormula: FormulaReader;
   readonly coordinates: readonly string[];
+  /** Whether the recording has a concentration at every position, which laws may then speak of. */
+  readonly hasConcentration?: boolean;
   /** What the law is about, as in --field. */
   readonly field: string;
   /** Laws of the study, by name. */
@@ -63,7 +66,14 @@ function resolveLaw(text: string, context: LawContext): Law {
     ownStart: Readonly<Record<string, number>>,
     ownFixed: Readonly<Record<string, number>>,
   ): Law {
-    const formula = readFormula(formulaText, { coordinates, parameters: 'free' });
+    const variables = context.hasConcentration ? [...coordinates, CONCENTRATION] : coordinates;
+    const formula = readFormula(formulaText, { coordinates: variables, parameters: 'free' });
+    if (formula.parameters.includes(CONCENTRATION)) {
+      throw new UsageError(
+        `--law "${text}" speaks of the concentration, of which the fit knows nothing; fit again with --columns concentration=NAME`,
+        { option: '--law', value: text },
+      );
+    }
     const pick = (values: Readonly<Record<string, number>>): Record<string, number> =>
       Object.fromEntries(Object.entries(values).filter(([key]) => formula.parameters.includes(key)));
     return {

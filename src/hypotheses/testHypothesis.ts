@@ -10,9 +10,10 @@ import type { TrackSet } from '../tracks/TrackSet.js';
 import { measureContrasts } from './contrasts.js';
 import { describeLaws, describeVerdict, type JudgedVerdict } from './describeVerdicts.js';
 import { estimateFlexibly, type FlexibleEstimate, pickOccupancyNodes } from './flexibleEstimate.js';
-import { judgeStatement, type Verdict } from './judgeStatement.js';
+import { computeP, judgeStatement, type Verdict } from './judgeStatement.js';
 import { findOccupancyModes, type OccupancyModes } from './occupancyModes.js';
 import { planTest, type PlannedRequest, type TestPlan } from './planTest.js';
+import { createConcentrationReader } from './readConcentration.js';
 import { simulateP } from './simulateP.js';
 import type { Statement } from './Statement.js';
 import type { TestResult } from './TestResult.js';
@@ -26,11 +27,14 @@ export interface TestRequest extends PlannedRequest {
    * Called where the recording is too small for theory; without it theory has to do.
    */
   readonly simulate?: (model: Model, localizationError: readonly number[], index: number) => TrackSet;
+  /** How many are simulated; default 99: p-values in steps of 0.01. */
+  readonly simulations?: number;
   readonly onProgress?: (done: number, total: number) => void;
 }
 
 const NODES = 1000; // places that stand for the occupancy
 const MODES = 8; // beyond those the parameters need
+const SIMULATIONS = 99;
 const FEW_BLOCKS = 30; // below this the covariance is too rough for Hotelling's law to be trusted
 
 /**
@@ -45,7 +49,7 @@ const FEW_BLOCKS = 30; // below this the covariance is too rough for Hotelling's
  */
 export function testHypothesis(fit: FitResult, tracks: TrackSet, request: TestRequest): TestResult {
   const plan = planTest(fit, request);
-  const trial = runTrial(fit, tracks, request, plan);
+  const trial = runTrial(fit, tracks, plan);
   const judged = trial.verdicts.map((verdict, which) => settle(verdict, which, fit, request, plan, trial));
   return request.hypothesis === 'law'
     ? describeLaws(fit, request, judged)
@@ -59,15 +63,19 @@ interface Trial {
   readonly verdicts: readonly Verdict[];
 }
 
-function runTrial(fit: FitResult, tracks: TrackSet, { seed }: TestRequest, plan: TestPlan): Trial {
+function runTrial(fit: FitResult, tracks: TrackSet, plan: TestPlan): Trial {
   const flexible = estimateFlexibly(fit, tracks, plan.fields, plan.frictionForm);
-  const nodes = pickOccupancyNodes(flexible.tracks, NODES);
-  const statements = plan.createStatements(flexible.estimate.model, nodes);
+  const nodes = pickOccupancyNodes(flexible, NODES);
+  const statements = plan.createStatements(
+    flexible.estimate.model,
+    nodes,
+    createConcentrationReader(flexible),
+  );
   const most = Math.max(...statements.map(({ parameterNames }) => parameterNames.length)) + MODES;
   const modes = findOccupancyModes(flexible.basis, nodes, fit.visited, most);
   checkParameterCounts(statements, modes);
   const contrasts = measureContrasts(flexible.estimate, statements[0], nodes, modes);
-  const verdicts = statements.map((statement) => judgeStatement(statement, contrasts, nodes, modes, seed));
+  const verdicts = statements.map((statement) => judgeStatement(statement, contrasts, nodes, modes));
   return { flexible, nodes, verdicts };
 }
 
@@ -90,15 +98,18 @@ function settle(
   plan: TestPlan,
   { flexible, nodes }: Trial,
 ): JudgedVerdict {
-  const { simulate } = request;
+  const { simulate, seed } = request;
   const { contrasts, statement } = verdict.problem;
-  if (simulate === undefined || contrasts.blocks >= FEW_BLOCKS) return { ...verdict, method: 'theory' };
+  if (simulate === undefined || contrasts.blocks >= FEW_BLOCKS) {
+    return { ...verdict, p: computeP(verdict, seed), method: 'theory' };
+  }
   const { model, localizationError } = flexible.estimate;
   const imposed = statement.impose(model, verdict.fit.parameters, nodes);
   const errors = localizationError.map(({ value }) => value);
   const p = simulateP(
-    verdict.p,
-    (index) => runTrial(fit, simulate(imposed, errors, index), request, plan).verdicts[which].p,
+    verdict.strongest.p,
+    (index) => runTrial(fit, simulate(imposed, errors, index), plan).verdicts[which].strongest.p,
+    request.simulations ?? SIMULATIONS,
     request.onProgress,
   );
   return { ...verdict, p, method: 'simulation' };

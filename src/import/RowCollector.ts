@@ -29,7 +29,8 @@ export interface CollectedRows {
   /** Length n: line in the track's file. */
   readonly lines: Int32Array;
   readonly hasErrors: boolean;
-  /** Shape (n, 1 + d), or (n, 1 + 2 d) with errors: time or frame, coordinates, errors, as in the table. */
+  readonly hasConcentrations: boolean;
+  /** Per row: time or frame, d coordinates, d errors if there are any, concentration if there is one, as in the table. */
   readonly numbers: Float64Array;
 }
 
@@ -85,7 +86,8 @@ export class RowCollector implements TableConsumer {
     this.#headerLine = line;
     this.#mark = dialect.decimalCommas ? 0 : POINT;
     this.#markLine = 0;
-    this.#numberPlaces = [columns.time, ...columns.coordinates, ...(columns.errors ?? [])];
+    const concentration = columns.concentration === -1 ? [] : [columns.concentration];
+    this.#numberPlaces = [columns.time, ...columns.coordinates, ...(columns.errors ?? []), ...concentration];
     if (columns.track === -1) this.untrackedFiles.push(this.#file);
     for (const name of columns.leftOut) this.leftOutColumns.add(name);
   }
@@ -118,7 +120,8 @@ export class RowCollector implements TableConsumer {
       return;
     }
     if (columns.countsFrames && !Number.isInteger(values[start])) this.#refuseFrame(cells[places[0]], line);
-    for (let i = 1 + columns.coordinates.length; i < width; i++) {
+    const firstError = 1 + columns.coordinates.length;
+    for (let i = firstError; i < firstError + (columns.errors?.length ?? 0); i++) {
       if (values[start + i] < 0) this.#refuseError(cells[places[i]], places[i], line);
     }
     this.#trackOfRow.push(this.#findTrack(name, columns, cells, line));
@@ -146,6 +149,7 @@ export class RowCollector implements TableConsumer {
       trackOfRow: this.#trackOfRow.view(),
       lines: this.#lines.view(),
       hasErrors: (columns?.errors ?? null) !== null,
+      hasConcentrations: (columns?.concentration ?? -1) !== -1,
       numbers: this.#numbers.view(),
     };
   }

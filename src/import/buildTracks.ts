@@ -50,9 +50,11 @@ export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTr
   const width = rowWidth(rows);
   const positions = new Float64Array(count * dimensions);
   const errors = rows.hasErrors ? new Float64Array(count * dimensions) : null;
+  const concentrations = rows.hasConcentrations ? new Float64Array(count) : null;
   for (let i = 0; i < count; i++) {
     const start = order[i] * width + 1;
     times[i] *= timeScale;
+    if (concentrations !== null) concentrations[i] = numbers[order[i] * width + width - 1];
     for (let axis = 0; axis < dimensions; axis++) {
       positions[i * dimensions + axis] = numbers[start + axis] * options.lengthScale;
       if (errors === null) continue;
@@ -74,6 +76,7 @@ export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTr
       times,
       positions,
       localizationErrors: errors,
+      ...(concentrations === null ? {} : { concentrations }),
       trackTypes: rows.hasTypes ? collected.map(({ type }) => type ?? '') : null,
       samplingInterval: interval.samplingInterval * timeScale,
       periods: options.periods,
@@ -86,8 +89,8 @@ export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTr
 }
 
 /** Numbers per row. */
-function rowWidth({ dimensions, hasErrors }: CollectedRows): number {
-  return 1 + (hasErrors ? 2 : 1) * dimensions;
+function rowWidth({ dimensions, hasErrors, hasConcentrations }: CollectedRows): number {
+  return 1 + (hasErrors ? 2 : 1) * dimensions + (hasConcentrations ? 1 : 0);
 }
 
 function extractTimes(rows: CollectedRows): Float64Array {

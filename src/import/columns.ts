@@ -17,6 +17,7 @@ export const COLUMN_ROLES = [
   'error_x',
   'error_y',
   'error_z',
+  'concentration',
 ] as const;
 
 export type ColumnRole = (typeof COLUMN_ROLES)[number];
@@ -34,6 +35,8 @@ export interface TableColumns {
   readonly coordinates: readonly number[];
   /** Length d, or null where the table has no error columns. */
   readonly errors: readonly number[] | null;
+  /** Read only where `--columns` names it, since nothing but laws of friction looks at it. */
+  readonly concentration: number;
   /** Coordinate columns left out because `--columns` names others. */
   readonly leftOut: readonly string[];
 }
@@ -119,7 +122,10 @@ export function findColumns(
     );
   }
   const coordinates = axes.map(place);
-  const used = [track, time, type, ...coordinates, ...errors].filter((column) => column !== -1);
+  const concentration = mapping.concentration === undefined ? -1 : place('concentration');
+  const used = [track, time, type, ...coordinates, ...errors, concentration].filter(
+    (column) => column !== -1,
+  );
   const twice = used.find((column, i) => used.indexOf(column) !== i);
   if (twice !== undefined) {
     throw new UsageError(
@@ -138,6 +144,7 @@ export function findColumns(
     type,
     coordinates,
     errors: missing === -1 ? errors : null,
+    concentration,
     leftOut: found.filter((axis) => !axes.includes(axis) && !coordinates.includes(place(axis))),
   };
 }

@@ -22,6 +22,8 @@ export interface TrackSet {
   readonly positions: Float64Array;
   /** Shape (n, d); standard deviation of the localization error per position, length; null where the table has none. */
   readonly localizationErrors: Float64Array | null;
+  /** Length n; a local concentration per position, in a unit of the user's; absent where no column was named for it. */
+  readonly concentrations?: Float64Array;
   /** Particle type per track, or null where the table has no such column. */
   readonly trackTypes: readonly string[] | null;
   /** The time between neighbouring frames (the usual one, where it varies). */

@@ -75,7 +75,7 @@ export function selectTracks(tracks: TrackSet, indices: ArrayLike<number>): Trac
     return gathered;
   };
   const pick = (values: readonly string[]): string[] => Array.from(indices, (track) => values[track]);
-  const { localizationErrors: errors, trackTypes } = tracks;
+  const { localizationErrors: errors, trackTypes, concentrations } = tracks;
   return {
     ...tracks,
     trackNames: pick(tracks.trackNames),
@@ -84,5 +84,6 @@ export function selectTracks(tracks: TrackSet, indices: ArrayLike<number>): Trac
     times: gather(tracks.times, 1),
     positions: gather(tracks.positions, dimensions),
     localizationErrors: errors === null ? null : gather(errors, dimensions),
+    ...(concentrations === undefined ? {} : { concentrations: gather(concentrations, 1) }),
   };
 }

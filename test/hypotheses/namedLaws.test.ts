@@ -71,6 +71,13 @@ describe('laws near a wall', () => {
   });
 
   it('friction is the inverse of the mobility', () => {
+    const VALUES: Readonly<Record<string, number>> = {
+      c0: 1,
+      radius: 1,
+      wall: 0.2,
+      k: 0.5,
+      concentration: 0.3,
+    };
     for (const law of NAMED_LAWS) {
       if (typeof law.formula === 'string' || law.name === 'stokes') continue;
       const values = ['friction', 'diffusion'].map((coefficient) => {
@@ -81,7 +88,7 @@ describe('laws near a wall', () => {
         return formula.evaluate(
           [3.1],
           0,
-          formula.parameters.map((name) => ({ c0: 1, radius: 1, wall: 0.2 })[name] ?? NaN),
+          formula.parameters.map((name) => VALUES[name] ?? Number.NaN),
         );
       });
       expect(values[0] * values[1]).toBeCloseTo(1, 12);

@@ -2,16 +2,19 @@
 
 import { UsageError } from '../../errors.js';
 import { loadFormulaReader } from '../../fields/formula.js';
+import { createDesign, simulateDesign } from '../../checks/simulateDesign.js';
 import type { FitDocument } from '../../documents/FitDocument.js';
 import { completeStudy } from '../../documents/parseStudy.js';
 import type { Study } from '../../documents/Study.js';
 import type { Law } from '../../hypotheses/lawStatement.js';
 import { NAMED_LAWS } from '../../hypotheses/namedLaws.js';
+import { planTest } from '../../hypotheses/planTest.js';
 import { resolveLaws } from '../../hypotheses/resolveLaw.js';
-import { testHypothesis } from '../../hypotheses/testHypothesis.js';
+import { testHypothesis, type TestRequest } from '../../hypotheses/testHypothesis.js';
 import type { HypothesisName, TestResult } from '../../hypotheses/TestResult.js';
 import { formatComparisonSummary, formatLawShelf, type ListedLaw } from '../../report/terminal/formatLaws.js';
 import { formatTestSummary } from '../../report/terminal.js';
+import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { Call } from '../commandTable.js';
 import { readFit } from '../documents.js';
 import { readRecordingOfFit } from '../recordings.js';
@@ -41,19 +44,44 @@ export async function runTest({ operands, options, terminal }: Call): Promise<vo
   const hypothesis = chooseHypothesis(options);
   const fit = await readFit(fitPath, terminal);
   const laws = hypothesis === 'law' ? await readLaws(fit, options, ownLaws) : undefined;
+  planTest(fit, { hypothesis, field: options.field as string | undefined, laws }); // a slip costs no waiting
   const { tracks } = await readRecordingOfFit(fit, terminal.resolve(fitPath), overrides, terminal);
-  const result = testHypothesis(fit, tracks, {
-    hypothesis,
-    confidence: (options.confidence as number | undefined) ?? fit.study.confidence,
-    seed: fit.study.seed,
-    field: options.field as string | undefined,
-    laws,
-  });
+  const progress = await terminal.startProgress('simulating');
+  let result: TestResult;
+  try {
+    result = testHypothesis(fit, tracks, {
+      hypothesis,
+      confidence: (options.confidence as number | undefined) ?? fit.study.confidence,
+      seed: fit.study.seed,
+      field: options.field as string | undefined,
+      laws,
+      simulate: createRecorder(fit, tracks),
+      onProgress: progress.update,
+    });
+  } finally {
+    progress.stop();
+  }
   await deliver(
     wantsJson(options) ? formatJson(result) : formatForPeople(result, terminal),
     options.output,
     terminal,
   );
+}
+
+/** Simulates the recording under another model of the same kind, for p-values of small recordings. */
+function createRecorder(fit: FitDocument, tracks: TrackSet): NonNullable<TestRequest['simulate']> {
+  return (model, localizationError, index) => {
+    const errors = localizationError.map((value) => ({ value, low: value, high: value }));
+    const imposed: FitDocument = {
+      ...fit,
+      model: model as FitDocument['model'],
+      localizationError: errors,
+      uncertainty: { ...fit.uncertainty, replicates: [] },
+    };
+    const design = createDesign(imposed, tracks);
+    const positions = simulateDesign(design, null, fit.study.seed, `test-${index}`, false);
+    return { ...tracks, positions };
+  };
 }
 
 function formatForPeople(result: TestResult, terminal: Terminal): string {
@@ -99,6 +127,7 @@ async function readLaws(fit: FitDocument, options: Call['options'], ownLaws: Stu
   return resolveLaws(law, {
     readFormula: await loadFormulaReader(),
     coordinates: fit.data.coordinates,
+    hasConcentration: fit.study.columns.concentration !== undefined,
     field,
     laws: { ...fit.study.laws, ...ownLaws },
     start: start ?? {},

@@ -119,8 +119,8 @@ export const UNCONVERGED: Warning = {
     'localization error and friction did not settle on each other; give the localization error with --localization-error, or record more positions',
 };
 
-/** Of the information per parameter: smooths a function only where it has a hundredth of the others' data. */
-export const LIGHT_SMOOTHING = 0.01;
+/** Of the information per parameter: smooths a function only where it has less than a tenth of the others' data. */
+export const LIGHT_SMOOTHING = 0.1;
 
 function pushGroup(
   groups: PenaltyGroup[],

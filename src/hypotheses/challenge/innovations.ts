@@ -70,7 +70,7 @@ export function measureInnovations(fit: FitResult, tracks: TrackSet): Innovation
     pass.run(parameters, null, { innovations: values, innovationVariances: variances });
     return { values, variances };
   };
-  const nodes = pickOccupancyNodes(usable, NODES);
+  const nodes = pickOccupancyNodes(flexible, NODES);
   const modes = findOccupancyModes(flexible.basis, nodes, fit.visited, MODES);
   const directions = listDirections(layout, estimate, nodes, modes);
   const scores = new Float64Array(n * directions.length);
