@@ -24,6 +24,11 @@ const lines = listBlocks('sh')
   .map((line) => line.replace(/\s+#.*$/, ''))
   .filter((line) => line.startsWith('wanderlaw ') && !line.startsWith('wanderlaw demo'));
 
+/** The words of a line as a shell would hand them over. */
+function splitWords(line: string): string[] {
+  return (line.match(/"[^"]*"|\S+/g) ?? []).map((word) => word.replace(/^"(.*)"$/, '$1'));
+}
+
 const place = new Workplace();
 afterAll(() => place.remove());
 
@@ -45,7 +50,7 @@ beforeAll(() => {
 
 describe('README', () => {
   it.each(lines)('%s', async (line) => {
-    const { status, stderr } = await place.run(line.split(/\s+/).slice(1));
+    const { status, stderr } = await place.run(splitWords(line).slice(1));
     expect(status, stderr).toBe(0);
     for (const note of stderr.split('\n').filter((each) => each !== '')) {
       expect(note).toMatch(/^wanderlaw: \S/);
