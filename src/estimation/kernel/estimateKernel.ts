@@ -27,7 +27,7 @@ import { checkSecondOrderRuns } from '../differences/residuals.js';
 import type { Estimate, EstimationPlan, FieldPlan } from '../Estimate.js';
 import { createKnotCorrection } from './correctAtKnots.js';
 import { estimateMotion, type MotionEstimate } from './estimateMotion.js';
-import { estimateNoise, type NoiseEstimate } from './estimateNoise.js';
+import { estimateNoise } from './estimateNoise.js';
 import { createKernelGrid, type KernelGrid } from './grid.js';
 
 /**
@@ -70,7 +70,7 @@ export function estimateKernel(tracks: TrackSet, plan: EstimationPlan): Estimate
   return {
     model: withParameters(model, correction.correct(parameters)),
     parameters,
-    influences: joinBlocks(motion, noise, plan.blocks.count),
+    influences: joinBlocks(motion.effects, noise.effects, plan.blocks.count),
     smoothingFactor: null,
     toModelParameters: (raw) => correction.correct(raw),
     localizationError: describeError(localization, plan, d),
@@ -91,7 +91,7 @@ export function estimateKernel(tracks: TrackSet, plan: EstimationPlan): Estimate
 const NO_MOTION: MotionEstimate = {
   parameters: new Float64Array(0),
   influences: new Float64Array(0),
-  factors: new Float64Array(0),
+  effects: new Float64Array(0),
   errorVariance: null,
   errorInfluences: null,
   bandwidths: {},
@@ -123,24 +123,14 @@ function localizationOf(
   };
 }
 
-/** Effects of the blocks on both regressions side by side, each multiplied by its factor for few blocks. */
-function joinBlocks(
-  motion: Pick<MotionEstimate, 'influences' | 'factors'>,
-  noise: Pick<NoiseEstimate, 'influences' | 'factors'>,
-  blocks: number,
-): Float64Array {
-  const parts = [motion, noise].map(({ influences, factors }) => ({
-    effects: influences.map((value, i) => value * factors[i]),
-    size: influences.length / blocks,
-  }));
-  const p = parts[0].size + parts[1].size;
-  const out = new Float64Array(blocks * p);
+/** Effects of the blocks on both regressions, side by side. */
+function joinBlocks(left: Float64Array, right: Float64Array, blocks: number): Float64Array {
+  const p1 = left.length / blocks;
+  const p2 = right.length / blocks;
+  const out = new Float64Array(left.length + right.length);
   for (let block = 0; block < blocks; block++) {
-    let at = block * p;
-    for (const { effects, size } of parts) {
-      out.set(effects.subarray(block * size, (block + 1) * size), at);
-      at += size;
-    }
+    out.set(left.subarray(block * p1, (block + 1) * p1), block * (p1 + p2));
+    out.set(right.subarray(block * p2, (block + 1) * p2), block * (p1 + p2) + p1);
   }
   return out;
 }

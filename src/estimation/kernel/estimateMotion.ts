@@ -9,7 +9,6 @@ import { joinInfluences, settleErrorVariance } from '../differences/solveForceFr
 import type { EstimationPlan } from '../Estimate.js';
 import type { BinnedMoments } from './BinnedMoments.js';
 import { chooseBandwidth, PARTS } from './chooseBandwidth.js';
-import { fewBlockFactors } from './fewBlocks.js';
 import { createFieldSmoother, type FieldSmoother } from './fieldSmoother.js';
 import type { KernelGrid } from './grid.js';
 import { addCoefficients, frictionField, type LocalField, vectorField } from './localFields.js';
@@ -23,16 +22,17 @@ import {
   visitMotionRows,
 } from './motionMoments.js';
 import { type PlugInData, referenceBandwidth, startBandwidth } from './plugInStart.js';
+import { reportEffects } from './reportEffects.js';
 import { explainAway, ROUGH_TOLERANCE, solveFields } from './solveFields.js';
-import { createWindows, type KnotWindows } from './windows.js';
+import { createWindows } from './windows.js';
 
 export interface MotionEstimate {
   /** Force or drift per axis, then friction per component: K values each, or one where the field does not vary. */
   readonly parameters: Float64Array;
-  /** Shape (B, p₁). */
+  /** Shape (B, p₁): first-order effects of the blocks. */
   readonly influences: Float64Array;
-  /** Shape (B, p₁): what the influences are to be multiplied by where few blocks carry the estimate. */
-  readonly factors: Float64Array;
+  /** Shape (B, p₁): the same as they are reported. */
+  readonly effects: Float64Array;
   /** Second order: localization variance per axis and its influences, shape (B, d). */
   readonly errorVariance: Float64Array | null;
   readonly errorInfluences: Float64Array | null;
@@ -139,7 +139,16 @@ export function estimateMotion(tracks: TrackSet, plan: EstimationPlan, grid: Ker
   return {
     ...result,
     parameters: regression.parameters,
-    factors: blockFactors(fields, grid, windows, bandwidths, blockCounts),
+    effects: reportEffects(
+      fields.map(({ components, varies }, i) => ({
+        components: components.length,
+        bandwidth: varies ? bandwidths[i] : null,
+      })),
+      result.influences,
+      grid,
+      windows,
+      blockCounts,
+    ),
     bandwidths: byName(bandwidths),
     starts: byName(starts),
     counts: plain.counts,
@@ -198,30 +207,6 @@ function blockInfluences(
     influences.set(packParameters(fields, values, regression.moments.size), block * p);
   });
   return influences;
-}
-
-/** Factors for few blocks in the layout of the influences, shape (B, p₁). */
-function blockFactors(
-  fields: readonly LocalField[],
-  grid: KernelGrid,
-  windows: KnotWindows,
-  bandwidths: readonly (readonly number[])[],
-  counts: readonly Float64Array[],
-): Float64Array {
-  const { size } = grid;
-  const factors = fields.map(({ varies }, i) =>
-    fewBlockFactors(grid, windows, varies ? bandwidths[i] : null, counts),
-  );
-  const rows = counts.map((_, block) => {
-    const values = fields.map(({ components }, i) =>
-      Float64Array.from(
-        { length: components.length * size },
-        (__, at) => factors[i][block * size + (at % size)],
-      ),
-    );
-    return packParameters(fields, values, size);
-  });
-  return Float64Array.from(rows.flatMap((row) => Array.from(row)));
 }
 
 /** Derivative of the parameters with respect to each axis' localization variance, shape (d, p₁). */

@@ -10,7 +10,6 @@ import { noisePairs } from '../differences/residualProducts.js';
 import type { EstimationPlan } from '../Estimate.js';
 import { chooseBandwidth, PARTS } from './chooseBandwidth.js';
 import type { MotionEstimate } from './estimateMotion.js';
-import { fewBlockFactors } from './fewBlocks.js';
 import { createFieldSmoother } from './fieldSmoother.js';
 import type { KernelGrid } from './grid.js';
 import { noiseField } from './localFields.js';
@@ -22,16 +21,15 @@ import {
   secondOrderRows,
 } from './noiseMoments.js';
 import { type PlugInData, referenceBandwidth, startBandwidth } from './plugInStart.js';
+import { reportEffects } from './reportEffects.js';
 import { solveFields } from './solveFields.js';
 import { createWindows } from './windows.js';
 
 export interface NoiseEstimate {
   /** Per component: K values, or one where the field does not vary. */
   readonly parameters: Float64Array;
-  /** Shape (B, p₂). */
-  readonly influences: Float64Array;
-  /** Shape (B, p₂): what the influences are to be multiplied by where few blocks carry the estimate. */
-  readonly factors: Float64Array;
+  /** Shape (B, p₂): effects of the blocks as they are reported. */
+  readonly effects: Float64Array;
   readonly bandwidths: Readonly<Record<string, readonly number[]>>;
   readonly starts: Readonly<Record<string, readonly number[]>>;
   /** Length K: rows that each knot stands for. */
@@ -80,9 +78,7 @@ export function estimateNoise(
 
   const p2 = pack(values).length;
   const influences = new Float64Array(blocks * p2);
-  const blockFactors = new Float64Array(blocks * p2);
   const { residuals, counts } = collectNoiseResiduals(tracks, plan, grid, rows, values);
-  const factors = fewBlockFactors(grid, windows, field.varies ? bandwidth : null, counts);
   residuals.forEach((vector, block) => {
     for (let component = 0; component < components; component++) {
       for (let knot = 0; knot < grid.size; knot++) {
@@ -93,13 +89,16 @@ export function estimateNoise(
       }
     }
     influences.set(pack(solveFields(moments, smoothers, vector).values[0]), block * p2);
-    const own = factors.subarray(block * grid.size, (block + 1) * grid.size);
-    blockFactors.set(pack(values.map((_, i) => own[i % grid.size])), block * p2);
   });
   return {
     parameters: pack(values),
-    influences,
-    factors: blockFactors,
+    effects: reportEffects(
+      [{ components, bandwidth: field.varies ? bandwidth : null }],
+      influences,
+      grid,
+      windows,
+      counts,
+    ),
     bandwidths: field.varies ? { [field.name]: bandwidth } : {},
     starts: field.varies ? { [field.name]: start } : {},
     counts: moments.counts,

@@ -24,19 +24,28 @@ const TAIL = 0.975; // the quantile at which the intervals are exact; the ratio 
 const LARGEST_LEVERAGE = 0.95;
 const LEAST_FREEDOM = 2; // below, the law of t has no variance and says little more than that nothing is known
 
+/** How much the blocks say at each knot. */
+export interface BlockShares {
+  /** Shape (B, K): 1/(1 − leverage). */
+  readonly leverageFactors: Float64Array;
+  /** Length K: degrees of freedom of the spread between blocks. */
+  readonly freedom: Float64Array;
+  /** Length K: ratio of Student's quantiles. */
+  readonly widening: Float64Array;
+}
+
 /**
- * Factors on the effects of blocks.
+ * Leverages of the blocks for one field.
  *
  * @param bandwidth  per axis, length; null for a global average
  * @param blockCounts  per block, length K: rows that each knot stands for
- * @returns shape (B, K)
  */
-export function fewBlockFactors(
+export function measureShares(
   grid: KernelGrid,
   windows: KnotWindows,
   bandwidth: readonly number[] | null,
   blockCounts: readonly Float64Array[],
-): Float64Array {
+): BlockShares {
   const { size } = grid;
   const blocks = blockCounts.length;
   const field: LocalField = { name: 'noise', varies: bandwidth !== null, components: [[[0, 0]]] };
@@ -46,18 +55,20 @@ export function fewBlockFactors(
     (counts) => solveFields(moments, [smoother], counts, ROUGH_TOLERANCE).values[0],
   );
   const usual = studentQuantile(TAIL, Math.max(1, blocks - 1));
-  const factors = new Float64Array(blocks * size);
+  const leverageFactors = new Float64Array(blocks * size);
+  const freedom = new Float64Array(size);
+  const widening = new Float64Array(size);
   for (let knot = 0; knot < size; knot++) {
     let squares = 0;
-    for (const leverage of leverages) squares += leverage[knot] ** 2;
-    const freedom = Math.max(LEAST_FREEDOM, 1 / squares - 1);
-    const widening = Math.max(1, studentQuantile(TAIL, freedom) / usual);
-    for (let block = 0; block < blocks; block++) {
-      const leverage = Math.max(0, Math.min(LARGEST_LEVERAGE, leverages[block][knot]));
-      factors[block * size + knot] = widening / (1 - leverage);
-    }
+    leverages.forEach((leverage, block) => {
+      squares += leverage[knot] ** 2;
+      const own = Math.max(0, Math.min(LARGEST_LEVERAGE, leverage[knot]));
+      leverageFactors[block * size + knot] = 1 / (1 - own);
+    });
+    freedom[knot] = Math.max(LEAST_FREEDOM, 1 / squares - 1);
+    widening[knot] = Math.max(1, studentQuantile(TAIL, freedom[knot]) / usual);
   }
-  return factors;
+  return { leverageFactors, freedom, widening };
 }
 
 /** A plain regression with as many rows at each knot. */

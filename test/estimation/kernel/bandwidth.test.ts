@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import { MomentCollector, type BinnedMoments } from '../../../src/estimation/kernel/BinnedMoments.js';
 import { chooseBandwidth, PARTS } from '../../../src/estimation/kernel/chooseBandwidth.js';
-import { fewBlockFactors } from '../../../src/estimation/kernel/fewBlocks.js';
+import { measureShares } from '../../../src/estimation/kernel/fewBlocks.js';
 import { createKernelGrid, type KernelGrid } from '../../../src/estimation/kernel/grid.js';
 import { noiseField } from '../../../src/estimation/kernel/localFields.js';
 import { createKnotWeights } from '../../../src/estimation/kernel/motionMoments.js';
@@ -87,10 +87,11 @@ describe('where few blocks carry the estimate', () => {
 
   it('nothing changes beyond 1/B as long as all blocks are everywhere', () => {
     const counts = Array.from({ length: blocks }, () => moments.counts.map((count) => count / blocks));
-    const factors = fewBlockFactors(grid, windows, [0.1], counts);
-    for (const factor of factors) expect(factor).toBeCloseTo(1 / (1 - 1 / blocks), 9);
-    for (const factor of fewBlockFactors(grid, windows, null, counts))
-      expect(factor).toBeCloseTo(1 / (1 - 1 / blocks), 9);
+    for (const bandwidth of [[0.1], null]) {
+      const { leverageFactors, widening } = measureShares(grid, windows, bandwidth, counts);
+      for (const factor of leverageFactors) expect(factor).toBeCloseTo(1 / (1 - 1 / blocks), 9);
+      for (const ratio of widening) expect(ratio).toBeCloseTo(1, 9);
+    }
   });
 
   it('effects grow with the share of a block and with the lack of others', () => {
@@ -102,14 +103,15 @@ describe('where few blocks carry the estimate', () => {
         return block < 2 ? 0 : count / (blocks - 2);
       }),
     );
-    const factors = fewBlockFactors(grid, windows, [0.02], counts);
+    const { leverageFactors, widening } = measureShares(grid, windows, [0.02], counts);
     const usual = studentQuantile(0.975, blocks - 1);
     const right = grid.size - 3;
     // Two equal blocks: leverage 1/2 each, and one degree of freedom, which is raised to the least that is used.
-    expect(factors[right]).toBeCloseTo((2 * studentQuantile(0.975, 2)) / usual, 6);
+    expect(leverageFactors[right]).toBeCloseTo(2, 6);
+    expect(widening[right]).toBeCloseTo(studentQuantile(0.975, 2) / usual, 6);
     const left = 3;
-    const many = studentQuantile(0.975, blocks - 3) / usual;
-    expect(factors[2 * grid.size + left]).toBeCloseTo(many / (1 - 1 / (blocks - 2)), 6);
-    expect(factors[left]).toBeCloseTo(many, 6);
+    expect(leverageFactors[2 * grid.size + left]).toBeCloseTo(1 / (1 - 1 / (blocks - 2)), 6);
+    expect(leverageFactors[left]).toBeCloseTo(1, 6);
+    expect(widening[left]).toBeCloseTo(studentQuantile(0.975, blocks - 3) / usual, 6);
   });
 });
