@@ -144,12 +144,20 @@ function testCell(
   return testHypothesis(fit, tracks, { hypothesis, field, laws, confidence: 0.95, seed });
 }
 
+/** Rows as they come, for those who wait. */
+class Rows extends Array<string[]> {
+  override push(...rows: string[][]): number {
+    for (const row of rows) console.error(row.join(' | '));
+    return super.push(...rows);
+  }
+}
+
 const allSeeds = (): number[] => Array.from({ length: seeds }, (_, i) => firstSeed + i);
 const scatter = (share: number): string =>
   `${percent(share)} ± ${percent(Math.sqrt((share * (1 - share)) / seeds))}`;
 
 function nullTable(): void {
-  const rows: string[][] = [];
+  const rows = new Rows();
   const run = (
     hypothesis: HypothesisName,
     x: string,
@@ -186,7 +194,7 @@ function nullTable(): void {
 }
 
 function powerTable(): void {
-  const rows: string[][] = [];
+  const rows = new Rows();
   for (const [x, error] of [
     [0.05, 0.1],
     [0.1, 0.1],
@@ -255,7 +263,7 @@ function heights(mobility: (height: number) => number, lowest: number): Cell {
 }
 
 function wallTable(): void {
-  const rows: string[][] = [];
+  const rows = new Rows();
   const faxen = (h: number): number => 1 - 9 / (8 * h) + 1 / (2 * h ** 3);
   for (const [title, law, cell] of [
     ['exact series', 'wall-perpendicular', heights((h) => 1 / perpendicularDrag(Math.max(h, 1.0001)), 1.02)],
@@ -307,11 +315,13 @@ function challengeRow(title: string, cell: Cell): string[] {
   }
   const share = (counts: Map<string, number>, name: string): string =>
     counts.has(name) ? percent((counts.get(name) ?? 0) / seeds) : '–';
-  return [
+  const row = [
     title,
     ...CHECKS.map((name) => `${share(alone, name)} (${share(flagged, name)})`),
     percent(any / seeds),
   ];
+  console.error(row.join(' | '));
+  return row;
 }
 
 const CHALLENGE_HEAD = ['process', ...CHECKS, 'any, corrected'];
