@@ -9,13 +9,15 @@ import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
 import type { Warning } from '../../errors.js';
 import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
 import { withParameters } from '../../fields/modelParameters.js';
-import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
+import type { TrackSet } from '../../tracks/TrackSet.js';
 import { describeVisited } from '../../tracks/visitedRegion.js';
 import { estimateDifferences, LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan } from '../Estimate.js';
-import { createLocalInformation, expectInformation } from './expectedInformation.js';
+import { expectInformation } from './expectedInformation.js';
 import { createFirstOrderPass } from './firstOrderPass.js';
+import { gatherPlaces } from './gatherPlaces.js';
 import { type FieldSlot, layOutLikelihood, type LikelihoodLayout } from './layout.js';
+import { createAxisInformation } from './localInformation.js';
 import type { PassSetting } from './PathPass.js';
 import { type Pull, type RankedPenalty, type ScoringSolution, solveScores } from './scoring.js';
 import { measureFlow } from './measureFlow.js';
@@ -23,7 +25,6 @@ import { createSecondOrderPass } from './secondOrderPass.js';
 import { findStart } from './startValues.js';
 
 const FLOOR = 1e-7; // smallest localization error variance, relative to the mean squared displacement per step
-const ROUGH_POSITIONS = 150; // per function: enough for the metric of the iteration
 const LONGEST_STEP = 2; // of the logarithm of an error variance: near zero its information is no guide
 const PULL = 0.2; // precision of a logarithm: one standard deviation is a factor of nine
 const HELD = 1e12; // information that leaves no step worth speaking of
@@ -53,10 +54,9 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
     layout,
     setting,
   );
-  const local = createLocalInformation(plan.order);
+  const local = createAxisInformation(layout);
   const flow = plan.order === 'second' ? measureFlow(tracks, describeVisited(tracks)) : null;
-  const functions = Math.max(...layout.bases.map((basis) => basis.functionCount));
-  const stride = Math.max(1, Math.floor(countPositions(tracks) / (ROUGH_POSITIONS * functions)));
+  const places = gatherPlaces(tracks, layout, flow);
   const groups = listPenalties(layout, plan);
   const start = findStart(tracks, plan, layout, floors);
   const solution = solveScores(
@@ -66,17 +66,9 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
       groups,
       pull: pullToMean(layout, start),
       evaluate: (parameters, scores) => pass.run(parameters, scores),
-      information: (parameters, rough) => {
-        const matrix = expectInformation(
-          tracks,
-          layout,
-          setting,
-          local,
-          parameters,
-          flow,
-          rough ? stride : 1,
-        );
-        if (rough) holdAtFloor(matrix, layout, parameters, floors);
+      information: (parameters, onTheWay) => {
+        const matrix = expectInformation(places, layout, setting, local, parameters);
+        if (onTheWay) holdAtFloor(matrix, layout, parameters, floors);
         return matrix;
       },
       confine: (parameters, from) => confine(parameters, from, layout, floors),

@@ -34,8 +34,8 @@ export interface ScoringProblem {
   readonly pull: Pull;
   /** Log-likelihood at a point; fills the block scores, shape (B, p), where given. */
   evaluate(parameters: Float64Array, scores: Float64Array | null): number;
-  /** The metric at a point, shape (p, p), positive semi-definite; a rough one will do on the way. */
-  information(parameters: Float64Array, rough: boolean): Float64Array;
+  /** The metric at a point, shape (p, p), positive semi-definite; the one for steps may hold parameters in place. */
+  information(parameters: Float64Array, onTheWay: boolean): Float64Array;
   /** Moves a point to where it may be (bounds, and not too far from where the step began), in place. */
   confine(parameters: Float64Array, from: Float64Array): void;
 }

@@ -6,20 +6,20 @@
 
 import { Matrix, solve } from 'ml-matrix';
 import { DataError, NumericalError } from '../../errors.js';
-import type { CoefficientField } from '../../fields/CoefficientField.js';
+import type { CoefficientField, ModelEvaluator } from '../../fields/CoefficientField.js';
 import { createBasis } from '../../fields/createBasis.js';
 import { createModelEvaluator } from '../../fields/evaluateModel.js';
-import { modelFields } from '../../fields/modelParameters.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
 import { estimateDifferences } from '../differences/estimateDifferences.js';
-import type { Estimate, EstimationPlan } from '../Estimate.js';
+import type { Estimate, EstimationPlan, FieldPlan } from '../Estimate.js';
 import { estimateDisplacementCovariances } from '../../momenta/displacementCovariances.js';
 import { fitDisplacementModel, type ModelKind } from '../../momenta/fitDisplacementModel.js';
 import type { FieldSlot, LikelihoodLayout } from './layout.js';
 
 const MOST_PLACES = 6000; // at which the start is read off
+const START_FUNCTIONS = [10, 5, 4] as const; // per axis of a spline, by dimensions: the course in rough
 const REACH = 4; // factor from the constant beyond which the course that differences give is cut off
-const SMOOTHNESS = 1e-3; // penalty on the logarithms read off, relative to their weight
+const SMOOTHNESS = 1e-3; // penalty on the values read off, relative to their weight
 
 /**
  * Start values of the whole parameter vector.
@@ -34,12 +34,12 @@ export function findStart(
 ): Float64Array {
   const parameters = new Float64Array(layout.size);
   const known = plan.start && plan.start.coefficients.length === layout.modelSize ? plan.start : null;
-  const estimate = known ? null : tryDifferences(tracks, plan);
   const constants = findConstants(tracks, plan);
+  const estimate = known ? null : tryDifferences(tracks, plan, constants);
   const d = layout.dimensions;
   const places = samplePlaces(tracks);
-  if (estimate) parameters.set(modelFields(estimate.model)[0].coefficients.flat(), layout.force.offset);
   const evaluator = estimate && createModelEvaluator(estimate.model);
+  if (evaluator) setForce(parameters, layout.force, d, places, evaluator);
   if (layout.friction)
     setPositive(parameters, layout.friction, d, places, evaluator?.frictionInto, constants.friction);
   setPositive(parameters, layout.noise, d, places, evaluator?.noiseInto, constants.noise);
@@ -53,13 +53,14 @@ export function findStart(
   return parameters;
 }
 
-function tryDifferences(tracks: TrackSet, plan: EstimationPlan): Estimate | null {
+function tryDifferences(tracks: TrackSet, plan: EstimationPlan, constants: Constants): Estimate | null {
   try {
     return estimateDifferences(tracks, {
       ...plan,
-      force: { ...plan.force, smoothing: 'light' },
-      friction: { ...plan.friction, smoothing: 'light' },
-      noise: { ...plan.noise, smoothing: 'light' },
+      localizationError: plan.localizationError ?? Array.from(constants.errorVariance, rootOf),
+      force: coarsen(plan.force),
+      friction: coarsen(plan.friction),
+      noise: coarsen(plan.noise),
     });
   } catch (error) {
     // Runs too short for differences, or moments that tell nothing apart: the likelihood may still cope.
@@ -67,6 +68,17 @@ function tryDifferences(tracks: TrackSet, plan: EstimationPlan): Estimate | null
     throw error;
   }
 }
+
+/** The same field with no more functions than a start needs. */
+function coarsen(field: FieldPlan): FieldPlan {
+  const { basis } = field;
+  if (basis?.kind !== 'spline') return { ...field, smoothing: 'light' };
+  const most = START_FUNCTIONS[basis.counts.length - 1];
+  const counts = basis.counts.map((count) => Math.min(count, most));
+  return { ...field, basis: { ...basis, counts }, smoothing: 'light' };
+}
+
+const rootOf = (variance: number): number => Math.sqrt(Math.max(variance, 0));
 
 interface Constants {
   /** Length d each: friction (1/time), noise (or diffusion), localization error variance (length²). */
@@ -138,6 +150,25 @@ function samplePlaces(tracks: TrackSet): Float64Array {
   return places;
 }
 
+function setForce(
+  parameters: Float64Array,
+  slot: FieldSlot,
+  d: number,
+  places: Float64Array,
+  evaluator: ModelEvaluator,
+): void {
+  if (slot.basis < 0) return;
+  const force = new Float64Array(d);
+  const perAxis = Array.from({ length: d }, () => new Float64Array(places.length / d));
+  for (let place = 0; place < places.length / d; place++) {
+    evaluator.forceInto(places, place * d, force);
+    for (let axis = 0; axis < d; axis++) perAxis[axis][place] = force[axis];
+  }
+  perAxis.forEach((values, axis) =>
+    parameters.set(project(slot.field, d, places, values), slot.offset + axis * slot.functionCount),
+  );
+}
+
 function setPositive(
   parameters: Float64Array,
   slot: FieldSlot,
@@ -159,13 +190,13 @@ function setPositive(
         logarithms[place] += Math.log(Math.min(Math.max(ratio, 1 / REACH), REACH));
       }
     }
-    const projected = projectLogarithms(slot.field, d, places, logarithms);
+    const projected = project(slot.field, d, places, logarithms);
     parameters.set(projected, slot.offset + component * slot.functionCount);
   }
 }
 
 /** Coefficients whose weighted sum comes closest to the values at the places, slightly smoothed. */
-function projectLogarithms(
+function project(
   field: CoefficientField,
   d: number,
   places: Float64Array,
