@@ -1,5 +1,7 @@
 /** Cells to numbers: exact, quick for the usual cell, and able to say what is wrong with the others. */
 
+import { errorOfProduct } from '../numerics/accurateSum.js';
+
 const POWERS_OF_TEN = Float64Array.from({ length: 23 }, (_, k) => Number(`1e${k}`)); // all exact in double precision
 const BLOCK = 9; // decimal digits that fit a 32-bit integer
 
@@ -79,7 +81,6 @@ function parseExponent(cell: string, place: number): number {
   return negative ? -exponent : exponent;
 }
 
-const SPLITTER = 2 ** 27 + 1;
 const DOUBT = 2 ** -50; // relative error of the correction below, generously
 
 /**
@@ -92,8 +93,7 @@ const DOUBT = 2 ** -50; // relative error of the correction below, generously
  * @param first  integer, 0 to 10⁹;  @param shift  power of ten up to 10⁹;  @param second  integer below `shift`
  * @param divisor  power of ten up to 10²²
  *
- * Source   error-free product and sum: Dekker, A floating-point technique for extending the available precision,
- *          Numer. Math. 18 (1971) 224.
+ * Source   error-free product and sum: Dekker (see numerics/accurateSum).
  */
 function divideRounded(first: number, shift: number, second: number, divisor: number): number {
   const product = first * shift;
@@ -106,17 +106,6 @@ function divideRounded(first: number, shift: number, second: number, divisor: nu
   const correction = remainder / divisor;
   const below = quotient + correction * (1 - DOUBT);
   return below === quotient + correction * (1 + DOUBT) ? below : NaN;
-}
-
-/** a b − fl(a b), exactly. */
-function errorOfProduct(a: number, b: number, product: number): number {
-  const aScaled = SPLITTER * a;
-  const aHigh = aScaled - (aScaled - a);
-  const aLow = a - aHigh;
-  const bScaled = SPLITTER * b;
-  const bHigh = bScaled - (bScaled - b);
-  const bLow = b - bHigh;
-  return aLow * bLow - (product - aHigh * bHigh - aLow * bHigh - aHigh * bLow);
 }
 
 export type CellKind =

@@ -22,7 +22,7 @@ const STAGES = [
 const ALLOWED: Readonly<Record<string, readonly string[]>> = {
   numerics: [],
   tracks: ['numerics'],
-  import: ['tracks'],
+  import: ['numerics', 'tracks'],
   momenta: ['numerics', 'tracks'],
   fields: ['numerics', 'tracks', 'momenta'],
   documents: ['fields'],

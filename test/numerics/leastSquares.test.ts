@@ -5,6 +5,7 @@ import { NumericalError, UsageError } from '../../src/errors.js';
 import { solveLeastSquares } from '../../src/numerics/linear/leastSquares.js';
 import { fitStraightLine } from '../../src/numerics/linear/plainRegression.js';
 import { randomStream } from '../../src/numerics/random/RandomStream.js';
+import { createBasis } from '../../src/fields/createBasis.js';
 import { LONGLEY } from '../support/longley.js';
 
 // NIST Statistical Reference Datasets, linear regression: Norris (lower difficulty) and Longley (higher; Longley, An
@@ -48,6 +49,38 @@ const NORRIS: readonly (readonly [number, number])[] = [
   [449.2, 448.9],
   [0.2, 0.5],
 ]; // y, x
+
+interface CertifiedCase {
+  readonly degree: number;
+  readonly x: number[];
+  readonly y: number[];
+  readonly coefficients: number[];
+  readonly standardErrors: number[];
+  readonly residualDeviation: number;
+}
+
+/** Filip and Wampler 1 to 5, solved in exact rational arithmetic by test/reference/polynomials/make.py. */
+const POLYNOMIALS = JSON.parse(
+  readFileSync(new URL('../reference/polynomials/certified.json', import.meta.url), 'utf8'),
+) as Record<string, CertifiedCase>;
+
+/** Rows of the powers 0 to `degree` of each place. */
+function powersOf(places: readonly number[], degree: number): Float64Array {
+  return Float64Array.from(places.flatMap((x) => Array.from({ length: degree + 1 }, (_, n) => x ** n)));
+}
+
+/** Coefficients of powers of x from those of powers of (x − centre)/scale. */
+function expandPowers(coefficients: Float64Array, centre: number, scale: number): number[] {
+  const out = new Array<number>(coefficients.length).fill(0);
+  coefficients.forEach((coefficient, n) => {
+    let choose = 1; // n over j
+    for (let j = n; j >= 0; j--) {
+      out[j] += (coefficient * choose * (-centre) ** (n - j)) / scale ** n;
+      choose = (choose * j) / (n - j + 1);
+    }
+  });
+  return out;
+}
 
 /** Rows of explanatory variables with an intercept in front. */
 function withIntercept(rows: readonly (readonly number[])[]): Float64Array {
@@ -101,6 +134,46 @@ describe('least squares', () => {
     ).toBeGreaterThan(10);
     expect(commonDigits(fit.residualDeviation, 304.854073561965)).toBeGreaterThan(12);
     expect(commonDigits(fit.determination, 0.995479004577296)).toBeGreaterThan(12);
+  });
+
+  it.each(['wampler1', 'wampler2', 'wampler3', 'wampler4', 'wampler5'])(
+    'reproduces %s (NIST StRD) to thirteen digits, however large the residuals',
+    (name) => {
+      const { degree, x, y, coefficients, standardErrors, residualDeviation } = POLYNOMIALS[name];
+      const fit = solveLeastSquares(powersOf(x, degree), Float64Array.from(y));
+      expect(fewestDigits(fit.coefficients, coefficients)).toBeGreaterThan(13);
+      if (residualDeviation === 0) {
+        expect(fit.residualDeviation).toBeLessThan(1e-14);
+      } else {
+        expect(fewestDigits(fit.standardErrors, standardErrors)).toBeGreaterThan(13);
+        expect(commonDigits(fit.residualDeviation, residualDeviation)).toBeGreaterThan(13);
+      }
+    },
+  );
+
+  it('reproduces Filip (NIST StRD, degree 10) to twelve digits on the polynomials of a model', () => {
+    const { degree, x, y, coefficients, standardErrors, residualDeviation } = POLYNOMIALS.filip;
+    const [centre, scale] = [-6, 2.75];
+    const basis = createBasis({ kind: 'polynomial', degree, centre: [centre], scale: [scale] }, 1);
+    const design = new Float64Array(x.length * basis.functionCount);
+    const indices = new Int32Array(basis.support);
+    x.forEach((_, row) => basis.evaluateInto(x, row, indices, design.subarray(row * basis.functionCount)));
+    const fit = solveLeastSquares(design, Float64Array.from(y));
+    expect(fewestDigits(expandPowers(fit.coefficients, centre, scale), coefficients)).toBeGreaterThan(12);
+    expect(commonDigits(fit.residualDeviation, residualDeviation)).toBeGreaterThan(12);
+    expect(
+      commonDigits(fit.standardErrors[degree] / scale ** degree, standardErrors[degree]),
+    ).toBeGreaterThan(12);
+    expect(fit.conditioning).toBeLessThan(1e4);
+  });
+
+  it('says how little bare powers leave of Filip', () => {
+    // No design in double precision holds more than 7.6 digits of this case: the powers are rounded themselves.
+    const { degree, x, y, coefficients } = POLYNOMIALS.filip;
+    const fit = solveLeastSquares(powersOf(x, degree), Float64Array.from(y));
+    expect(fewestDigits(fit.coefficients, coefficients)).toBeGreaterThan(7);
+    expect(fit.conditioning).toBeGreaterThan(1e8);
+    expect(fit.conditioning).toBeLessThan(1e12);
   });
 
   it('agrees with an independent library of regressions on random designs', () => {

@@ -1,12 +1,13 @@
 /**
  * Ordinary least squares by orthogonal triangles: the careful way, for regressions of a size that fits in memory.
  *
- * Source  Golub & Van Loan, Matrix Computations (4th ed. 2013), ch. 5.2–5.3; iterative refinement: Björck, Numerical
- *         Methods for Least Squares Problems (1996), ch. 2.9.
+ * Source  Golub & Van Loan, Matrix Computations (4th ed. 2013), ch. 5.2–5.3; refinement of coefficients and residuals
+ *         together: Björck, Iterative refinement of linear least squares solutions I, BIT 7 (1967) 257.
  */
 
-import { Matrix, QrDecomposition } from 'ml-matrix';
+import { Matrix, QrDecomposition, SingularValueDecomposition } from 'ml-matrix';
 import { NumericalError, UsageError } from '../../errors.js';
+import { AccurateSum } from '../accurateSum.js';
 
 export interface LeastSquares {
   /** Length k. */
@@ -19,17 +20,20 @@ export interface LeastSquares {
   readonly determination: number;
   /** n − k. */
   readonly freedom: number;
+  /** Condition number of the design with columns scaled to about unit length: that many times rounding may be lost. */
+  readonly conditioning: number;
 }
 
 /** Sine of the angle between a column and the ones before it below which they count as the same direction. */
 const SAME_DIRECTION = 1e-12;
 
-const REFINEMENTS = 2; // each gains as many digits as the scaled problem has; the second is for safety
+const REFINEMENTS = 4; // each gains as many digits as the scaled problem leaves to double precision
 
 /**
  * Coefficients that minimise the sum of squared residuals.
  *
- * Columns are scaled to unit length first, so that their units do not matter to the rounding.
+ * Columns are scaled to about unit length first, by powers of two (which round nothing), so that their units do not
+ * matter.
  *
  * @param design  shape (n, k) row-major; give a column of ones for an intercept
  * @param response  length n
@@ -56,20 +60,17 @@ export function solveLeastSquares(design: Float64Array, response: Float64Array):
   const triangle = factor.upperTriangularMatrix;
   checkRank(triangle, scales);
 
-  let solution = factor.solve(Matrix.columnVector(response));
-  for (let round = 0; round < REFINEMENTS; round++) {
-    solution = Matrix.add(solution, factor.solve(residualsOf(scaled, solution, response)));
-  }
+  const { solution, residuals } = refine(factor, scaled, response);
   const freedom = n - k;
-  const residuals = residualsOf(scaled, solution, response);
-  const squares = residuals.dot(residuals);
+  const squares = residuals.reduce((sum, value) => sum + value * value, 0);
   const residualDeviation = freedom > 0 ? Math.sqrt(squares / freedom) : NaN;
   return {
-    coefficients: Float64Array.from({ length: k }, (_, j) => solution.get(j, 0) / scales[j]),
+    coefficients: solution.map((value, j) => value / scales[j]),
     standardErrors: inverseRowNorms(triangle).map((norm, j) => (norm * residualDeviation) / scales[j]),
     residualDeviation,
     determination: 1 - squares / squaresAboutMean(response),
     freedom,
+    conditioning: new SingularValueDecomposition(triangle).condition,
   };
 }
 
@@ -78,7 +79,7 @@ function measureColumns(design: Float64Array, n: number, k: number): Float64Arra
   for (let row = 0; row < n; row++) {
     for (let j = 0; j < k; j++) squares[j] += design[row * k + j] ** 2;
   }
-  return squares.map((value) => Math.sqrt(value) || 1);
+  return squares.map((value) => (value > 0 ? 2 ** Math.round(Math.log2(value) / 2) : 1));
 }
 
 function checkRank(triangle: Matrix, scales: Float64Array): void {
@@ -91,13 +92,57 @@ function checkRank(triangle: Matrix, scales: Float64Array): void {
   }
 }
 
-function residualsOf(scaled: Matrix, solution: Matrix, response: Float64Array): Matrix {
-  const { rows, columns } = scaled;
-  const out = Matrix.zeros(rows, 1);
-  for (let row = 0; row < rows; row++) {
-    let rest = response[row];
-    for (let j = 0; j < columns; j++) rest -= scaled.get(row, j) * solution.get(j, 0);
-    out.set(row, 0, rest);
+/**
+ * Solves r + A x = b, Aᵀ r = 0 for coefficients and residuals together. What either equation lacks is summed without
+ * rounding before it is rounded once, so that large residuals do not spoil the coefficients.
+ */
+function refine(
+  factor: QrDecomposition,
+  scaled: Matrix,
+  response: Float64Array,
+): { solution: Float64Array; residuals: Float64Array } {
+  const { rows: n, columns: k } = scaled;
+  const triangle = factor.upperTriangularMatrix;
+  const orthogonal = factor.orthogonalMatrix;
+  const solution = new Float64Array(k);
+  const residuals = new Float64Array(n);
+  const sum = new AccurateSum();
+  for (let round = 0; round <= REFINEMENTS; round++) {
+    const missing = response.map((value, row) => {
+      sum.start(value);
+      sum.add(-residuals[row]);
+      for (let j = 0; j < k; j++) sum.addProduct(-scaled.get(row, j), solution[j]);
+      return sum.value();
+    });
+    const tilted = Float64Array.from({ length: k }, (_, j) => {
+      sum.start(0);
+      for (let row = 0; row < n; row++) sum.addProduct(-scaled.get(row, j), residuals[row]);
+      return sum.value();
+    });
+    // With A = Q R: R δx = Qᵀ f − R⁻ᵀ g and δr = f − Q (Qᵀ f − R⁻ᵀ g), f and g what the equations lack.
+    const step = orthogonal.transpose().mmul(Matrix.columnVector(missing)).to1DArray();
+    const turned = solveTransposed(triangle, tilted);
+    for (let j = 0; j < k; j++) step[j] -= turned[j];
+    for (let row = 0; row < n; row++) {
+      let along = 0;
+      for (let j = 0; j < k; j++) along += orthogonal.get(row, j) * step[j];
+      residuals[row] += missing[row] - along;
+    }
+    for (let j = k - 1; j >= 0; j--) {
+      for (let l = j + 1; l < k; l++) step[j] -= triangle.get(j, l) * step[l];
+      step[j] /= triangle.get(j, j);
+      solution[j] += step[j];
+    }
+  }
+  return { solution, residuals };
+}
+
+/** R⁻ᵀ times a vector, for an upper-triangular R. */
+function solveTransposed(triangle: Matrix, right: Float64Array): Float64Array {
+  const out = right.slice();
+  for (let j = 0; j < out.length; j++) {
+    for (let l = 0; l < j; l++) out[j] -= triangle.get(l, j) * out[l];
+    out[j] /= triangle.get(j, j);
   }
   return out;
 }
