@@ -65,6 +65,7 @@ export type { HypothesisName, TestResult } from './hypotheses/TestResult.js';
 // simulation and checks
 export { mapTasksSerially, type MapTasks, type Task } from './numerics/MapTasks.js';
 export { RandomStream, randomStream } from './numerics/random/RandomStream.js';
+export { createRecorder } from './checks/createRecorder.js';
 export { createRefit } from './checks/createRefit.js';
 export type { Region } from './checks/Region.js';
 export { resimulate, type ResimulationOptions } from './checks/resimulate.js';

@@ -204,7 +204,7 @@ export const COMMANDS: readonly CommandSpec[] = [
     name: 'demo',
     summary: 'do the whole job on a shipped data set',
     description:
-      'Survey, fit, re-simulation, scenario and report. Data sets: felt-table (default), settling-beads, stripe-cells.',
+      'Survey, fit, tests, challenges, re-simulation, scenario and report. Data sets: felt-table (default), settling-beads, stripe-cells.',
     operands: [['[name]', 'data set']],
     options: ['directory', 'workers', ...SPEECH_OPTIONS],
     examples: ['wanderlaw demo', 'wanderlaw demo settling-beads'],

@@ -10,6 +10,7 @@ type AnyTask = Task<unknown, unknown, unknown>;
 const LOADERS: Readonly<Record<string, () => Promise<AnyTask>>> = {
   'describe-replicate': async () =>
     (await import('../checks/describeReplicateTask.js')).describeReplicateTask as AnyTask,
+  'judge-fit': async () => (await import('./judgeFitTask.js')).judgeFitTask as AnyTask,
   'refit-replicate': async () => (await import('../checks/refineFit.js')).refitReplicateTask as AnyTask,
   'simulate-tracks': async () =>
     (await import('../simulation/simulateScenario.js')).simulateTracksTask as AnyTask,

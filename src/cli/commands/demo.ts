@@ -1,14 +1,22 @@
-/** `demo [NAME]`: survey, fit, re-simulation, scenario and report of a shipped data set. */
+/** `demo [NAME]`: survey, fit, tests, challenges, re-simulation, scenario and report of a shipped data set. */
 
 import { existsSync, readdirSync } from 'node:fs';
 import { readFile } from 'node:fs/promises';
 import { join, relative } from 'node:path';
 import { completeStudy } from '../../documents/parseStudy.js';
+import type { FitDocument } from '../../documents/FitDocument.js';
 import type { StudyInput } from '../../documents/Study.js';
 import { UsageError } from '../../errors.js';
 import { surveyTracks } from '../../momenta/surveyTracks.js';
 import { renderReport } from '../../report/renderReport.js';
-import { formatFitSummary, formatResimulationSummary, formatSurveySummary } from '../../report/terminal.js';
+import {
+  formatChallengeSummary,
+  formatFitSummary,
+  formatResimulationSummary,
+  formatSurveySummary,
+  formatTestSummary,
+} from '../../report/terminal.js';
+import { judgeFitTask, type Judgement, type Question } from '../../workers/judgeFitTask.js';
 import type { Call } from '../commandTable.js';
 import { checkOutput, makeDirectory, writeWhole } from '../files.js';
 import { readRecording } from '../recordings.js';
@@ -17,6 +25,7 @@ import { formatSuggestion } from '../suggest.js';
 import { PACKAGE_ROOT } from '../version.js';
 import { fitFiles } from './fit.js';
 import { describeResimulation, resimulateFit } from './resimulate.js';
+import { withWorkers } from '../workers.js';
 import { buildTitledScenario } from './scenario.js';
 
 const DEFAULT_DATA_SET = 'felt-table';
@@ -62,16 +71,30 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
   await keep('fit.json', formatJson(fit));
   await say(`${formatFitSummary(fit, terminal.summaryStyle)}\n`);
 
-  const resimulation = await resimulateFit(fit, place('fit.json'), terminal, {
-    refit: true,
-    workers: options.workers,
-  });
+  // Side by side: the refits of the re-simulation keep one thread busy, tests and challenges another.
+  const [judgements, resimulation] = await Promise.all([
+    withWorkers(
+      options.workers,
+      (mapTasks): Promise<Judgement[]> =>
+        mapTasks(judgeFitTask, { fit, tracks: recording.tracks }, listQuestions(fit)),
+    ),
+    resimulateFit(fit, place('fit.json'), terminal, { refit: true, workers: options.workers }),
+  ]);
+  const tests = judgements.flatMap(({ test }) => test ?? []);
+  const [challenge] = judgements.flatMap((each) => each.challenge ?? []);
+  await keep('tests.json', formatJson(tests));
+  await keep('challenge.json', formatJson(challenge));
+  await say(`${formatTestSummary(tests, terminal.summaryStyle)}\n`);
+  await say(`${formatChallengeSummary(challenge.checks, terminal.summaryStyle)}\n`);
   await keep('resimulation.json', formatJson(describeResimulation(resimulation)));
   await say(`${formatResimulationSummary(resimulation, terminal.summaryStyle)}\n`);
 
   const scenario = await buildTitledScenario(fit, dataPackage.title);
   await keep('scenario.json', formatJson(scenario));
-  await keep('report.html', await renderReport({ fit, resimulation, scenario }));
+  await keep(
+    'report.html',
+    await renderReport({ fit, tests, challenges: challenge.checks, resimulation, scenario }),
+  );
 
   if (options.json) {
     await terminal.print(
@@ -80,12 +103,21 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
         files,
         consistent: resimulation.consistent,
         order: fit.model.order,
+        rejected: tests.filter(({ rejected }) => rejected).map(({ hypothesis }) => hypothesis),
+        holds: challenge.holds,
         warnings: fit.warnings,
       }),
     );
     return;
   }
   await say(`${bold('Written')}\n${files.map((file) => `  ${file}\n`).join('')}`);
+}
+
+/** What a newcomer would ask of such a fit first, and whether its model holds. */
+function listQuestions({ model }: FitDocument): Question[] {
+  if (model.order === 'first') return ['uniform-noise', 'zero-force', 'challenge'];
+  const closed = model.dimensions > 1 || model.periods[0] > 0; // else every force has a potential
+  return ['uniform-friction', closed ? 'conservative-force' : 'zero-force', 'challenge'];
 }
 
 async function readDataPackage(name: string): Promise<DataPackage> {

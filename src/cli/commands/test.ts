@@ -2,7 +2,7 @@
 
 import { UsageError } from '../../errors.js';
 import { loadFormulaReader } from '../../fields/formula.js';
-import { createDesign, simulateDesign } from '../../checks/simulateDesign.js';
+import { createRecorder } from '../../checks/createRecorder.js';
 import type { FitDocument } from '../../documents/FitDocument.js';
 import { completeStudy } from '../../documents/parseStudy.js';
 import type { Study } from '../../documents/Study.js';
@@ -10,11 +10,10 @@ import type { Law } from '../../hypotheses/lawStatement.js';
 import { NAMED_LAWS } from '../../hypotheses/namedLaws.js';
 import { planTest } from '../../hypotheses/planTest.js';
 import { resolveLaws } from '../../hypotheses/resolveLaw.js';
-import { testHypothesis, type TestRequest } from '../../hypotheses/testHypothesis.js';
+import { testHypothesis } from '../../hypotheses/testHypothesis.js';
 import type { HypothesisName, TestResult } from '../../hypotheses/TestResult.js';
 import { formatComparisonSummary, formatLawShelf, type ListedLaw } from '../../report/terminal/formatLaws.js';
 import { formatTestSummary } from '../../report/terminal.js';
-import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { Call } from '../commandTable.js';
 import { readFit } from '../documents.js';
 import { readRecordingOfFit } from '../recordings.js';
@@ -66,22 +65,6 @@ export async function runTest({ operands, options, terminal }: Call): Promise<vo
     options.output,
     terminal,
   );
-}
-
-/** Simulates the recording under another model of the same kind, for p-values of small recordings. */
-function createRecorder(fit: FitDocument, tracks: TrackSet): NonNullable<TestRequest['simulate']> {
-  return (model, localizationError, index) => {
-    const errors = localizationError.map((value) => ({ value, low: value, high: value }));
-    const imposed: FitDocument = {
-      ...fit,
-      model: model as FitDocument['model'],
-      localizationError: errors,
-      uncertainty: { ...fit.uncertainty, replicates: [] },
-    };
-    const design = createDesign(imposed, tracks);
-    const positions = simulateDesign(design, null, fit.study.seed, `test-${index}`, false);
-    return { ...tracks, positions };
-  };
 }
 
 function formatForPeople(result: TestResult, terminal: Terminal): string {
