@@ -49,7 +49,7 @@ export const COMMANDS: readonly CommandSpec[] = [
     summary: 'estimate force, friction and noise, or drift and diffusion, with their uncertainty',
     description:
       'Writes a fit file with -o. Without it a summary is printed (with --json the fit itself) and nothing is written.',
-    operands: [TRACKS],
+    operands: [['[tracks...]', `${TRACKS[1]}; not needed with --write-study alone`]],
     options: [
       'output',
       'order',
@@ -68,12 +68,15 @@ export const COMMANDS: readonly CommandSpec[] = [
       'refine',
       'seed',
       'workers',
+      'writeStudy',
       ...TABLE_OPTIONS,
       ...SPEECH_OPTIONS,
     ],
     examples: [
       'wanderlaw fit tracks.csv -o fit.json',
       'wanderlaw fit tracks.csv --order second --force linear --friction spline:6 --noise constant -o fit.json',
+      'wanderlaw fit tracks.csv --units um,s --write-study study.json -o fit.json',
+      'wanderlaw fit other.csv --study study.json -o other.json',
     ],
     load: async () => (await import('./commands/fit.js')).runFit,
   },

@@ -167,6 +167,12 @@ export const OPTIONS = {
       'options as JSON, under the names of the options in camel case (lengthScale); options on the line win; its JSON Schema is wanderlaw/schemas/study.schema.json',
   },
 
+  writeStudy: {
+    flags: '--write-study <FILE>',
+    meaning:
+      'also write every choice behind the fit, defaults included, as a study file that --study reads; without tracks it writes that file alone',
+  },
+
   // how the table is read
   columns: {
     flags: '--columns <ROLES>',

@@ -3,13 +3,14 @@
 import type { FitDocument } from '../../documents/FitDocument.js';
 import { fitSchema } from '../../documents/FitDocument.js';
 import type { Study } from '../../documents/Study.js';
-import { NumericalError } from '../../errors.js';
+import { NumericalError, UsageError } from '../../errors.js';
 import { chooseEstimator } from '../../estimation/choose.js';
 import { parseShape } from '../../fields/shapes.js';
 import { fitTracks } from '../../fit.js';
 import type { MapTasks } from '../../numerics/MapTasks.js';
 import { formatFitSummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';
+import { writeWhole } from '../files.js';
 import { OPTIONS } from '../options.js';
 import { readRecording } from '../recordings.js';
 import { checkResultPlace, deliver, formatJson } from '../results.js';
@@ -22,8 +23,12 @@ import { withWorkers } from '../workers.js';
 export async function runFit({ operands, options, terminal }: Call): Promise<void> {
   const study = await resolveStudy(options, terminal);
   checkPlan(study);
+  const writeStudy = options.writeStudy as string | undefined;
   const inputs = typeof options.study === 'string' ? [...operands, options.study] : operands;
   checkResultPlace(options.output, inputs, terminal);
+  checkResultPlace(writeStudy, inputs, terminal, '--write-study');
+  checkApart(options.output, writeStudy, terminal);
+  if (operands.length === 0) return writeTemplate(study, writeStudy, options, terminal);
 
   const fit = await fitFiles(operands, study, terminal, options.workers);
   for (const warning of fit.warnings) terminal.warn(warning);
@@ -31,9 +36,40 @@ export async function runFit({ operands, options, terminal }: Call): Promise<voi
   if (typeof options.output === 'string') await deliver(formatJson(fit), options.output, terminal);
   if (options.json) await terminal.print(formatJson(fit));
   else await terminal.print(formatFitSummary(fit, terminal.summaryStyle));
+  if (writeStudy !== undefined) {
+    await writeWhole(terminal.resolve(writeStudy), formatJson(fit.study), writeStudy);
+    terminal.note(`wrote ${writeStudy}: every choice of this fit; --study ${writeStudy} repeats it`);
+  }
   if (options.output === undefined && !options.json) {
     terminal.note('nothing was written; -o fit.json keeps the fit');
   }
+}
+
+/** The fit and the study are two files. */
+function checkApart(output: unknown, writeStudy: string | undefined, terminal: Terminal): void {
+  if (typeof output !== 'string' || writeStudy === undefined) return;
+  if (terminal.resolve(output) !== terminal.resolve(writeStudy)) return;
+  throw new UsageError(`-o and --write-study both name ${output}; give the study a file of its own`, {
+    option: '--write-study',
+  });
+}
+
+/** Without tracks: the choices made so far as a study file, to be filled in and used later. */
+async function writeTemplate(
+  study: Study,
+  writeStudy: string | undefined,
+  options: Call['options'],
+  terminal: Terminal,
+): Promise<void> {
+  if (writeStudy === undefined || options.output !== undefined) {
+    throw new UsageError(
+      'fit needs track tables (CSV or TSV, also gzipped); wanderlaw fit --help explains it',
+    );
+  }
+  await writeWhole(terminal.resolve(writeStudy), formatJson(study), writeStudy);
+  if (options.json) await terminal.print(formatJson(study));
+  const open = study.order === 'auto' ? ', the order left to the tracks' : '';
+  terminal.note(`wrote ${writeStudy}: every choice with its value${open}; --study ${writeStudy} uses it`);
 }
 
 /** Reads and fits tracks, and adds what only the program knows: sources, version and clock. */
