@@ -2,7 +2,7 @@
 
 import { UsageError } from '../errors.js';
 import { COORDINATE_NAMES } from '../tracks/TrackSet.js';
-import { suggestName } from './suggestName.js';
+import { suggestName } from '../numerics/text/suggestName.js';
 import { quoteCell, tableError } from './tableError.js';
 
 /** Everything a column can mean. Errors are standard deviations of the localization error, per axis. */

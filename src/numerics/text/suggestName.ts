@@ -1,8 +1,11 @@
 /** The known name a mistyped one was probably meant to be. */
 
+const LENGTH_WEIGHT = 1e-3; // decides between equal distances only
+
 /**
  * The candidate nearest to a name by edit distance (insertions, deletions, substitutions and swaps of neighbours),
- * upper and lower case counted alike; null where even the nearest differs in more than about a third.
+ * upper and lower case counted alike; of equally near ones that of the more similar length, because swapped letters are
+ * the commonest slip. Null where even the nearest differs in more than about a third.
  *
  * Source  optimal string alignment: Damerau, Commun. ACM 7 (1964) 171; Wagner & Fischer, J. ACM 21 (1974) 168.
  */
@@ -12,7 +15,9 @@ export function suggestName(name: string, candidates: readonly string[]): string
   for (const candidate of candidates) {
     const distance = editDistance(name.toLowerCase(), candidate.toLowerCase());
     const allowed = Math.max(1, Math.floor(Math.max(name.length, candidate.length) / 3));
-    if (distance <= allowed && distance < smallest) [best, smallest] = [candidate, distance];
+    if (distance > allowed) continue;
+    const rank = distance + LENGTH_WEIGHT * Math.abs(name.length - candidate.length);
+    if (rank < smallest) [best, smallest] = [candidate, rank];
   }
   return best;
 }

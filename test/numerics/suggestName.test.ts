@@ -1,6 +1,6 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import { editDistance, suggestName } from '../../src/import/suggestName.js';
+import { editDistance, suggestName } from '../../src/numerics/text/suggestName.js';
 
 describe('suggestions for mistyped names', () => {
   it('the nearest name is suggested, in any case, and none that is far', () => {
@@ -9,6 +9,7 @@ describe('suggestions for mistyped names', () => {
     expect(suggestName('tme', ['x', 'time'])).toBe('time');
     expect(suggestName('velocity', ['ID', 'PosX', 'PosY'])).toBeNull();
     expect(suggestName('a', [])).toBeNull();
+    expect(suggestName('tahn', ['tan', 'tanh'])).toBe('tanh'); // swapped letters, not one too many
   });
 
   it('edit distances are those of worked examples', () => {
