@@ -4,11 +4,12 @@ import type { Scenario } from '../documents/Scenario.js';
 import { UsageError } from '../errors.js';
 import type { BasisSpec } from '../fields/Basis.js';
 import type { FieldName } from '../fields/CoefficientField.js';
+import { compileSums } from '../fields/compileSums.js';
 import { createBasis } from '../fields/createBasis.js';
 import type { FormulaReader } from '../fields/formula.js';
+import type { SumEvaluator } from '../fields/splineCells.js';
 import { type BasisField, isBasisField } from './coefficients.js';
 import type { Slot } from './fadeTargets.js';
-import { compileSplineCells, type SumEvaluator } from './splineCells.js';
 
 /**
  * Writers of the raw components of some slots (after `log` links, before `log-matrix` ones).
@@ -63,7 +64,7 @@ export function compileSlots(
     }
   }
   for (const { spec, weights, targets } of groups.values()) {
-    writers.push(scatter(compileSums(spec, scenario.dimensions, weights), targets, raw.length));
+    writers.push(scatter(compileSums(createBasis(spec, scenario.dimensions), weights), targets, raw.length));
   }
   for (const slot of slots) {
     if (isBasisField(slot.coefficient) && slot.coefficient.link === 'log') writers.push(exponential(slot));
@@ -90,32 +91,6 @@ function takeCoefficients(
     }
     return row.map((value) => (draw === null ? value : draw[next++]));
   });
-}
-
-/** Weighted sums of one basis, one after another from `outOffset` on. */
-function compileSums(spec: BasisSpec, d: number, weights: readonly (readonly number[])[]): SumEvaluator {
-  const basis = createBasis(spec, d);
-  if (spec.kind === 'constant') {
-    return (_place, out, outOffset) => {
-      for (let sum = 0; sum < weights.length; sum++) out[outOffset + sum] = weights[sum][0];
-    };
-  }
-  if (spec.kind === 'spline') {
-    const cells = compileSplineCells(basis, spec, weights);
-    if (cells !== null) return cells;
-  }
-  const flat = Float64Array.from(weights.flat());
-  const k = basis.functionCount;
-  const indices = new Int32Array(basis.support);
-  const values = new Float64Array(basis.support);
-  return (place, out, outOffset) => {
-    const count = basis.evaluateInto(place, 0, indices, values);
-    for (let sum = 0; sum < weights.length; sum++) {
-      let total = 0;
-      for (let i = 0; i < count; i++) total += flat[sum * k + indices[i]] * values[i];
-      out[outOffset + sum] = total;
-    }
-  };
 }
 
 /** Sends sums to their places; straight through where those are neighbours. */

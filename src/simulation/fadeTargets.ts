@@ -4,7 +4,7 @@ import type { Scenario } from '../documents/Scenario.js';
 import type { FieldName } from '../fields/CoefficientField.js';
 import { type Coefficient, isBasisField } from './coefficients.js';
 import { fillMatrix, takeLogarithmOfSymmetricPart } from './smallMatrices.js';
-import type { SumEvaluator } from './splineCells.js';
+import type { SumEvaluator } from '../fields/splineCells.js';
 
 /** Where the components of one coefficient lie in the array of raw components. */
 export interface Slot {

@@ -15,7 +15,7 @@ import { randomStream } from '../../src/numerics/random/RandomStream.js';
 import { createIntegrator } from '../../src/simulation/createIntegrator.js';
 import { createScenario } from '../../src/simulation/parseScenario.js';
 import { createScenarioEvaluator } from '../../src/simulation/ScenarioEvaluator.js';
-import { tabulateSplineCells } from '../../src/simulation/splineCells.js';
+import { tabulateSplineCells } from '../../src/fields/splineCells.js';
 import { printTable } from '../studies/table.js';
 
 const steps = Number(process.argv[2] ?? 2_000_000);

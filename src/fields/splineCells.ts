@@ -1,9 +1,10 @@
 /**
- * Splines up to degree 3 as one cubic per cell: what the integrators evaluate millions of times a second.
+ * Splines up to degree 3 as one cubic per cell: what integrators and passes over the data evaluate millions of times a
+ * second.
  */
 
-import { SPLINE_DEGREE } from '../fields/basis/splineBasis.js';
-import type { Basis, BasisSpec } from '../fields/Basis.js';
+import { SPLINE_DEGREE } from './basis/splineBasis.js';
+import type { Basis, BasisSpec } from './Basis.js';
 
 type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
 
@@ -38,6 +39,40 @@ export function compileSplineCells(
   if (tabulated === null) return null;
   const { cells, widths, table } = tabulated;
   return createEvaluator(basis.dimensions, weights.length, spec, cells, widths, table);
+}
+
+/**
+ * Compiles the slope of each sum along its own axis: sum a is differentiated along axis a. Outside the box of an open
+ * axis fields are held, so the slope along it is zero there.
+ *
+ * @param weights  d arrays of k weights
+ * @returns null where the grid is too large to be worth it
+ */
+export function compileOwnSlopeCells(
+  basis: Basis,
+  spec: SplineSpec,
+  weights: readonly (readonly number[])[],
+): SumEvaluator | null {
+  const tabulated = tabulateSplineCells(basis, spec, weights);
+  if (tabulated === null) return null;
+  const d = basis.dimensions;
+  const { cells, widths, table } = tabulated;
+  const slopes = new Float64Array(table.length);
+  const perSum = 4 ** d;
+  for (let at = 0; at < table.length; at++) {
+    const axis = Math.floor(at / perSum) % d;
+    const stride = 4 ** (d - 1 - axis);
+    const power = Math.floor(at / stride) % 4;
+    if (power > 0) slopes[at - stride] = (power * table[at]) / widths[axis];
+  }
+  const evaluate = createEvaluator(d, d, spec, cells, widths, slopes);
+  return (place, out, outOffset) => {
+    evaluate(place, out, outOffset);
+    for (let axis = 0; axis < d; axis++) {
+      if (spec.periods[axis] > 0) continue;
+      if (place[axis] < spec.low[axis] || place[axis] > spec.high[axis]) out[outOffset + axis] = 0;
+    }
+  };
 }
 
 /** Polynomials per cell: shape (cells of the first axis, …, sums, 4 powers per axis), with the layout of the cells. */
