@@ -42,6 +42,19 @@ export function findRuns(tracks: TrackSet, tolerance = INTERVAL_TOLERANCE): Runs
   return { starts: Int32Array.from(starts), ends: Int32Array.from(ends), tracks: Int32Array.from(owners) };
 }
 
+/**
+ * The same runs, those of low keys first and otherwise in the order in which they were.
+ *
+ * @param keyOfRow  length n, 0 or above; the key of a run is that of its first row
+ */
+export function orderRuns(runs: Runs, keyOfRow: Int32Array): Runs {
+  const order = Int32Array.from(runs.starts.keys()).sort(
+    (a, b) => keyOfRow[runs.starts[a]] - keyOfRow[runs.starts[b]] || a - b,
+  );
+  const pick = (values: Int32Array): Int32Array => order.map((run) => values[run]);
+  return { starts: pick(runs.starts), ends: pick(runs.ends), tracks: pick(runs.tracks) };
+}
+
 /** Rows of the longest run. */
 export function longestRun(runs: Runs): number {
   let longest = 0;

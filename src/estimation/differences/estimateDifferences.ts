@@ -17,7 +17,8 @@ import { type MomentSolution, type PenaltyGroup, solvePenalizedMoments } from '.
 import { collectDiffusionMoments, collectDriftMoments, driftBasis, type ErrorSums } from './firstOrder.js';
 import { createIntervalCorrection } from './intervalCorrection.js';
 import { layOutSecondOrder } from './forceFriction.js';
-import { checkSecondOrderRuns, collectNoiseMoments, type NoiseMoments } from './residuals.js';
+import type { NoiseMoments } from './noiseSums.js';
+import { checkSecondOrderRuns, collectNoiseMoments } from './residuals.js';
 import { solveForceFriction } from './solveForceFriction.js';
 
 /**

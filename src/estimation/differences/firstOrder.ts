@@ -19,7 +19,7 @@ import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { EstimationPlan } from '../Estimate.js';
 import type { MomentBlocks } from '../penalizedMoments.js';
 import { noisePairs, ResidualProducts } from './residualProducts.js';
-import type { NoiseMoments } from './residuals.js';
+import type { NoiseMoments } from './noiseSums.js';
 import {
   addBasisRow,
   addOuterProducts,

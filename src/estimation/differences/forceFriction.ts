@@ -20,11 +20,10 @@
 import { DataError } from '../../errors.js';
 import type { Basis } from '../../fields/Basis.js';
 import { createBasis } from '../../fields/createBasis.js';
-import { findRuns } from '../../tracks/runs.js';
+import { findRuns, type Runs } from '../../tracks/runs.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { EstimationPlan } from '../Estimate.js';
-import type { MomentBlocks } from '../penalizedMoments.js';
-import { addOuterProducts, RecentBasis, SparseRow } from './sparseRows.js';
+import { RecentBasis, SparseRow } from './sparseRows.js';
 
 /** Where each coefficient's parameters stand in the vector of the force–friction regression. */
 export interface SecondOrderLayout {
@@ -55,10 +54,9 @@ export function layOutSecondOrder(plan: EstimationPlan, dimensions: number): Sec
   };
 }
 
-/** Builds the regressors and instruments of one axis at one row. */
+/** Builds the regressors of one axis at one row. */
 export class RowBuilder {
   readonly regressors: SparseRow;
-  readonly instruments: SparseRow;
   readonly #force: RecentBasis;
   readonly #friction: RecentBasis;
   readonly #layout: SecondOrderLayout;
@@ -69,27 +67,11 @@ export class RowBuilder {
     this.#friction = new RecentBasis(layout.friction);
     const capacity = (layout.force?.support ?? 0) + layout.dimensions * (layout.friction?.support ?? 0);
     this.regressors = new SparseRow(capacity);
-    this.instruments = new SparseRow(capacity);
   }
 
   evaluate(positions: Float64Array, row: number): void {
     this.#force.evaluate(positions, row, this.#layout.dimensions);
     this.#friction.evaluate(positions, row, this.#layout.dimensions);
-  }
-
-  /** Adds the friction functions at `row − 2`, and their products with those at `row`. */
-  addFrictionProducts(sums: Float64Array, products: Float64Array, row: number): void {
-    const k = this.#layout.friction?.functionCount ?? 0;
-    const earlier = this.#friction.indices(row - 2);
-    const earlierValues = this.#friction.values(row - 2);
-    const now = this.#friction.indices(row);
-    const nowValues = this.#friction.values(row);
-    for (let i = 0; i < this.#friction.count(row - 2); i++) {
-      sums[earlier[i]] += earlierValues[i];
-      const base = earlier[i] * k;
-      for (let j = 0; j < this.#friction.count(row); j++)
-        products[base + now[j]] += earlierValues[i] * nowValues[j];
-    }
   }
 
   /** Fills `target` with the force functions and the friction functions times `sign` × velocity at `row`. */
@@ -116,61 +98,6 @@ export class RowBuilder {
   }
 }
 
-/** Moments of the force–friction regression, with what localization error adds to them. */
-export interface ForceFrictionMoments extends MomentBlocks {
-  /** Per block: Σ c_i(y_{k−2}), length k_G; and Σ c_i(y_{k−2}) c_j(y_k), shape (k_G, k_G), of the friction basis. */
-  readonly frictionSums: readonly Float64Array[];
-  readonly frictionProducts: readonly Float64Array[];
-}
-
-/**
- * Moment conditions of the force–friction regression, block by block.
- *
- * @param lag  2: velocity instruments (y_{k−2} − y_{k−3})/Δ, clean; 1: (y_{k−1} − y_{k−2})/Δ, to be corrected
- * @throws DataError  where no run has the five gap-free positions one row needs
- *
- * Cost  O(n d support²) time, O(B p²) memory.
- */
-export function collectForceFrictionMoments(
-  tracks: TrackSet,
-  plan: EstimationPlan,
-  layout: SecondOrderLayout,
-  lag: 1 | 2,
-): ForceFrictionMoments {
-  const { positions, dimensions, samplingInterval: dt } = tracks;
-  const p = layout.size;
-  const k = layout.friction?.functionCount ?? 0;
-  const { count, ofPosition } = plan.blocks;
-  const matrices = Array.from({ length: count }, () => new Float64Array(p * p));
-  const vectors = Array.from({ length: count }, () => new Float64Array(p));
-  const frictionSums = Array.from({ length: count }, () => new Float64Array(k));
-  const frictionProducts = Array.from({ length: count }, () => new Float64Array(k * k));
-  const instrumentGram = new Float64Array(p * p);
-  const builder = new RowBuilder(layout);
-  const { regressors, instruments } = builder;
-  const rows = visitAccelerations(tracks, lag, lag + 1, (row, velocity, earlier, fresh) => {
-    for (let other = fresh ? row - 2 : row; other <= row; other++) builder.evaluate(positions, other);
-    const block = ofPosition[row];
-    for (let axis = 0; axis < dimensions; axis++) {
-      builder.fill(regressors, axis, row, velocity, -1);
-      builder.fill(instruments, axis, row - 2, earlier, -1);
-      const acceleration = secondDifference(positions, row * dimensions + axis, dimensions) / (dt * dt);
-      addOuterProducts(
-        matrices[block],
-        vectors[block],
-        instrumentGram,
-        p,
-        instruments,
-        regressors,
-        acceleration,
-      );
-    }
-    builder.addFrictionProducts(frictionSums[block], frictionProducts[block], row);
-  });
-  if (rows === 0) throw tooShortForAccelerations(lag + 3);
-  return { size: p, matrices, vectors, instrumentGram, frictionSums, frictionProducts };
-}
-
 /**
  * What is done with one row of the force–friction regression.
  *
@@ -190,6 +117,7 @@ export type AccelerationVisitor = (
  *
  * @param lag  of the velocity instrument: (y_{k−lag} − y_{k−lag−1})/Δ
  * @param history  gap-free positions wanted before a row, at least lag + 1
+ * @param runs  of the tracks, in the order in which they are to be visited
  * @returns how many rows there were
  */
 export function visitAccelerations(
@@ -197,11 +125,11 @@ export function visitAccelerations(
   lag: 1 | 2,
   history: number,
   visit: AccelerationVisitor,
+  runs: Runs = findRuns(tracks),
 ): number {
   const { positions, dimensions, samplingInterval: dt } = tracks;
   const velocity = new Float64Array(dimensions);
   const earlier = new Float64Array(dimensions);
-  const runs = findRuns(tracks);
   let rows = 0;
   for (let run = 0; run < runs.starts.length; run++) {
     const first = runs.starts[run] + history;

@@ -4,13 +4,48 @@
 
 import { DataError } from '../../errors.js';
 import type { Basis } from '../../fields/Basis.js';
-import { findRuns, longestRun } from '../../tracks/runs.js';
+import { compileOwnSlopes, compileSums } from '../../fields/compileSums.js';
+import type { SumEvaluator } from '../../fields/splineCells.js';
+import { findRuns, longestRun, orderRuns, type Runs } from '../../tracks/runs.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { EstimationPlan } from '../Estimate.js';
-import type { MomentBlocks } from '../penalizedMoments.js';
 import { fillVelocity, RowBuilder, secondDifference, type SecondOrderLayout } from './forceFriction.js';
+import { type NoiseMoments, NoiseSums } from './noiseSums.js';
 import { noisePairs, ResidualProducts } from './residualProducts.js';
-import { addBasisRow, addSensitivity, createOwnSlopes, type SparseRow } from './sparseRows.js';
+import type { SparseRow } from './sparseRows.js';
+
+/** Fitted force and friction, read at places. */
+class FittedMotion {
+  /** Length d: force, length/time². */
+  readonly force: Float64Array;
+  /** One per friction component, 1/time. */
+  readonly friction: Float64Array;
+  readonly #readForce: SumEvaluator | null;
+  readonly #readFriction: SumEvaluator | null;
+
+  constructor(layout: SecondOrderLayout, parameters: Float64Array) {
+    const { force, friction, dimensions, frictionOffset, frictionComponents } = layout;
+    this.force = new Float64Array(dimensions);
+    this.friction = new Float64Array(frictionComponents);
+    this.#readForce = force && compileSums(force, componentsOf(force, parameters, 0, dimensions));
+    this.#readFriction =
+      friction &&
+      compileSums(friction, componentsOf(friction, parameters, frictionOffset, frictionComponents));
+  }
+
+  read(place: Float64Array): void {
+    this.#readForce?.(place, this.force, 0);
+    this.#readFriction?.(place, this.friction, 0);
+  }
+}
+
+/** Coefficients of several components of a field that stand one after another from `offset` on. */
+function componentsOf(basis: Basis, parameters: Float64Array, offset: number, count: number): number[][] {
+  const k = basis.functionCount;
+  return Array.from({ length: count }, (_, component) =>
+    Array.from(parameters.subarray(offset + component * k, offset + (component + 1) * k)),
+  );
+}
 
 /** Residuals of the regression along one run, with the friction seen at each row. */
 class RunResiduals {
@@ -18,41 +53,48 @@ class RunResiduals {
   readonly residuals: Float64Array;
   /** GΔ/2 per row and axis, limited to ±0.95. */
   readonly halfFriction: Float64Array;
-  readonly builder: RowBuilder;
+  readonly #motion: FittedMotion;
+  readonly #builder: RowBuilder;
   readonly #velocity: Float64Array;
+  readonly #place: Float64Array;
 
   constructor(
     private readonly tracks: TrackSet,
     private readonly layout: SecondOrderLayout,
-    private readonly parameters: Float64Array,
+    parameters: Float64Array,
     longest: number,
   ) {
-    this.builder = new RowBuilder(layout);
+    this.#motion = new FittedMotion(layout, parameters);
+    this.#builder = new RowBuilder(layout);
     this.residuals = new Float64Array(longest * tracks.dimensions);
     this.halfFriction = new Float64Array(longest * tracks.dimensions);
     this.#velocity = new Float64Array(tracks.dimensions);
+    this.#place = new Float64Array(tracks.dimensions);
   }
 
   /** Fills the arrays for the rows from `start` (included) to `end` (excluded). */
   fill(start: number, end: number): void {
-    const { positions, dimensions, samplingInterval: dt } = this.tracks;
+    const { positions, dimensions: d, samplingInterval: dt } = this.tracks;
+    const { frictionForm } = this.layout;
+    const { force, friction } = this.#motion;
+    const [place, velocity] = [this.#place, this.#velocity];
     for (let row = start + 1; row < end - 1; row++) {
-      for (let axis = 0; axis < dimensions; axis++) {
-        const at = (row - start) * dimensions + axis;
-        const regressors = this.rowOf(row, axis, axis === 0);
-        let fitted = 0;
-        let drag = 0;
-        for (let i = 0; i < regressors.length; i++) {
-          const term = regressors.values[i] * this.parameters[regressors.indices[i]];
-          fitted += term;
-          if (regressors.indices[i] >= this.layout.frictionOffset) drag -= term;
+      for (let axis = 0; axis < d; axis++) place[axis] = positions[row * d + axis];
+      this.#motion.read(place);
+      fillVelocity(velocity, positions, row, d, dt);
+      for (let axis = 0; axis < d; axis++) {
+        const at = (row - start) * d + axis;
+        let fitted = force[axis];
+        let half = 0;
+        if (frictionForm === 'matrix') {
+          for (let other = 0; other < d; other++) fitted -= friction[axis * d + other] * velocity[other];
+        } else {
+          const own = friction[frictionForm === 'axes' ? axis : 0];
+          fitted -= own * velocity[axis];
+          half = (own * dt) / 2;
         }
-        const speed = this.#velocity[axis];
-        const half = speed === 0 ? 0 : (drag * dt) / (2 * speed);
-        this.residuals[at] =
-          secondDifference(positions, row * dimensions + axis, dimensions) / (dt * dt) - fitted;
-        this.halfFriction[at] =
-          this.layout.frictionForm === 'matrix' ? 0 : Math.max(-0.95, Math.min(0.95, half));
+        this.residuals[at] = secondDifference(positions, row * d + axis, d) / (dt * dt) - fitted;
+        this.halfFriction[at] = half > 0.95 ? 0.95 : half < -0.95 ? -0.95 : half;
       }
     }
   }
@@ -61,11 +103,11 @@ class RunResiduals {
   rowOf(row: number, axis: number, fresh: boolean): SparseRow {
     const { positions, dimensions, samplingInterval: dt } = this.tracks;
     if (fresh) {
-      this.builder.evaluate(positions, row);
+      this.#builder.evaluate(positions, row);
       fillVelocity(this.#velocity, positions, row, dimensions, dt);
     }
-    this.builder.fill(this.builder.regressors, axis, row, this.#velocity, -1);
-    return this.builder.regressors;
+    this.#builder.fill(this.#builder.regressors, axis, row, this.#velocity, -1);
+    return this.#builder.regressors;
   }
 }
 
@@ -95,42 +137,107 @@ export function collectErrorMoments(
   layout: SecondOrderLayout,
   parameters: Float64Array,
 ): ErrorMoments {
-  const { dimensions, samplingInterval: dt } = tracks;
+  const { dimensions: d, samplingInterval: dt } = tracks;
   const { count, ofPosition } = plan.blocks;
-  const numerators = new Float64Array(count * dimensions);
-  const denominators = new Float64Array(count * dimensions);
-  const sensitivity = new Float64Array(dimensions * layout.size);
+  const numerators = new Float64Array(count * d);
+  const denominators = new Float64Array(count * d);
+  visitErrorRows(tracks, layout, parameters, (row, products, halves, ratios, slopes) => {
+    const slot = ofPosition[row] * d;
+    for (let axis = 0; axis < d; axis++) {
+      const middle = 2 + slopes[axis] * dt * dt;
+      numerators[slot + axis] += products[axis];
+      denominators[slot + axis] +=
+        2 + 2 * halves[axis] * halves[axis] + middle * middle + 2 * middle * ratios[axis];
+    }
+  });
+  let sensitivity: Float64Array | null = null;
+  return {
+    numerators,
+    denominators,
+    get sensitivity() {
+      sensitivity ??= collectErrorSensitivity(tracks, layout, parameters);
+      return sensitivity;
+    },
+  };
+}
+
+/** Derivative of the summed numerators with respect to the parameters, shape (d, p). */
+function collectErrorSensitivity(
+  tracks: TrackSet,
+  layout: SecondOrderLayout,
+  parameters: Float64Array,
+): Float64Array {
+  const { dimensions: d } = tracks;
+  const sensitivity = new Float64Array(d * layout.size);
+  visitErrorRows(tracks, layout, parameters, (row, _products, _halves, _ratios, _slopes, pulls, rowOf) => {
+    for (let axis = 0; axis < d; axis++) {
+      const { indices, values, length } = rowOf(row, axis, axis === 0);
+      const base = axis * layout.size;
+      for (let i = 0; i < length; i++) sensitivity[base + indices[i]] += pulls[axis] * values[i];
+    }
+  });
+  return sensitivity;
+}
+
+/**
+ * One row from which the localization variance is read; everything per axis.
+ *
+ * @param products  u_k (u_k − (a₀/a₁) ū), with ū the mean of the neighbouring u
+ * @param halves  GΔ/2;  @param ratios  a₀/a₁;  @param slopes  ∂F_e/∂q
+ * @param pulls  derivative of the product with respect to a fitted value. Shifting e_{k±1} back on its own row changes
+ *   the basis values little: one product stands for both
+ * @param rowOf  regressors of an axis at the row; the third argument evaluates the functions there first
+ */
+type ErrorVisitor = (
+  row: number,
+  products: Float64Array,
+  halves: Float64Array,
+  ratios: Float64Array,
+  slopes: Float64Array,
+  pulls: Float64Array,
+  rowOf: (row: number, axis: number, fresh: boolean) => SparseRow,
+) => void;
+
+function visitErrorRows(
+  tracks: TrackSet,
+  layout: SecondOrderLayout,
+  parameters: Float64Array,
+  visit: ErrorVisitor,
+): void {
+  const { positions, dimensions: d, samplingInterval: dt } = tracks;
   const runs = findRuns(tracks);
   const run = new RunResiduals(tracks, layout, parameters, longestRun(runs));
   const { residuals, halfFriction } = run;
   const scale = dt ** 4;
-  const slopeAt = createOwnSlopes(layout.force, parameters, tracks.positions, dimensions);
+  const readSlopes =
+    layout.force && compileOwnSlopes(layout.force, componentsOf(layout.force, parameters, 0, d));
+  const [place, products, halves, ratios, slopes, pulls] = Array.from(
+    { length: 6 },
+    () => new Float64Array(d),
+  );
+  const rowOf = (row: number, axis: number, fresh: boolean): SparseRow => run.rowOf(row, axis, fresh);
   for (let r = 0; r < runs.starts.length; r++) {
     const start = runs.starts[r];
     const end = runs.ends[r];
     if (end - start < 5) continue;
     run.fill(start, end);
     for (let row = start + 2; row < end - 2; row++) {
-      for (let axis = 0; axis < dimensions; axis++) {
-        const at = (row - start) * dimensions + axis;
-        const neighbours = (residuals[at - dimensions] + residuals[at + dimensions]) / 2;
+      for (let axis = 0; axis < d; axis++) {
+        const at = (row - start) * d + axis;
         const half = halfFriction[at];
-        const ratio = residualCovarianceRatio(half);
-        const slot = ofPosition[row] * dimensions + axis;
-        numerators[slot] += scale * residuals[at] * (residuals[at] - ratio * neighbours);
-        const middle = 2 + slopeAt(row, axis) * dt * dt;
-        denominators[slot] += 2 + 2 * half * half + middle * middle + 2 * middle * ratio;
-        // Shifting e_{k±1} back on its own row changes the basis values little: one product stands for both.
-        const weight = -scale * 2 * (residuals[at] - ratio * neighbours);
-        const regressors = run.rowOf(row, axis, axis === 0);
-        const base = axis * layout.size;
-        for (let i = 0; i < regressors.length; i++) {
-          sensitivity[base + regressors.indices[i]] += weight * regressors.values[i];
-        }
+        // A scalar friction is the same for every axis, and so is all that follows from it.
+        if (axis === 0 || half !== halves[axis - 1]) ratios[axis] = residualCovarianceRatio(half);
+        else ratios[axis] = ratios[axis - 1];
+        halves[axis] = half;
+        const rest = residuals[at] - (ratios[axis] * (residuals[at - d] + residuals[at + d])) / 2;
+        products[axis] = scale * residuals[at] * rest;
+        pulls[axis] = -2 * scale * rest;
+        place[axis] = positions[row * d + axis];
       }
+      readSlopes?.(place, slopes, 0);
+      visit(row, products, halves, ratios, slopes, pulls, rowOf);
     }
   }
-  return { numerators, denominators, sensitivity };
 }
 
 /**
@@ -164,12 +271,6 @@ export function checkSecondOrderRuns(tracks: TrackSet): void {
   );
 }
 
-/** What the residuals of the regression say of the noise. */
-export interface NoiseMoments extends MomentBlocks {
-  /** Shape (p₂, p₁): how the total moment vector moves with the parameters of the first regression. */
-  readonly sensitivity: Float64Array;
-}
-
 /**
  * Moment conditions of the effective noise L(q) = Δ Σ_{|j|≤2} e_k e_{k+j}, block by block.
  *
@@ -185,33 +286,20 @@ export function collectNoiseMoments(
   basis: Basis,
   parameters: Float64Array,
 ): NoiseMoments {
-  const { positions, dimensions } = tracks;
+  const { positions } = tracks;
   const { count, ofPosition } = plan.blocks;
-  const k = basis.functionCount;
-  const components = noisePairs(plan.noise.form, dimensions).length;
-  const p = components * k;
-  const matrices = Array.from({ length: count }, () => new Float64Array(p * p));
-  const vectors = Array.from({ length: count }, () => new Float64Array(p));
-  const total = new Float64Array(p * p);
-  const sensitivity = new Float64Array(p * layout.size);
-  const indices = new Int32Array(basis.support);
-  const values = new Float64Array(basis.support);
-  visitNoiseRows(tracks, plan.noise.form, layout, parameters, (row, products, regressorsOf) => {
-    const block = ofPosition[row];
-    const found = basis.evaluateInto(positions, row * dimensions, indices, values);
-    products.responses.forEach((response, component) => {
-      addBasisRow(matrices[block], vectors[block], total, p, component * k, indices, values, found, response);
-    });
-    for (let axis = 0; axis < dimensions; axis++) {
-      const regressors = regressorsOf(axis);
-      for (let component = 0; component < components; component++) {
-        const slope = products.slopes[component * dimensions + axis];
-        if (slope === 0) continue;
-        addSensitivity(sensitivity, layout.size, component * k, indices, values, found, regressors, -slope);
-      }
-    }
-  });
-  return { size: p, matrices, vectors, instrumentGram: total, sensitivity };
+  const components = noisePairs(plan.noise.form, tracks.dimensions).length;
+  const sums = new NoiseSums(tracks, layout, basis, components, count);
+  const runs = orderRuns(findRuns(tracks), ofPosition);
+  visitNoiseRows(
+    tracks,
+    plan.noise.form,
+    layout,
+    parameters,
+    (row, products) => sums.add(positions, row, ofPosition[row], products),
+    runs,
+  );
+  return sums.moments();
 }
 
 /**
@@ -231,6 +319,7 @@ export type NoiseVisitor = (
  *
  * @param form  of the noise
  * @param parameters  force–friction parameters, length p₁
+ * @param runs  of the tracks, in the order in which they are to be visited
  */
 export function visitNoiseRows(
   tracks: TrackSet,
@@ -238,9 +327,9 @@ export function visitNoiseRows(
   layout: SecondOrderLayout,
   parameters: Float64Array,
   visit: NoiseVisitor,
+  runs: Runs = findRuns(tracks),
 ): void {
   const products = new ResidualProducts(form, tracks.dimensions, 2, tracks.samplingInterval);
-  const runs = findRuns(tracks);
   const run = new RunResiduals(tracks, layout, parameters, longestRun(runs));
   for (let r = 0; r < runs.starts.length; r++) {
     const start = runs.starts[r];

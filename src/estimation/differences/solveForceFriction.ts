@@ -11,11 +11,8 @@ import {
   type PenaltyGroup,
   solvePenalizedMoments,
 } from '../penalizedMoments.js';
-import {
-  collectForceFrictionMoments,
-  type ForceFrictionMoments,
-  type SecondOrderLayout,
-} from './forceFriction.js';
+import type { SecondOrderLayout } from './forceFriction.js';
+import { collectForceFrictionMoments, type ForceFrictionMoments } from './forceFrictionMoments.js';
 import { collectErrorMoments, type ErrorMoments } from './residuals.js';
 import { invertMatrix } from '../../numerics/linear/smallMatrix.js';
 
