@@ -11,6 +11,7 @@ import type { Estimate } from './estimation/Estimate.js';
 import { planEstimation } from './estimation/planEstimation.js';
 import { surveyTracks } from './momenta/surveyTracks.js';
 import type { MapTasks } from './numerics/MapTasks.js';
+import { partOf } from './numerics/ReportShare.js';
 import { checkTrackLengths } from './tracks/usableTracks.js';
 import { countPositions, countTracks, type TrackSet } from './tracks/TrackSet.js';
 import { sampleTracks } from './tracks/sampleTracks.js';
@@ -25,11 +26,15 @@ export type { FitResult };
 export interface FitContext {
   /** Runs independent pieces of work, such as the simulations behind `refine`; default: one after another. */
   readonly mapTasks?: MapTasks;
+  /** Is told how much of the work is done, and what is done now. */
   readonly onProgress?: (done: number, total: number, stage: string) => void;
 }
 
 /** Replicates behind simultaneous bands: their quantile needs more draws than a standard deviation does. */
 const BAND_REPLICATES = 1000;
+
+/** Of the time, with `refine`: the fit itself, before it is simulated and fitted again. */
+const FIT_SHARE = 0.1;
 
 /** Digits kept of stored replicates; their own scatter is some per cent. */
 const REPLICATE_DIGITS = 7;
@@ -52,24 +57,25 @@ export async function fitTracks(
   study: Study,
   context: FitContext = {},
 ): Promise<FitResult> {
-  const progress = context.onProgress ?? (() => undefined);
-  const steps = 4;
-
-  progress(0, steps, 'surveying');
+  const share = study.refine ? FIT_SHARE : 1;
+  const progress = (done: number, stage: string): void => context.onProgress?.(share * done, 1, stage);
+  // Shares of the time, as fits of some ten thousand positions spend it.
+  progress(0, 'surveying');
   const survey = surveyTracks(tracks, { localizationError: study.localizationError });
   const order = study.order === 'auto' ? survey.recommendedOrder : study.order;
   const { tracks: usable, warnings: lengthWarnings } = checkTrackLengths(tracks, order);
   const visited = describeVisited(usable);
 
-  progress(1, steps, 'estimating');
+  progress(0.05, 'estimating');
   const plan = planEstimation(usable, study, order, survey.relaxationTime, visited);
-  const estimate = chooseEstimator(study.estimator)(usable, plan);
+  const tellEstimating = partOf((way) => progress(way, 'estimating'), 0.05, 0.85);
+  const estimate = chooseEstimator(study.estimator)(usable, { ...plan, onProgress: tellEstimating });
 
-  progress(2, steps, 'resampling');
+  progress(0.85, 'resampling');
   const drawn = drawReplicates(estimate, Math.max(study.replicates, BAND_REPLICATES), study.seed);
   const replicates = drawn.slice(0, study.replicates);
 
-  progress(3, steps, 'drawing bands');
+  progress(0.9, 'drawing bands');
   const centres = visitedCentres(visited);
   const multiplier = pointwiseMultiplier(study.confidence, plan.blocks.count, replicates.length);
   const simultaneous: Record<string, number> = {};
@@ -77,7 +83,7 @@ export async function fitTracks(
   for (const spread of spreads) {
     simultaneous[spread.name] = simultaneousMultiplier(spread, study.confidence, multiplier);
   }
-  progress(4, steps, 'done');
+  progress(1, 'done');
 
   const warnings: Warning[] = [
     ...survey.warnings,
@@ -118,7 +124,8 @@ export async function fitTracks(
   return refineFit(fit, usable, {
     seed: study.seed,
     mapTasks: context.mapTasks,
-    onProgress: (done, total) => progress(done, total, 'refining'),
+    onProgress: (done, total) =>
+      context.onProgress?.(FIT_SHARE + (1 - FIT_SHARE) * (done / total), 1, 'refining'),
   });
 }
 

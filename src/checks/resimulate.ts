@@ -35,6 +35,7 @@ export interface ResimulationOptions {
 const REPLICATES = 99; // p-values in steps of 0.01
 const FEWEST_REPLICATES = 19;
 const REFITS = 4; // each costs a whole fit; the standard error of the mean is half the scatter of the estimator
+const REFIT_SHARE = 20; // a refit takes about as long as this many simulated recordings, by likelihood
 const LEVEL = 0.05;
 
 const MAPS: readonly string[] = ['kinetic-temperature', 'velocity-persistence', 'current'];
@@ -94,7 +95,7 @@ export async function resimulate(
     draw: draws.length > 0 ? draws[index % draws.length] : null,
   }));
   const refits = options.refit === undefined ? 0 : Math.min(options.refits ?? REFITS, replicates);
-  const total = replicates + refits;
+  const total = replicates + REFIT_SHARE * refits;
   const described = await mapTasks(describeReplicateTask, { design, layout, seed }, inputs, (done) =>
     options.onProgress?.(done, total),
   );
@@ -116,7 +117,7 @@ export async function resimulate(
     options.refit === undefined
       ? []
       : await refitCoefficients(fit, design, seed, refits, options.refit, warnings, (done) =>
-          options.onProgress?.(replicates + done, total),
+          options.onProgress?.(replicates + REFIT_SHARE * done, total),
         );
   const titles = new Map(Object.entries(TITLES));
   for (const { name, title } of layout.passages?.kinds ?? []) titles.set(name, title);

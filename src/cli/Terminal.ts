@@ -3,6 +3,7 @@
 import { resolve } from 'node:path';
 import picocolors from 'picocolors';
 import type { Warning } from '../errors.js';
+import { createProgress, NO_PROGRESS, type Progress } from './progress.js';
 
 /** The outside of the process as far as the program uses it; tests hand in their own. */
 export interface Streams {
@@ -12,21 +13,17 @@ export interface Streams {
   readonly env: Readonly<Record<string, string | undefined>>;
   /** Directory that relative paths start from. */
   readonly cwd: string;
+  /** The clock behind progress, in milliseconds. */
+  now(): number;
 }
 
 /** The streams of this process. */
 export function processStreams(): Streams {
   const { stdout, stderr, stdin, env } = process;
-  return { stdout, stderr, stdin, env, cwd: process.cwd() };
+  return { stdout, stderr, stdin, env, cwd: process.cwd(), now: () => performance.now() };
 }
 
 type Colors = ReturnType<typeof picocolors.createColors>;
-
-/** Progress of one long step; `stop` takes the bar off the screen. */
-export interface Progress {
-  update(done: number, total: number, stage?: string): void;
-  stop(): void;
-}
 
 export class Terminal {
   readonly streams: Streams;
@@ -98,24 +95,10 @@ export class Terminal {
 
   /** A progress bar where standard error is a terminal, otherwise nothing. */
   async startProgress(title: string): Promise<Progress> {
-    const { stderr } = this.streams;
-    if (this.quiet || stderr.isTTY !== true) return { update: () => {}, stop: () => {} };
-    const { SingleBar, Presets } = (await import('cli-progress')).default;
-    const bar = new SingleBar(
-      { stream: stderr, clearOnComplete: true, hideCursor: true, format: '{stage} {bar} {value}/{total}' },
-      Presets.shades_classic,
-    );
-    let started = false;
-    return {
-      update: (done, total, stage) => {
-        if (!started) bar.start(total, done, { stage: stage ?? title });
-        started = true;
-        bar.setTotal(total);
-        bar.update(done, { stage: stage ?? title });
-      },
-      stop: () => {
-        if (started) bar.stop();
-      },
-    };
+    const { stderr, env, now } = this.streams;
+    if (this.quiet || stderr.isTTY !== true || env.TERM === 'dumb') return NO_PROGRESS;
+    const library = (await import('cli-progress')).default;
+    const width = Math.max(40, stderr.columns ?? 80);
+    return createProgress(library, { stream: stderr, title, width, now });
   }
 }

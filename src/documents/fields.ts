@@ -13,7 +13,9 @@ export const basisSchema = z.discriminatedUnion('kind', [
     scale: z.array(z.number().positive()).describe('half-width of the scaled coordinates, length'),
   }),
   z.strictObject({
-    kind: z.literal('spline').describe('tensor product of uniform B-splines, cubic unless degree says otherwise'),
+    kind: z
+      .literal('spline')
+      .describe('tensor product of uniform B-splines, cubic unless degree says otherwise'),
     counts: z.array(z.int().min(1).max(1000)).describe('number of B-splines along each axis'),
     low: numbers.describe('lower edge of the box, length'),
     high: numbers.describe('upper edge of the box, length'),

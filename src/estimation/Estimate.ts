@@ -5,6 +5,7 @@
 import type { Warning } from '../errors.js';
 import type { BasisSpec } from '../fields/Basis.js';
 import type { FieldForm, Model } from '../fields/CoefficientField.js';
+import type { ReportShare } from '../numerics/ReportShare.js';
 import type { TrackSet } from '../tracks/TrackSet.js';
 import type { Blocks } from './blocks.js';
 
@@ -34,6 +35,8 @@ export interface EstimationPlan {
   /** Where an iterative estimator may start, where a good place is known: coefficients in the order of
    * `modelParameters`, and roughness strengths as its diagnostics give them. It changes the way, not the answer. */
   readonly start?: { readonly coefficients: ArrayLike<number>; readonly strengths: readonly number[] };
+  /** Is told how far an iterative estimator has come. */
+  readonly onProgress?: ReportShare;
 }
 
 export interface Estimate {

@@ -16,6 +16,7 @@ import { estimateLikelihood } from '../estimation/likelihood/estimateLikelihood.
 import { planEstimation } from '../estimation/planEstimation.js';
 import type { BasisSpec } from '../fields/Basis.js';
 import type { FieldForm } from '../fields/CoefficientField.js';
+import type { ReportShare } from '../numerics/ReportShare.js';
 import { quantileSorted } from '../numerics/statistics/quantile.js';
 import { countPositions, type TrackSet } from '../tracks/TrackSet.js';
 import { checkTrackLengths } from '../tracks/usableTracks.js';
@@ -57,10 +58,11 @@ export function estimateFlexibly(
   tracks: TrackSet,
   flexible: readonly PlannedField[],
   frictionForm?: FieldForm,
+  onProgress?: ReportShare,
 ): FlexibleEstimate {
   const planned = planFlexibly(fit, tracks, flexible, frictionForm);
   const estimate = isCovered(planned.plan) ? estimateLikelihood : estimateDifferences;
-  return { ...planned, estimate: estimate(planned.tracks, planned.plan) };
+  return { ...planned, estimate: estimate(planned.tracks, { ...planned.plan, onProgress }) };
 }
 
 /** Whether the likelihood takes the plan. */

@@ -6,6 +6,7 @@
 import type { FitResult } from '../documents/FitDocument.js';
 import { UsageError } from '../errors.js';
 import type { Model } from '../fields/CoefficientField.js';
+import { partOf, type ReportShare } from '../numerics/ReportShare.js';
 import type { TrackSet } from '../tracks/TrackSet.js';
 import { measureContrasts } from './contrasts.js';
 import { describeLaws, describeVerdict, type JudgedVerdict } from './describeVerdicts.js';
@@ -29,12 +30,14 @@ export interface TestRequest extends PlannedRequest {
   readonly simulate?: (model: Model, localizationError: readonly number[], index: number) => TrackSet;
   /** How many are simulated; default 99: p-values in steps of 0.01. */
   readonly simulations?: number;
+  /** Is told how much is done: first of the test itself, then, where it comes to that, of the simulations. */
   readonly onProgress?: (done: number, total: number) => void;
 }
 
 const NODES = 1000; // places that stand for the occupancy
 const MODES = 8; // beyond those the parameters need
 const SIMULATIONS = 99;
+const ESTIMATE_SHARE = 0.7; // of the time of a trial: the flexible fit
 const FEW_BLOCKS = 30; // below this the covariance is too rough for Hotelling's law to be trusted
 
 /**
@@ -49,7 +52,8 @@ const FEW_BLOCKS = 30; // below this the covariance is too rough for Hotelling's
  */
 export function testHypothesis(fit: FitResult, tracks: TrackSet, request: TestRequest): TestResult {
   const plan = planTest(fit, request);
-  const trial = runTrial(fit, tracks, plan);
+  const tell = request.onProgress;
+  const trial = runTrial(fit, tracks, plan, tell && ((share) => tell(share, 1)));
   const judged = trial.verdicts.map((verdict, which) => settle(verdict, which, fit, request, plan, trial));
   return request.hypothesis === 'law'
     ? describeLaws(fit, request, judged)
@@ -63,8 +67,9 @@ interface Trial {
   readonly verdicts: readonly Verdict[];
 }
 
-function runTrial(fit: FitResult, tracks: TrackSet, plan: TestPlan): Trial {
-  const flexible = estimateFlexibly(fit, tracks, plan.fields, plan.frictionForm);
+function runTrial(fit: FitResult, tracks: TrackSet, plan: TestPlan, onProgress?: ReportShare): Trial {
+  const tellEstimate = partOf(onProgress, 0, ESTIMATE_SHARE);
+  const flexible = estimateFlexibly(fit, tracks, plan.fields, plan.frictionForm, tellEstimate);
   const nodes = pickOccupancyNodes(flexible, NODES);
   const statements = plan.createStatements(
     flexible.estimate.model,

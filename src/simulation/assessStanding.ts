@@ -1,6 +1,7 @@
 /** The standing of a scenario: the conditions one by one, and where none fails how fast its law is approached. */
 
 import type { Scenario, Standing } from '../documents/Scenario.js';
+import type { ReportShare } from '../numerics/ReportShare.js';
 import { formatUnit } from '../units.js';
 import { createIntegrator } from './createIntegrator.js';
 import { recommendedStep } from './recommendedStep.js';
@@ -13,9 +14,14 @@ import { assessConditions } from './standingConditions.js';
  * Assesses a scenario. The relaxation time is measured by a simulation of its own, of a few million steps at most.
  *
  * @param seed  of that simulation
+ * @param onProgress  is told how much of the longest simulation there may be is done
  * @throws UsageError  where a formula cannot be read
  */
-export async function assessStanding(scenario: Scenario, seed: number): Promise<Standing> {
+export async function assessStanding(
+  scenario: Scenario,
+  seed: number,
+  onProgress?: ReportShare,
+): Promise<Standing> {
   const conditions = await assessConditions(scenario, { draws: scenario.ensemble?.draws });
   if (conditions.some(({ verdict }) => verdict === 'fails')) return { conditions, relaxation: null };
   const evaluator = await createScenarioEvaluator(scenario);
@@ -26,6 +32,7 @@ export async function assessStanding(scenario: Scenario, seed: number): Promise<
     interval: observation.interval,
     periods: axes.map((axis) => (axis.kind === 'periodic' ? (axis.high ?? 0) - (axis.low ?? 0) : 0)),
     drawStart: createStartDraw(scenario, evaluator),
+    onProgress,
   });
   const duration = (observation.frames - 1) * observation.interval;
   const count = (relaxation: number): number =>

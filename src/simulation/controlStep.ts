@@ -8,6 +8,7 @@
  * Source  Talay & Tubaro, Stoch. Anal. Appl. 8 (1990) 483: that weak errors expand in powers of the step.
  */
 
+import type { ReportShare } from '../numerics/ReportShare.js';
 import { randomStream } from '../numerics/random/RandomStream.js';
 import { CoupledStream } from './CoupledStream.js';
 import type { Integrator } from './Integrator.js';
@@ -46,6 +47,8 @@ export interface StepControlOptions {
     velocity: Float64Array,
     stream: ReturnType<typeof randomStream>,
   ) => void;
+  /** Is told about how much is done. */
+  readonly onProgress?: ReportShare;
 }
 
 const MAX_HALVINGS = 6;
@@ -79,7 +82,7 @@ export function controlStep(integrator: Integrator, options: StepControlOptions)
 
 function measureStep(
   integrator: Integrator,
-  { tolerance, seed, interval, duration, drawStart }: StepControlOptions,
+  { tolerance, seed, interval, duration, drawStart, onProgress }: StepControlOptions,
   step: number,
   halvings: number,
 ): StepControl {
@@ -145,6 +148,7 @@ function measureStep(
       second.add(i, averages[1][i] - averages[2][i]);
       sizes.add(i, averages[1][i]);
     }
+    onProgress?.(1 - 0.5 ** (halvings + particle / particles)); // as if the next halving were the last
     first.count++;
     second.count++;
     sizes.count++;

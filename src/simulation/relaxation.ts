@@ -10,6 +10,7 @@
  */
 
 import { spectralRadius } from '../numerics/linear/spectralRadius.js';
+import type { ReportShare } from '../numerics/ReportShare.js';
 import { type RandomStream, randomStream } from '../numerics/random/RandomStream.js';
 import { quantileSorted } from '../numerics/statistics/quantile.js';
 import type { Integrator } from './Integrator.js';
@@ -33,6 +34,8 @@ export interface RelaxationOptions {
   readonly periods: readonly number[];
   /** Puts a particle where tracks start: position, velocity. */
   readonly drawStart: (position: Float64Array, velocity: Float64Array, stream: RandomStream) => void;
+  /** Is told how much of the longest simulation there may be is done. */
+  readonly onProgress?: ReportShare;
 }
 
 export const RELAXATION_CONFIDENCE = 0.95;
@@ -76,6 +79,7 @@ export function measureRelaxation(integrator: Integrator, options: RelaxationOpt
         samples.set(q, row * coordinates);
         if (isSecond) samples.set(v, row * coordinates + d);
       }
+      options.onProgress?.(Math.min(1, (spent + steps * row) / MAX_STEPS));
     }
     spent += steps * PARTICLES * SAMPLES;
     const found = estimateTime(evaluateSlowFunctions(samples, coordinates, periods), interval, seed);

@@ -97,7 +97,9 @@ export async function simulateScenario(
   warnings.push(...warnOfConditions(await assessConditions(run)));
   const chosen = chooseStep(run, evaluator, warnings);
   const stepControl =
-    tolerance === undefined ? null : tryHalving(run, evaluator, chosen, tolerance, seed, warnings);
+    tolerance === undefined
+      ? null
+      : tryHalving(run, evaluator, chosen, tolerance, seed, warnings, options.onProgress);
   const step = stepControl?.step ?? chosen;
 
   const perPiece = Math.max(1, Math.floor(ROWS_PER_PIECE / observation.frames));
@@ -155,6 +157,7 @@ function tryHalving(
   tolerance: number,
   seed: number,
   warnings: Warning[],
+  onProgress: SimulationOptions['onProgress'],
 ): StepControl {
   if (!(tolerance > 0 && tolerance < 1)) {
     throw new UsageError(`--tolerance is a share and must be above 0 and below 1, got ${tolerance}`, {
@@ -171,6 +174,7 @@ function tryHalving(
     interval,
     duration: frames * interval,
     drawStart: createStartDraw(scenario, evaluator),
+    onProgress: onProgress && ((share) => onProgress(share, 1)),
   });
   if (!control.converged) {
     warnings.push({

@@ -162,15 +162,6 @@ describe('color', () => {
   });
 });
 
-describe('progress', () => {
-  it('is shown on a terminal only', async () => {
-    const shown = await place.run(FIT.split(' '), { isTTY: true });
-    expect(shown.status).toBe(0);
-    expect(shown.stderr).toMatch(/surveying|estimating|resampling/);
-    expect((await type(FIT)).stderr).not.toMatch(/surveying|estimating|resampling/);
-  });
-});
-
 describe('scenario and simulate', () => {
   it('write a scenario, and tracks that survey reads', async () => {
     const scenario = await type('scenario fit.json -o scenario.json --title A-bowl --quiet');

@@ -18,6 +18,8 @@ export interface Setting {
   readonly env?: Readonly<Record<string, string>>;
   /** Whether both outputs pretend to be a terminal. */
   readonly isTTY?: boolean;
+  /** The clock, in milliseconds; default: it stands still. */
+  readonly now?: () => number;
 }
 
 class Sink extends Writable {
@@ -56,6 +58,7 @@ export async function runInProcess(argv: readonly string[], setting: Setting = {
     stdin: Readable.from(setting.stdin === undefined ? [] : [Buffer.from(setting.stdin)]),
     env: setting.env ?? {},
     cwd: setting.cwd ?? process.cwd(),
+    now: setting.now ?? (() => 0),
   });
   return { status, stdout: stdout.text, stderr: stderr.text };
 }

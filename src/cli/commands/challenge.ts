@@ -1,5 +1,6 @@
 /** `challenge FIT`: the model's own assumptions, tried against the recording. */
 
+import type { ChallengeResult } from '../../hypotheses/challenge/ChallengeResult.js';
 import { challengeModel } from '../../hypotheses/challenge/challengeModel.js';
 import { formatChallengeSummary } from '../../report/terminal.js';
 import type { Call } from '../commandTable.js';
@@ -15,7 +16,13 @@ export async function runChallenge({ operands, options, terminal }: Call): Promi
   const fit = await readFit(fitPath, terminal);
   const { tracks } = await readRecordingOfFit(fit, terminal.resolve(fitPath), overrides, terminal);
   const confidence = (options.confidence as number | undefined) ?? fit.study.confidence;
-  const result = challengeModel(fit, tracks, confidence);
+  const progress = await terminal.startProgress('challenging');
+  let result: ChallengeResult;
+  try {
+    result = challengeModel(fit, tracks, confidence, (share) => progress.update(share, 1));
+  } finally {
+    progress.stop();
+  }
   for (const { name, reason } of result.skipped) terminal.note(`${name} was left out: ${reason}`);
   for (const warning of result.warnings) terminal.warn(warning);
   const text = wantsJson(options)

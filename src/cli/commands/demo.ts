@@ -89,7 +89,7 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
   await keep('resimulation.json', formatJson(describeResimulation(resimulation)));
   await say(`${formatResimulationSummary(resimulation, terminal.summaryStyle)}\n`);
 
-  const scenario = await buildTitledScenario(fit, dataPackage.title);
+  const scenario = await buildTitledScenario(fit, dataPackage.title, false, terminal);
   await keep('scenario.json', formatJson(scenario));
   await keep(
     'report.html',

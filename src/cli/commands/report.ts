@@ -63,7 +63,9 @@ async function writeFigures(
   const drawPng = await openPngRenderer();
   const files: string[] = [];
   const digits = Math.max(2, String(figures.length).length);
+  const progress = await terminal.startProgress('drawing');
   for (const [index, figure] of figures.entries()) {
+    progress.update(index, figures.length);
     const name = join(directory, `${String(index + 1).padStart(digits, '0')}-${figure.name}`);
     const svg = composeFigure(figure);
     for (const [ending, content] of [
@@ -75,6 +77,7 @@ async function writeFigures(
       files.push(`${name}.${ending}`);
     }
   }
+  progress.stop();
   terminal.note(`wrote ${figures.length} figures to ${directory}`);
   return files;
 }

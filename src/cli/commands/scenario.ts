@@ -21,6 +21,7 @@ export async function runScenario({ operands, options, terminal }: Call): Promis
     fit,
     options.title as string | undefined,
     options.firstOrder === true,
+    terminal,
   );
   tellStanding(scenario, terminal);
   for (const warning of scenario.warnings) terminal.warn(warning);
@@ -31,12 +32,16 @@ export async function runScenario({ operands, options, terminal }: Call): Promis
 /** The scenario of a fit, or its first-order limit, under the title given and with its standing conditions. */
 export async function buildTitledScenario(
   fit: FitDocument,
-  title?: string,
-  firstOrder = false,
+  title: string | undefined,
+  firstOrder: boolean,
+  terminal: Terminal,
 ): Promise<Scenario> {
   const built = buildScenario(fit);
   const scenario = firstOrder ? buildFirstOrderScenario(built).scenario : built;
-  const standing = await assessStanding(scenario, fit.study.seed);
+  const progress = await terminal.startProgress('standing');
+  const standing = await assessStanding(scenario, fit.study.seed, (share) =>
+    progress.update(share, 1),
+  ).finally(progress.stop);
   return {
     ...scenario,
     title: title ?? scenario.title,

@@ -45,7 +45,7 @@ export async function runTest({ operands, options, terminal }: Call): Promise<vo
   const laws = hypothesis === 'law' ? await readLaws(fit, options, ownLaws) : undefined;
   planTest(fit, { hypothesis, field: options.field as string | undefined, laws }); // a slip costs no waiting
   const { tracks } = await readRecordingOfFit(fit, terminal.resolve(fitPath), overrides, terminal);
-  const progress = await terminal.startProgress('simulating');
+  const progress = await terminal.startProgress('testing');
   let result: TestResult;
   try {
     result = testHypothesis(fit, tracks, {

@@ -72,6 +72,7 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
         return matrix;
       },
       confine: (parameters, from) => confine(parameters, from, layout, floors),
+      onProgress: plan.onProgress,
     },
     start,
     plan.start?.strengths.length === groups.length ? plan.start.strengths : [],

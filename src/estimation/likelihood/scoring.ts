@@ -14,7 +14,9 @@
 
 import { NumericalError } from '../../errors.js';
 import { invertPositive } from '../../numerics/linear/invertPositive.js';
+import type { ReportShare } from '../../numerics/ReportShare.js';
 import type { PenaltyGroup } from '../penalizedMoments.js';
+import { createConvergenceShare } from './convergenceShare.js';
 
 /** A roughness penalty and how many directions of one stretch it acts on. */
 export interface RankedPenalty extends PenaltyGroup {
@@ -38,6 +40,8 @@ export interface ScoringProblem {
   information(parameters: Float64Array, onTheWay: boolean): Float64Array;
   /** Moves a point to where it may be (bounds, and not too far from where the step began), in place. */
   confine(parameters: Float64Array, from: Float64Array): void;
+  /** Is told after every iteration about how far it has come. */
+  readonly onProgress?: ReportShare;
 }
 
 export interface ScoringSolution {
@@ -91,6 +95,7 @@ export function solveScores(
       (group.fixedStrength ?? START_SHARE) * scaleOf(information, p, group),
   );
   const paces = groups.map(() => ({ factor: 1, last: 0 }));
+  const tellShare = createConvergenceShare(problem.onProgress, TOLERANCE, STRENGTH_TOLERANCE);
   let relaxation = 1;
   let lastStep: Float64Array = new Float64Array(p);
   let converged = false;
@@ -128,6 +133,7 @@ export function solveScores(
       : Infinity;
     inverse = invertSystem(information, groups, strengths, pull, p);
     converged = decrement < TOLERANCE && change < STRENGTH_TOLERANCE;
+    tellShare(decrement, change);
   }
   information = problem.information(parameters, false);
   inverse = invertSystem(information, groups, strengths, pull, p);

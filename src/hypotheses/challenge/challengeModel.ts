@@ -2,6 +2,7 @@
 
 import type { FitResult } from '../../documents/FitDocument.js';
 import type { Warning } from '../../errors.js';
+import type { ReportShare } from '../../numerics/ReportShare.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { ChallengeResult, Check } from './ChallengeResult.js';
 import { checkGaussianity } from './checkGaussianity.js';
@@ -21,12 +22,19 @@ import { measureInnovations } from './innovations.js';
  * broken in at most 1 − confidence of studies.
  *
  * @param tracks  the recording the fit was made from
+ * @param confidence  level of the verdicts
+ * @param onProgress  is told how much is done
  * @throws DataError, NumericalError  as the likelihood estimator does
  */
-export function challengeModel(fit: FitResult, tracks: TrackSet, confidence: number): ChallengeResult {
+export function challengeModel(
+  fit: FitResult,
+  tracks: TrackSet,
+  confidence: number,
+  onProgress?: ReportShare,
+): ChallengeResult {
   const { relaxationTime } = fit.survey;
   const memory = typeof relaxationTime === 'number' ? relaxationTime : null;
-  const innovations = measureInnovations(fit, tracks);
+  const innovations = measureInnovations(fit, tracks, onProgress);
   const results: (Finding | Skipped)[] = [
     checkMemory(innovations, memory),
     checkSpeedDependence(innovations, memory),

@@ -15,6 +15,7 @@ import { createSecondOrderPass } from '../../estimation/likelihood/secondOrderPa
 import { estimateLikelihood } from '../../estimation/likelihood/estimateLikelihood.js';
 import { modelFields } from '../../fields/modelParameters.js';
 import { createBasis } from '../../fields/createBasis.js';
+import { partOf, type ReportShare } from '../../numerics/ReportShare.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
 import { pickOccupancyNodes, planFlexibly } from '../flexibleEstimate.js';
 import { projectOnBasis } from '../imposeField.js';
@@ -35,6 +36,7 @@ export interface Innovations {
 }
 
 const NODES = 1000;
+const ESTIMATE_SHARE = 0.6; // of the time; the rest goes to the scores
 const MODES = 6; // of each coefficient: what sums over the whole recording can feel of it
 const STEP = 0.3; // standard errors over which scores are taken: short against curvature, long against rounding
 
@@ -43,7 +45,7 @@ const STEP = 0.3; // standard errors over which scores are taken: short against 
  *
  * @param tracks  the recording the fit was made from
  */
-export function measureInnovations(fit: FitResult, tracks: TrackSet): Innovations {
+export function measureInnovations(fit: FitResult, tracks: TrackSet, onProgress?: ReportShare): Innovations {
   const { order } = fit.model;
   const flexible = planFlexibly(fit, tracks, []);
   const usable = flexible.tracks;
@@ -53,6 +55,7 @@ export function measureInnovations(fit: FitResult, tracks: TrackSet): Innovation
     exposure: 0,
     friction: withoutMatrix(flexible.plan.friction),
     noise: withoutMatrix(flexible.plan.noise),
+    onProgress: partOf(onProgress, 0, ESTIMATE_SHARE),
   };
   const estimate = estimateLikelihood(usable, plan);
   const errorEstimated = plan.localizationError === null && usable.localizationErrors === null;
@@ -74,6 +77,7 @@ export function measureInnovations(fit: FitResult, tracks: TrackSet): Innovation
   const modes = findOccupancyModes(flexible.basis, nodes, fit.visited, MODES);
   const directions = listDirections(layout, estimate, nodes, modes);
   const scores = new Float64Array(n * directions.length);
+  const tellScores = partOf(onProgress, ESTIMATE_SHARE, 1);
   directions.forEach((direction, j) => {
     const above = run(estimate.parameters.map((value, i) => value + direction[i]));
     const below = run(estimate.parameters.map((value, i) => value - direction[i]));
@@ -83,6 +87,7 @@ export function measureInnovations(fit: FitResult, tracks: TrackSet): Innovation
         Math.log(below.variances[at] / above.variances[at]) + below.values[at] ** 2 - above.values[at] ** 2;
       if (rise === rise) scores[Math.floor(at / usable.dimensions) * directions.length + j] += rise / 4;
     }
+    tellScores?.((j + 1) / directions.length);
   });
   return {
     tracks: usable,
