@@ -1,26 +1,28 @@
 /**
  * The likelihood estimator: state-space quasi-likelihood of the recorded positions, with the coefficients of each step
  * read at the place the filter predicts. Friction, noise and diffusion are exponentials of their weighted sums, hence
- * positive by construction; roughness penalties are chosen by marginal likelihood. Matrix forms and exposures are left to
- * the differences estimator, with a warning.
+ * positive by construction; roughness penalties are chosen by marginal likelihood.
  */
 
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
 import type { Warning } from '../../errors.js';
-import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
 import { withParameters } from '../../fields/modelParameters.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import { describeVisited } from '../../tracks/visitedRegion.js';
-import { estimateDifferences, LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
+import { LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan } from '../Estimate.js';
 import { expectInformation } from './expectedInformation.js';
 import { createFirstOrderPass } from './firstOrderPass.js';
 import { gatherPlaces } from './gatherPlaces.js';
+import { createJointPass } from './joint/jointPass.js';
+import { createSpectralInformation } from './joint/spectralInformation.js';
 import { type FieldSlot, layOutLikelihood, type LikelihoodLayout } from './layout.js';
 import { createAxisInformation } from './localInformation.js';
-import type { PassSetting } from './PathPass.js';
+import { withLogLinks } from './positiveLinks.js';
+import type { PassSetting, PathPass } from './PathPass.js';
 import { type Pull, type RankedPenalty, type ScoringSolution, solveScores } from './scoring.js';
 import { measureFlow } from './measureFlow.js';
+import { measureMotion } from './measureMotion.js';
 import { createSecondOrderPass } from './secondOrderPass.js';
 import { findStart } from './startValues.js';
 
@@ -37,8 +39,6 @@ const WIDEST = 40; // |log| of positive coefficients and variances stays below; 
  * @throws NumericalError  where the data cannot tell the functions apart
  */
 export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Estimate {
-  const obstacle = findObstacle(plan);
-  if (obstacle) return replaceByDifferences(tracks, plan, obstacle);
   const model = withLogLinks(templateModel(tracks, plan));
   const errorEstimated = plan.localizationError === null && tracks.localizationErrors === null;
   const zero = { force: plan.force.basis === null, friction: plan.friction.basis === null };
@@ -49,12 +49,11 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
     knownError: plan.localizationError,
   };
   const floors = measureFloors(tracks);
-  const pass = (plan.order === 'second' ? createSecondOrderPass : createFirstOrderPass)(
-    tracks,
-    layout,
-    setting,
-  );
-  const local = createAxisInformation(layout);
+  const joint = plan.exposure > 0 || [plan.friction.form, plan.noise.form].includes('matrix');
+  const pass = createPass(tracks, layout, setting, joint ? plan.exposure : null);
+  const local = joint
+    ? createSpectralInformation(layout, plan.exposure, tracks.samplingInterval)
+    : createAxisInformation(layout);
   const flow = plan.order === 'second' ? measureFlow(tracks, describeVisited(tracks)) : null;
   const places = gatherPlaces(tracks, layout, flow);
   const groups = listPenalties(layout, plan);
@@ -98,48 +97,27 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
   };
 }
 
+/** @param exposure  of the joint pass, which filters all states together; null for the plain pass of the order */
+function createPass(
+  tracks: TrackSet,
+  layout: LikelihoodLayout,
+  setting: PassSetting,
+  exposure: number | null,
+): PathPass {
+  if (exposure !== null) return createJointPass(tracks, layout, setting, exposure);
+  const create = layout.model.order === 'second' ? createSecondOrderPass : createFirstOrderPass;
+  return create(tracks, layout, setting);
+}
+
 const UNCONVERGED: Warning = {
   code: 'not-converged',
   message:
     'the likelihood had not settled when the iterations ran out; take the result with care, use fewer functions, or compare with --estimator differences',
 };
 
-/** Why the plan needs another estimator, or null where it does not. */
-function findObstacle(plan: EstimationPlan): string | null {
-  if (plan.friction.form === 'matrix' || plan.noise.form === 'matrix')
-    return 'a full matrix of friction or noise';
-  if (plan.exposure > 0) return 'positions averaged over an exposure';
-  return null;
-}
-
-/** The differences estimate in place of this one, and a warning that says so. */
-function replaceByDifferences(tracks: TrackSet, plan: EstimationPlan, obstacle: string): Estimate {
-  const estimate = estimateDifferences(tracks, plan);
-  const warning: Warning = {
-    code: 'estimator-replaced',
-    message: `the likelihood does not cover ${obstacle} yet, so this fit was made by --estimator differences`,
-  };
-  return { ...estimate, warnings: [warning, ...estimate.warnings] };
-}
-
-function withLogLinks(model: Model): Model {
-  const positive = (field: CoefficientField): CoefficientField => ({ ...field, link: 'log' });
-  if (model.order === 'first') return { ...model, diffusion: positive(model.diffusion) };
-  return { ...model, friction: positive(model.friction), noise: positive(model.noise) };
-}
-
 /** Smallest localization error variance per axis: far below anything that would show. */
-function measureFloors({ dimensions, positions, trackOffsets }: TrackSet): Float64Array {
-  const sums = new Float64Array(dimensions);
-  let count = 0;
-  for (let track = 0; track < trackOffsets.length - 1; track++) {
-    for (let row = trackOffsets[track] + 1; row < trackOffsets[track + 1]; row++) {
-      for (let axis = 0; axis < dimensions; axis++)
-        sums[axis] += (positions[row * dimensions + axis] - positions[(row - 1) * dimensions + axis]) ** 2;
-      count++;
-    }
-  }
-  return sums.map((sum) => Math.max((FLOOR * sum) / Math.max(count, 1), Number.MIN_VALUE));
+function measureFloors(tracks: TrackSet): Float64Array {
+  return measureMotion(tracks).steps.map((step) => Math.max(FLOOR * step, Number.MIN_VALUE));
 }
 
 function confine(
@@ -171,11 +149,12 @@ function pullToMean(layout: LikelihoodLayout, start: Float64Array): Pull {
   const centre = new Float64Array(layout.size);
   for (const slot of [layout.friction, layout.noise]) {
     if (!slot || slot.basis < 0 || layout.bases[slot.basis].spec.kind !== 'spline') continue;
-    const end = slot.offset + slot.components * slot.functionCount;
-    const mean =
-      start.subarray(slot.offset, end).reduce((sum, value) => sum + value, 0) / (end - slot.offset);
-    precision.fill(PULL, slot.offset, end);
-    centre.fill(mean, slot.offset, end);
+    const k = slot.functionCount;
+    for (let from = slot.offset; from < slot.offset + slot.components * k; from += k) {
+      const mean = start.subarray(from, from + k).reduce((sum, value) => sum + value, 0) / k;
+      precision.fill(PULL, from, from + k);
+      centre.fill(mean, from, from + k);
+    }
   }
   return { precision, centre };
 }

@@ -6,13 +6,12 @@
  * Source  Fisher scoring: Rao, Proc. Camb. Phil. Soc. 44 (1948) 50.
  */
 
-import { createModelEvaluator } from '../../fields/evaluateModel.js';
-import { withParameters } from '../../fields/modelParameters.js';
 import { readErrorVariances } from './errorVariances.js';
 import type { PlaceGroups } from './gatherPlaces.js';
-import type { LikelihoodLayout } from './layout.js';
+import type { FieldSlot, LikelihoodLayout } from './layout.js';
 import { type LocalInformation, type LocalSetting, numberLocal } from './localInformation.js';
 import type { PassSetting } from './PathPass.js';
+import { weighComponents } from './readCoefficients.js';
 
 /** Where a local parameter goes: the functions of a basis from an offset on, or one parameter of its own. */
 interface Target {
@@ -33,9 +32,8 @@ export function expectInformation(
   const d = layout.dimensions;
   const p = layout.size;
   const out = new Float64Array(p * p);
-  const evaluator = createModelEvaluator(
-    withParameters(layout.model, parameters.subarray(0, layout.modelSize)),
-  );
+  const frictionSums = new Float64Array(layout.friction?.components ?? 0);
+  const noiseSums = new Float64Array(layout.noise.components);
   const errors = new Float64Array(d);
   readErrorVariances(layout, setting, parameters, errors);
   const targets = listTargets(layout);
@@ -49,9 +47,11 @@ export function expectInformation(
       const count = basis.evaluateInto(groups.places, at, indices[b], values[b]);
       values[b].fill(0, count);
     });
+    if (layout.friction) weigh(parameters, layout.friction, indices, values, frictionSums);
+    weigh(parameters, layout.noise, indices, values, noiseSums);
     const here: LocalSetting = {
-      evaluator,
-      place: groups.places.subarray(at, at + d),
+      frictionSums,
+      noiseSums,
       interval: groups.intervals[group],
       errorVariances: groups.errorVariances ? groups.errorVariances.subarray(at, at + d) : errors,
       flow: groups.flow ? groups.flow.subarray(at, at + d) : null,
@@ -64,6 +64,26 @@ export function expectInformation(
     for (let j = 0; j < i; j++) out[i * p + j] = out[j * p + i];
   }
   return out;
+}
+
+/** Weighted sums of the components of a field. */
+function weigh(
+  parameters: Float64Array,
+  slot: FieldSlot,
+  indices: readonly Int32Array[],
+  values: readonly Float64Array[],
+  out: Float64Array,
+): void {
+  if (slot.basis >= 0)
+    weighComponents(
+      parameters,
+      slot,
+      indices[slot.basis],
+      values[slot.basis],
+      0,
+      values[slot.basis].length,
+      out,
+    );
 }
 
 /** In the order of the local parameters; null for those that are not estimated. */

@@ -149,7 +149,8 @@ function lossRate(x: number): number {
   return -Math.expm1(-x) / x;
 }
 
-function countSubsteps(
+/** Steps to divide an interval into, from what was read at its first node. */
+export function countSubsteps(
   tape: PassState['tape'],
   node: number,
   cellWidths: Float64Array,

@@ -10,14 +10,14 @@
  * Source  Whittle, Ark. Mat. 2 (1953) 423.
  */
 
-import type { ModelEvaluator } from '../../fields/CoefficientField.js';
 import { informationPerPosition } from '../../momenta/precisionBound.js';
 import type { LikelihoodLayout } from './layout.js';
 
 /** A place with what is recorded there. */
 export interface LocalSetting {
-  readonly evaluator: ModelEvaluator;
-  readonly place: Float64Array;
+  /** Weighted sums of the components of friction and of noise, before their link. */
+  readonly frictionSums: Float64Array;
+  readonly noiseSums: Float64Array;
   readonly interval: number;
   /** Length d, length². */
   readonly errorVariances: Float64Array;
@@ -58,15 +58,12 @@ export function createAxisInformation(layout: LikelihoodLayout): LocalInformatio
   const numbers = numberLocal(layout);
   const { count } = numbers;
   const table = second ? fillTable() : null;
-  const frictions = new Float64Array(d * d);
-  const noises = new Float64Array(d * d);
+  const noFriction = !layout.friction || layout.friction.basis < 0;
   const own = new Float64Array(9);
-  return ({ evaluator, place, interval, errorVariances, flow }, steps, out) => {
-    evaluator.frictionInto(place, 0, frictions);
-    evaluator.noiseInto(place, 0, noises);
+  return ({ frictionSums, noiseSums, interval, errorVariances, flow }, steps, out) => {
     for (let axis = 0; axis < d; axis++) {
-      const friction = frictions[axis * d + axis];
-      const noise = noises[axis * d + axis];
+      const friction = noFriction ? 0 : Math.exp(frictionSums[layout.friction?.components === d ? axis : 0]);
+      const noise = Math.exp(noiseSums[layout.noise.components === d ? axis : 0]);
       if (table) {
         const x = Math.max(friction * interval, 1e-12);
         const thermal = (noise / (2 * Math.max(friction, 1e-300))) * interval * interval;
@@ -82,7 +79,7 @@ export function createAxisInformation(layout: LikelihoodLayout): LocalInformatio
       out[n * count + n] += steps * own[4];
       out[n * count + e] += steps * own[5];
       out[e * count + e] += steps * own[8];
-      if (!layout.friction || layout.friction.basis < 0) continue;
+      if (!layout.friction || noFriction) continue;
       const g = numbers.friction + (layout.friction.components === d ? axis : 0);
       const carried = flow ? -friction * flow[axis] : 0;
       out[f * count + g] += force * carried;

@@ -1,6 +1,6 @@
 /** The coefficients at a place, written to the tape together with the basis functions they came from. */
 
-import type { LikelihoodLayout } from './layout.js';
+import type { FieldSlot, LikelihoodLayout } from './layout.js';
 import { createTape, type Tape } from './tape.js';
 
 /** What reading coefficients works on. */
@@ -26,6 +26,18 @@ export function createReader(layout: LikelihoodLayout): CoefficientReader {
 
 /** Evaluates every field at `place` into the tape: force and its own slope, friction, noise, and the basis values. */
 export function readCoefficients(state: CoefficientReader, parameters: Float64Array, node: number): void {
+  const { layout, tape } = state;
+  const d = layout.dimensions;
+  readForce(state, parameters, node);
+  const { friction, noise } = layout;
+  const at = node * d;
+  if (friction && friction.basis >= 0) readPositive(state, parameters, friction, tape.friction, at);
+  readPositive(state, parameters, noise, tape.noise, at);
+  for (let axis = 0; axis < d; axis++) readSlopes(state, parameters, at, axis);
+}
+
+/** Evaluates the bases at `place` into the tape, and the force. */
+export function readForce(state: CoefficientReader, parameters: Float64Array, node: number): void {
   const { layout, tape, place } = state;
   const d = layout.dimensions;
   for (let b = 0; b < layout.bases.length; b++) {
@@ -40,7 +52,7 @@ export function readCoefficients(state: CoefficientReader, parameters: Float64Ar
       values[base + i] = tape.scratchValues[b][i];
     }
   }
-  const { force, friction, noise } = layout;
+  const { force } = layout;
   const at = node * d;
   if (force.basis >= 0) {
     const { support } = layout.bases[force.basis];
@@ -53,9 +65,58 @@ export function readCoefficients(state: CoefficientReader, parameters: Float64Ar
       tape.force[at + axis] = sum;
     }
   }
-  if (friction && friction.basis >= 0) readPositive(state, parameters, friction, tape.friction, at);
-  readPositive(state, parameters, noise, tape.noise, at);
-  for (let axis = 0; axis < d; axis++) readSlopes(state, parameters, at, axis);
+}
+
+/** Writes the weighted sums of all components of a field at a node, before their link. */
+export function sumComponents(
+  { layout, tape }: CoefficientReader,
+  parameters: Float64Array,
+  slot: FieldSlot,
+  node: number,
+  out: Float64Array,
+): void {
+  if (slot.basis < 0) return;
+  const { support } = layout.bases[slot.basis];
+  weighComponents(
+    parameters,
+    slot,
+    tape.indices[slot.basis],
+    tape.values[slot.basis],
+    node * support,
+    support,
+    out,
+  );
+}
+
+/** Writes the derivatives of the weighted sums along an axis, at `place`. */
+export function sumSlopes(
+  { layout, place, derivativeIndices, derivativeValues }: CoefficientReader,
+  parameters: Float64Array,
+  slot: FieldSlot,
+  axis: number,
+  out: Float64Array,
+): void {
+  const basis = layout.bases[slot.basis];
+  const count = basis.differentiateInto(place, 0, axis, derivativeIndices, derivativeValues);
+  weighComponents(parameters, slot, derivativeIndices, derivativeValues, 0, count, out);
+}
+
+/** Writes the weighted sum of each component, from `count` basis functions that start at `from`. */
+export function weighComponents(
+  parameters: Float64Array,
+  slot: FieldSlot,
+  indices: Int32Array,
+  values: Float64Array,
+  from: number,
+  count: number,
+  out: Float64Array,
+): void {
+  for (let component = 0; component < slot.components; component++) {
+    const offset = slot.offset + component * slot.functionCount;
+    let sum = 0;
+    for (let i = from; i < from + count; i++) sum += parameters[offset + indices[i]] * values[i];
+    out[component] = sum;
+  }
 }
 
 /** Derivatives of force (with a minus) and friction along their own axis. */

@@ -8,8 +8,8 @@ import { TRANSITION_SIZE, transitionInto } from './transition.js';
 
 const LONGEST_X = 0.5; // Γh of one substep: coefficients are frozen and force slopes summed as series over it
 const LONGEST_PHASE = 0.5; // √|K| h of one substep
-const LONGEST_PATH = 0.7; // cells of the finest basis a substep may cross
-const MOST_SUBSTEPS = 64;
+export const LONGEST_PATH = 0.7; // cells of the finest basis a substep may cross
+export const MOST_SUBSTEPS = 64;
 
 /**
  * Filters the rows `start` (included) to `end` (excluded).
@@ -147,7 +147,7 @@ function addFrictionSlope(tape: Tape, at: number, h: number, filtered: Float64Ar
 }
 
 /** Steps per time that Γh and √|K| h ask for at a node. */
-function measureSteepness(tape: Tape, node: number, d: number): number {
+export function measureSteepness(tape: Tape, node: number, d: number): number {
   let steepness = 0;
   for (let axis = 0; axis < d; axis++) {
     const at = node * d + axis;

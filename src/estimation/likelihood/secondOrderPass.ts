@@ -25,6 +25,7 @@ import type { PassState } from './secondOrderState.js';
 import { SLOPE_SIZE } from './transition.js';
 import { createReader } from './readCoefficients.js';
 import { measureCells } from './measureCells.js';
+import { measureMotion } from './measureMotion.js';
 
 const DIFFUSE = 1e4; // start variance of a velocity relative to the mean squared secant velocity
 
@@ -39,7 +40,7 @@ export function createSecondOrderPass(
     ...createReader(layout),
     tracks,
     setting,
-    diffuse: measureDiffuse(tracks),
+    diffuse: measureMotion(tracks).velocities.map((value) => DIFFUSE * value),
     cellWidths: measureCells(layout),
     slopes: new Float64Array(SLOPE_SIZE),
     filtered: new Float64Array(5 * d),
@@ -62,20 +63,4 @@ export function createSecondOrderPass(
       return logLikelihood;
     },
   };
-}
-
-function measureDiffuse({ dimensions, positions, times, trackOffsets }: TrackSet): Float64Array {
-  const sums = new Float64Array(dimensions);
-  let count = 0;
-  for (let track = 0; track < trackOffsets.length - 1; track++) {
-    for (let row = trackOffsets[track] + 1; row < trackOffsets[track + 1]; row++) {
-      const interval = times[row] - times[row - 1];
-      for (let axis = 0; axis < dimensions; axis++) {
-        const step = positions[row * dimensions + axis] - positions[(row - 1) * dimensions + axis];
-        sums[axis] += (step / interval) ** 2;
-      }
-      count++;
-    }
-  }
-  return sums.map((sum) => DIFFUSE * (sum > 0 ? sum / count : 1));
 }

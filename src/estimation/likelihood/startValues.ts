@@ -179,20 +179,30 @@ function setPositive(
 ): void {
   if (slot.basis < 0) return;
   const matrix = new Float64Array(d * d);
-  for (let component = 0; component < slot.components; component++) {
+  // Axes start unmixed: components off the diagonal stay zero.
+  listDiagonal(slot, d).forEach((component, axis) => {
     const constant =
-      slot.components === d ? constants[component] : constants.reduce((sum, value) => sum + value, 0) / d;
+      slot.components === 1 ? constants.reduce((sum, value) => sum + value, 0) / d : constants[axis];
     const logarithms = new Float64Array(places.length / d).fill(Math.log(constant));
     if (evaluate) {
       for (let place = 0; place < logarithms.length; place++) {
         evaluate(places, place * d, matrix);
-        const ratio = matrix[component * d + component] / constant;
+        const ratio = matrix[axis * d + axis] / constant;
         logarithms[place] += Math.log(Math.min(Math.max(ratio, 1 / REACH), REACH));
       }
     }
     const projected = project(slot.field, d, places, logarithms);
     parameters.set(projected, slot.offset + component * slot.functionCount);
-  }
+  });
+}
+
+/** Component on the diagonal for each axis; one for all in the scalar form. */
+function listDiagonal({ field, components }: FieldSlot, d: number): number[] {
+  if (components === 1) return [0];
+  return Array.from({ length: d }, (_, axis) => {
+    if (field.form !== 'matrix') return axis;
+    return field.name === 'friction' ? axis * (d + 1) : axis * d - (axis * (axis - 1)) / 2;
+  });
 }
 
 /** Coefficients whose weighted sum comes closest to the values at the places, slightly smoothed. */
