@@ -4,6 +4,7 @@ import { DataError } from '../errors.js';
 import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
 import type { Units } from '../units.js';
 import type { CollectedRows } from './RowCollector.js';
+import { checkResolution } from './checkResolution.js';
 import { estimateSamplingInterval, SAME_TIME } from './samplingInterval.js';
 import { quoteCell, tableError } from './tableError.js';
 import { unwrapInto } from './unwrapPeriodic.js';
@@ -32,7 +33,8 @@ export interface BuiltTracks {
  * Rows of a track at the same time (up to rounding) must say the same and are then counted once.
  *
  * @throws DataError  rows that contradict each other, a single time in the whole table, no track with two positions,
- *                    positions that never change, values beyond double precision after scaling
+ *                    positions that never change, values beyond double precision after scaling or too large beside the
+ *                    others
  *
  * Cost     O(n) where rows come sorted, else O(n log n) for the unsorted tracks; about three copies of the table.
  */
@@ -64,6 +66,8 @@ export function buildTracks(rows: CollectedRows, options: BuildOptions): BuiltTr
   checkFinite(times, 'times', 'time');
   checkFinite(positions, 'positions', 'length');
   checkMotion(positions, offsets, dimensions, rows);
+  checkResolution(times, [rows.countsFrames ? 'frame' : 'time'], { order, offsets }, rows);
+  checkResolution(positions, COORDINATE_NAMES.slice(0, dimensions), { order, offsets }, rows);
   unwrapInto(positions, offsets, options.periods);
 
   const prefixed = haveSharedNames(rows);

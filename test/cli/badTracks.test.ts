@@ -35,6 +35,13 @@ const CASES: readonly [title: string, table: string | Uint8Array, ...words: stri
   ['a ragged row', replaceRow(5, '1,0.4,3'), 'bad.csv line 6'],
   ['an unclosed quote', replaceRow(5, '"1,0.4,3,2'), 'bad.csv line 6', 'quote'],
   ['binary junk', Uint8Array.from({ length: 5000 }, (_, i) => (i * 7919 + (i >> 3)) % 256), 'bad.csv'],
+  [
+    'a position beside which all others vanish',
+    replaceRow(5, '1,0.4,1e308,2'),
+    'bad.csv line 6',
+    'x is 1e+308',
+  ],
+  ['a time beside which all others vanish', replaceRow(40, '1,1e20,3,2'), 'bad.csv line 41', 'time is 1'],
   ['one position only', 'time,x\n0,1\n', 'one position only'],
   ['one time only', 'track,time,x,y\n1,0,1,2\n2,0,3,4\n3,0,5,6\n', 'same time 0'],
 ];
@@ -59,6 +66,30 @@ describe('tracks that cannot be used', () => {
     const { status, stderr } = await place.run(['fit', 'bad.csv', '--order', 'second', '-o', 'out.json']);
     expect(status).toBe(3);
     expect(stderr).toMatch(/3 positions.*second-order.*4/);
+  });
+
+  it('tracks too short for the coefficients asked for end with 3', async () => {
+    const rows = Array.from({ length: 9 }, (_, i) => {
+      const [x, y, z] = [1.7, 2.9, 4.3].map((turn) => Math.sin(turn * (i + 1) ** 2).toFixed(4));
+      return `${Math.floor(i / 3)},${i % 3},${x},${y},${z}`;
+    });
+    place.write('bad.csv', `track,time,x,y,z\n${rows.join('\n')}\n`);
+    const { status, stderr } = await place.run(['fit', 'bad.csv', '-o', 'out.json']);
+    expect(stderr).toMatch(/wanderlaw: 3 tracks of 9 positions in all cannot carry this fit: [^\n]+\n$/);
+    expect(status).toBe(3);
+  });
+
+  it('tracks of three positions that carry a fit say how little they say', async () => {
+    const rows = Array.from({ length: 15 }, (_, i) => {
+      const [x, y] = [1.7, 2.9].map((turn) => Math.sin(turn * (i + 1) ** 2).toFixed(4));
+      return `${Math.floor(i / 3)},${i % 3},${x},${y}`;
+    });
+    place.write('bad.csv', `track,time,x,y\n${rows.join('\n')}\n`);
+    const { status, stdout, stderr } = await place.run(['fit', 'bad.csv', '--json']);
+    expect(status).toBe(0);
+    expect(stderr).toContain('the typical track has 3 positions');
+    expect(stderr).toContain('rests on 10 numbers');
+    expect(JSON.parse(stdout)).toMatchObject({ model: { order: 'first' } });
   });
 
   for (const order of ['first', 'second', 'auto']) {

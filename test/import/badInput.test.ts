@@ -83,6 +83,11 @@ const BAD_TABLES: Record<string, BadTable> = {
     says: /"0x10" is not a number/,
   },
   'markup in a number': { content: `${HEADER}1,0,1,<b>2</b>\n`, line: 2, column: 'y', says: /"<b>2<\/b>"/ },
+  'a marker for a position that was not found': {
+    content: `${HEADER}1,0,1,2\n1,1,2,3\n1,2,1,-1e30\n1,3,2,3\n1,4,1,2\n`,
+    line: 4,
+    says: /y is -1e\+30, beside which/,
+  },
   'a thousands separator': {
     content: `${HEADER}1,0,"1,234.5",2\n`,
     line: 2,

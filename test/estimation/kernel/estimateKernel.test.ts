@@ -336,7 +336,9 @@ describe('what does not change an estimate', () => {
 
 describe('refusals and choices', () => {
   it('goes by its name', () => {
-    expect(chooseEstimator('kernel')).toBe(estimateKernel);
+    const tracks = simulateFirstOrder({ tracks: 5, frames: 100, seed: 1 });
+    const { plan, estimate } = estimateWith(estimateKernel, tracks, {}, 'first');
+    expect(chooseEstimator('kernel')(tracks, plan).parameters).toEqual(estimate.parameters);
   });
 
   it('says what is missing where runs are too short', () => {
