@@ -11,6 +11,8 @@ export interface OptionSpec {
   readonly default?: string;
   /** What small, large or special values do. */
   readonly extremes?: string;
+  /** Words the value may be, or begin with (those that end in a colon), for completion in shells. */
+  readonly choices?: readonly string[];
   /** Reads the text; without it the text itself is the value. */
   readonly parse?: ParseValue;
   /** Given more than once, the values add up to a list. */

@@ -109,6 +109,7 @@ export const COMMAND_OPTIONS = {
     meaning:
       'what is tested: uniform-friction, uniform-noise (at first order, of the diffusion), uniform-temperature (one temperature everywhere), conservative-force (the force has a potential), zero-force, isotropic-friction, or law (a formula, with --field and --law)',
     default: 'law where --law is given',
+    choices: HYPOTHESES,
     parse: choiceValue(HYPOTHESES),
   },
   field: {

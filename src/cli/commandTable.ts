@@ -22,8 +22,8 @@ export interface CommandSpec {
   readonly summary: string;
   /** What it does, reads and writes, for its own help page. */
   readonly description: string;
-  /** Operands in commander's notation, each with its meaning. */
-  readonly operands: readonly (readonly [name: string, meaning: string])[];
+  /** Operands in commander's notation, each with its meaning and, where it is one of a few words, those. */
+  readonly operands: readonly (readonly [name: string, meaning: string, choices?: readonly string[]])[];
   readonly options: readonly OptionName[];
   readonly required?: readonly OptionName[];
   readonly examples: readonly string[];
@@ -32,6 +32,12 @@ export interface CommandSpec {
 
 const TRACKS = ['<tracks...>', 'track tables (CSV or TSV, also gzipped); - reads standard input'] as const;
 const FIT = ['<fit>', 'fit file'] as const;
+
+/** Shipped data sets, the default one first. */
+export const DATA_SETS = ['felt-table', 'settling-beads', 'stripe-cells'] as const;
+
+/** Shells that are taught to complete lines. */
+export const SHELLS = ['bash', 'zsh', 'fish'] as const;
 
 export const COMMANDS: readonly CommandSpec[] = [
   {
@@ -206,11 +212,20 @@ export const COMMANDS: readonly CommandSpec[] = [
   {
     name: 'demo',
     summary: 'do the whole job on a shipped data set',
-    description:
-      'Survey, fit, tests, challenges, re-simulation, scenario and report. Data sets: felt-table (default), settling-beads, stripe-cells.',
-    operands: [['[name]', 'data set']],
+    description: `Survey, fit, tests, challenges, re-simulation, scenario and report. Data sets: ${DATA_SETS.join(', ').replace(',', ' (default),')}.`,
+    operands: [['[name]', 'data set', DATA_SETS]],
     options: ['directory', 'workers', ...SPEECH_OPTIONS],
     examples: ['wanderlaw demo', 'wanderlaw demo settling-beads'],
     load: async () => (await import('./commands/demo.js')).runDemo,
+  },
+  {
+    name: 'completion',
+    summary: 'print a script that lets a shell complete commands, options, choices and files',
+    description:
+      'bash and zsh: eval "$(wanderlaw completion bash)" in ~/.bashrc, the same with zsh in ~/.zshrc after compinit. fish: wanderlaw completion fish | source in config.fish.',
+    operands: [['<shell>', SHELLS.join(', '), SHELLS]],
+    options: ['quiet', 'trace'],
+    examples: ['wanderlaw completion bash', 'wanderlaw completion fish'],
+    load: async () => (await import('./commands/completion.js')).runCompletion,
   },
 ];

@@ -1,15 +1,12 @@
 /** From arguments to an exit status: parses the line, runs the command, turns every error into one sentence. */
 
-import { Command, CommanderError, Option } from 'commander';
+import { CommanderError } from 'commander';
 import { UsageError, WanderlawError } from '../errors.js';
 import { COMMANDS, type CommandSpec } from './commandTable.js';
-import { describeOption, OPTIONS, type OptionSpec } from './options.js';
+import { createProgram } from './createProgram.js';
+import { OPTIONS } from './options.js';
 import { formatSuggestion } from './suggest.js';
 import { processStreams, Terminal, type Streams } from './Terminal.js';
-import { readVersion } from './version.js';
-
-const TAGLINE =
-  'Finds the laws behind recorded tracks: force, friction and noise at each place, with honest error bars.';
 
 /**
  * Runs one command line.
@@ -20,7 +17,7 @@ const TAGLINE =
  */
 export async function run(argv: readonly string[], streams: Streams = processStreams()): Promise<number> {
   const terminal = new Terminal(streams, argv.includes('--quiet') || argv.includes('-q'));
-  const program = createProgram(streams, terminal);
+  const program = createProgram(terminal);
   try {
     if (argv.length === 0) {
       streams.stderr.write(program.helpInformation({ error: true }));
@@ -49,71 +46,6 @@ function formatFailure(error: unknown): string {
   const message = (error instanceof Error ? error.message : String(error)).replace(/\s*\n\s*/g, ' ').trim();
   if (error instanceof WanderlawError) return message;
   return `something went wrong inside the program: ${message || 'no message'}; --trace shows where`;
-}
-
-function createProgram(streams: Streams, terminal: Terminal): Command {
-  const program = new Command('wanderlaw')
-    .description(TAGLINE)
-    .version(readVersion(), '-V, --version', 'print the version')
-    .helpOption('-h, --help', 'print help')
-    .helpCommand(false)
-    .usage('COMMAND …')
-    .addHelpText(
-      'after',
-      '\nwanderlaw COMMAND --help, or wanderlaw help COMMAND, explains a command and its options.',
-    );
-  configure(program, streams, terminal);
-  for (const spec of COMMANDS) program.addCommand(createCommand(spec, streams, terminal));
-  return program;
-}
-
-function createCommand(spec: CommandSpec, streams: Streams, terminal: Terminal): Command {
-  const command = new Command(spec.name)
-    .summary(spec.summary)
-    .description(`${capitalize(spec.summary)}.\n${spec.description}`)
-    .helpOption('-h, --help', 'print help')
-    .addHelpText('after', `\nExamples:\n${spec.examples.map((example) => `  ${example}`).join('\n')}`);
-  configure(command, streams, terminal);
-  for (const [name, meaning] of spec.operands) command.argument(name, meaning);
-  for (const name of spec.options) {
-    const option = createOption(OPTIONS[name]);
-    if (spec.required?.includes(name)) option.makeOptionMandatory();
-    command.addOption(option);
-  }
-  return command.action(async () => {
-    const runCommand = await spec.load();
-    await runCommand({ operands: command.args, options: command.opts(), terminal });
-  });
-}
-
-function createOption(spec: OptionSpec): Option {
-  const option = new Option(spec.flags, describeOption(spec));
-  const name = option.long ?? spec.flags;
-  const parse = spec.parse ?? ((text: string) => text);
-  if (spec.repeatable) {
-    option.argParser((text: string, before: unknown) => [
-      ...(Array.isArray(before) ? (before as unknown[]) : []),
-      parse(text, name),
-    ]);
-  } else if (option.required) {
-    option.argParser((text: string) => parse(text, name));
-  }
-  return option;
-}
-
-/** Errors are thrown instead of printed, and help goes to the streams of the caller. */
-function configure(command: Command, streams: Streams, terminal: Terminal): void {
-  command
-    .exitOverride()
-    .showSuggestionAfterError(false)
-    .configureHelp({ helpWidth: terminal.width, styleTitle: (text) => terminal.colors.bold(text) })
-    .configureOutput({
-      writeOut: (text) => streams.stdout.write(text),
-      writeErr: (text) => streams.stderr.write(text),
-      outputError: () => {},
-      getOutHasColors: () => terminal.colors.isColorSupported,
-      getErrHasColors: () => terminal.noteColors.isColorSupported,
-    });
 }
 
 /** What commander found wrong with the line, in our words. */
@@ -164,8 +96,4 @@ function explainLineError(error: CommanderError, argv: readonly string[]): Usage
 function describeOperand(spec: CommandSpec | undefined, name: string): string {
   const operand = spec?.operands.find(([notation]) => notation.replace(/[<>[\].]/g, '') === name);
   return operand === undefined ? name : operand[1].split(';')[0];
-}
-
-function capitalize(text: string): string {
-  return text[0].toUpperCase() + text.slice(1);
 }

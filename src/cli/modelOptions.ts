@@ -6,6 +6,9 @@ import { choiceValue, lengthOrAutoValue, numberValue, shapeValue } from './optio
 const shapes =
   'SHAPE is zero, constant, linear, polynomial:N (total degree), spline (size from the data), spline:N (N functions per axis) or waves:N (periodic axes)';
 
+const ORDERS = ['auto', 'first', 'second'];
+const ESTIMATORS = ['likelihood', 'differences', 'kernel'];
+const SHAPES = ['zero', 'constant', 'linear', 'polynomial:', 'spline', 'spline:', 'waves:'];
 const FORMS = ['scalar', 'axes', 'matrix'];
 
 /** The model and its estimate. */
@@ -15,7 +18,8 @@ export const MODEL_OPTIONS = {
     meaning:
       'order of the model: first (velocity forgotten between frames), second (velocity remembered) or auto (as the survey recommends)',
     default: 'auto',
-    parse: choiceValue(['auto', 'first', 'second']),
+    choices: ORDERS,
+    parse: choiceValue(ORDERS),
     study: 'order',
   },
   estimator: {
@@ -23,7 +27,8 @@ export const MODEL_OPTIONS = {
     meaning:
       'how the coefficients are estimated: likelihood (closest to what the data can tell), differences (fast) or kernel (no basis presumed)',
     default: 'likelihood',
-    parse: choiceValue(['likelihood', 'differences', 'kernel']),
+    choices: ESTIMATORS,
+    parse: choiceValue(ESTIMATORS),
     study: 'estimator',
   },
   force: {
@@ -31,6 +36,7 @@ export const MODEL_OPTIONS = {
     meaning: `functions of place that may make up the force per mass, second order; ${shapes}`,
     unit: 'length/time²',
     default: 'spline',
+    choices: SHAPES,
     parse: shapeValue,
     study: 'force',
   },
@@ -39,6 +45,7 @@ export const MODEL_OPTIONS = {
     meaning: 'the same for the friction, second order',
     unit: '1/time',
     default: 'spline',
+    choices: SHAPES,
     parse: shapeValue,
     study: 'friction',
   },
@@ -47,6 +54,7 @@ export const MODEL_OPTIONS = {
     meaning: 'the same for the noise σσᵀ, second order',
     unit: 'length²/time³',
     default: 'spline',
+    choices: SHAPES,
     parse: shapeValue,
     study: 'noise',
   },
@@ -55,6 +63,7 @@ export const MODEL_OPTIONS = {
     meaning: 'the same for the drift (Itô), first order',
     unit: 'length/time',
     default: 'spline',
+    choices: SHAPES,
     parse: shapeValue,
     study: 'drift',
   },
@@ -63,6 +72,7 @@ export const MODEL_OPTIONS = {
     meaning: 'the same for the diffusion, first order',
     unit: 'length²/time',
     default: 'spline',
+    choices: SHAPES,
     parse: shapeValue,
     study: 'diffusion',
   },
@@ -71,6 +81,7 @@ export const MODEL_OPTIONS = {
     meaning: 'friction as one number (scalar), one per axis (axes) or a full matrix (matrix)',
     default: 'scalar',
     extremes: 'a matrix needs several times the data of a scalar',
+    choices: FORMS,
     parse: choiceValue(FORMS),
     study: 'frictionForm',
   },
@@ -78,6 +89,7 @@ export const MODEL_OPTIONS = {
     flags: '--noise-form <FORM>',
     meaning: 'the same for the noise (second order) or the diffusion (first order)',
     default: 'scalar',
+    choices: FORMS,
     parse: choiceValue(FORMS),
     study: 'noiseForm',
   },
@@ -103,6 +115,7 @@ export const MODEL_OPTIONS = {
     unit: 'length',
     default: 'auto',
     extremes: '0 says that positions are exact',
+    choices: ['auto'],
     parse: lengthOrAutoValue,
     study: 'localizationError',
   },

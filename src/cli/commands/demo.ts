@@ -17,7 +17,7 @@ import {
   formatTestSummary,
 } from '../../report/terminal.js';
 import { judgeFitTask, type Judgement, type Question } from '../../workers/judgeFitTask.js';
-import type { Call } from '../commandTable.js';
+import { type Call, DATA_SETS } from '../commandTable.js';
 import { checkOutput, makeDirectory, writeWhole } from '../files.js';
 import { readRecording } from '../recordings.js';
 import { formatJson } from '../results.js';
@@ -27,8 +27,6 @@ import { fitFiles } from './fit.js';
 import { describeResimulation, resimulateFit } from './resimulate.js';
 import { withWorkers } from '../workers.js';
 import { buildTitledScenario } from './scenario.js';
-
-const DEFAULT_DATA_SET = 'felt-table';
 
 /** The part of a data package that the demo reads. */
 interface DataPackage {
@@ -40,7 +38,7 @@ interface DataPackage {
 
 /** @throws UsageError  for an unknown data set or a directory that cannot be written */
 export async function runDemo({ operands, options, terminal }: Call): Promise<void> {
-  const name = operands[0] ?? DEFAULT_DATA_SET;
+  const name = operands[0] ?? DATA_SETS[0];
   const dataPackage = await readDataPackage(name);
   const shown = (options.output as string | undefined) ?? join('out', name);
   const directory = terminal.resolve(shown);
