@@ -12,8 +12,25 @@
  *         Eilers & Marx, Flexible smoothing with B-splines and penalties, Statist. Sci. 11 (1996) 89.
  */
 
-import { CholeskyDecomposition, EigenvalueDecomposition, Matrix } from 'ml-matrix';
+import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
 import { NumericalError } from '../errors.js';
+import {
+  factorCholeskyInto,
+  solveLowerInPlace,
+  solveUpperInPlace,
+} from '../numerics/linear/choleskyFactor.js';
+import {
+  addMultiple,
+  crossProduct,
+  innerProduct,
+  invertFactored,
+  multiply,
+  solveLowerRows,
+  solveUpperRows,
+  timesVector,
+  trace,
+  transpose,
+} from '../numerics/linear/denseMatrix.js';
 
 export interface MomentBlocks {
   readonly size: number;
@@ -84,9 +101,9 @@ export function solvePenalizedMoments(
       ? Math.min(FOLDS, moments.matrices.length)
       : 1,
   );
-  const information = crossProduct(folds.totalMatrix);
-  const groupScales = groups.map((group) => informationScale(information, group));
-  const ridge = parameterScales(information, groups).map((scale) => RIDGE * scale);
+  const information = crossProduct(folds.totalMatrix, p, p);
+  const groupScales = groups.map((group) => informationScale(information, p, group));
+  const ridge = parameterScales(information, p, groups).map((scale) => RIDGE * scale);
 
   const strengths = groups.map((group, g) => group.fixedStrength ?? known?.[g] ?? 1e-2);
   if (folds.parts.length > 1) {
@@ -108,16 +125,16 @@ export function solvePenalizedMoments(
     }
   }
 
-  const system = Matrix.add(information, penaltyMatrix(groups, strengths, groupScales, ridge));
-  const factor = factorize(system);
-  const right = folds.totalMatrix.transpose().mmul(folds.totalVector);
-  const solution = factor.solve(right);
-  const inverse = factor.solve(Matrix.eye(p, p));
-  const bread = inverse.mmul(folds.totalMatrix.transpose()); // H⁻¹ Ãᵀ
-
-  const parameters = Float64Array.from(solution.to1DArray());
+  const system = penaltyMatrix(groups, strengths, groupScales, ridge);
+  for (let i = 0; i < system.length; i++) system[i] += information[i];
+  const factor = factorize(system, p);
+  const parameters = timesVector(transpose(folds.totalMatrix, p, p), folds.totalVector);
+  solveLowerInPlace(factor, p, parameters);
+  solveUpperInPlace(factor, p, parameters);
+  const inverse = invertFactored(factor, p);
+  const bread = multiply(inverse, transpose(folds.totalMatrix, p, p), p, p, p); // H⁻¹ Ãᵀ
   const influences = blockInfluences(moments, whiten, bread, parameters);
-  const smoother = inverse.mmul(information);
+  const smoother = multiply(inverse, information, p, p, p);
   return {
     parameters,
     influences,
@@ -131,48 +148,52 @@ export function solvePenalizedMoments(
       influences,
       p,
     ),
-    inverse: Float64Array.from(inverse.to1DArray()),
-    bread: Float64Array.from(solveUpperRight(bread, whiten).to1DArray()),
+    inverse,
+    bread: solveUpperRight(bread, whiten, p),
     strengths: [...strengths],
-    effectiveParameters: trace(smoother),
-    conditioning: pivotRatio(factor, system),
+    effectiveParameters: trace(smoother, p),
+    conditioning: pivotRatio(factor, system, p),
   };
 }
 
 interface FoldedMoments {
-  readonly parts: readonly { readonly matrix: Matrix; readonly vector: Matrix }[];
-  readonly totalMatrix: Matrix;
-  readonly totalVector: Matrix;
+  /** Shapes (p, p) and (p), whitened. */
+  readonly parts: readonly { readonly matrix: Float64Array; readonly vector: Float64Array }[];
+  readonly totalMatrix: Float64Array;
+  readonly totalVector: Float64Array;
 }
 
 /** Lower-triangular L with L Lᵀ = Gram of the instruments; moments are divided by it so that W becomes the identity. */
-function whiteningOf(moments: MomentBlocks, groups: readonly PenaltyGroup[]): Matrix {
-  const gram = Matrix.from1DArray(moments.size, moments.size, moments.instrumentGram);
-  if (!(trace(gram) > 0)) {
+function whiteningOf(moments: MomentBlocks, groups: readonly PenaltyGroup[]): Float64Array {
+  const p = moments.size;
+  const gram = moments.instrumentGram.slice();
+  if (!(trace(gram, p) > 0)) {
     throw new NumericalError('the regression has no usable rows; give longer gap-free tracks');
   }
-  const scales = parameterScales(gram, groups);
-  for (let i = 0; i < moments.size; i++) gram.set(i, i, gram.get(i, i) + GRAM_RIDGE * scales[i]);
-  return factorize(gram).lowerTriangularMatrix;
+  const scales = parameterScales(gram, p, groups);
+  for (let i = 0; i < p; i++) gram[i * p + i] += GRAM_RIDGE * scales[i];
+  return factorize(gram, p);
 }
 
 /**
  * The size of each diagonal entry that a ridge is relative to: the mean over its penalty group, the entry itself
  * outside of any. Parameters of different units never share a scale, so results do not depend on units.
  */
-function parameterScales(matrix: Matrix, groups: readonly PenaltyGroup[]): Float64Array {
-  const scales = Float64Array.from(matrix.diagonal());
+function parameterScales(matrix: Float64Array, p: number, groups: readonly PenaltyGroup[]): Float64Array {
+  const scales = Float64Array.from({ length: p }, (_, i) => matrix[i * p + i]);
   for (const group of groups) {
-    const mean = informationScale(matrix, group);
+    const mean = informationScale(matrix, p, group);
     for (const offset of group.offsets) scales.fill(mean, offset, offset + group.functionCount);
   }
-  const fallback = Math.max(trace(matrix) / matrix.rows, Number.MIN_VALUE);
+  const fallback = Math.max(trace(matrix, p) / p, Number.MIN_VALUE);
   return scales.map((scale) => (scale > 0 ? scale : fallback));
 }
 
-function foldMoments(moments: MomentBlocks, whiten: Matrix, foldCount: number): FoldedMoments {
+function foldMoments(moments: MomentBlocks, whiten: Float64Array, foldCount: number): FoldedMoments {
   const p = moments.size;
   const parts = [];
+  const totalMatrix = new Float64Array(p * p);
+  const totalVector = new Float64Array(p);
   for (let fold = 0; fold < foldCount; fold++) {
     const matrix = new Float64Array(p * p);
     const vector = new Float64Array(p);
@@ -180,13 +201,12 @@ function foldMoments(moments: MomentBlocks, whiten: Matrix, foldCount: number): 
       addInto(matrix, moments.matrices[block]);
       addInto(vector, moments.vectors[block]);
     }
-    parts.push({
-      matrix: solveLower(whiten, Matrix.from1DArray(p, p, matrix)),
-      vector: solveLower(whiten, Matrix.columnVector(vector)),
-    });
+    solveLowerRows(whiten, p, matrix, p);
+    solveLowerInPlace(whiten, p, vector);
+    addInto(totalMatrix, matrix);
+    addInto(totalVector, vector);
+    parts.push({ matrix, vector });
   }
-  const totalMatrix = parts.slice(1).reduce((sum, part) => Matrix.add(sum, part.matrix), parts[0].matrix);
-  const totalVector = parts.slice(1).reduce((sum, part) => Matrix.add(sum, part.vector), parts[0].vector);
   return { parts, totalMatrix, totalVector };
 }
 
@@ -197,19 +217,26 @@ function crossValidation(
   scales: readonly number[],
   ridge: Float64Array,
 ): (strengths: readonly number[]) => number {
+  const p = folds.totalVector.length;
   const training = folds.parts.map((part) => {
-    const matrix = Matrix.sub(folds.totalMatrix, part.matrix);
-    const vector = Matrix.sub(folds.totalVector, part.vector);
-    return { normal: crossProduct(matrix), right: matrix.transpose().mmul(vector), part };
+    const matrix = folds.totalMatrix.map((value, i) => value - part.matrix[i]);
+    const vector = folds.totalVector.map((value, i) => value - part.vector[i]);
+    return { normal: crossProduct(matrix, p, p), right: timesVector(transpose(matrix, p, p), vector), part };
   });
   const share = ((folds.parts.length - 1) / folds.parts.length) ** 2; // information left, up to the fixed weight
+  const system = new Float64Array(p * p);
+  const factor = new Float64Array(p * p);
   return (strengths) => {
-    const penalty = penaltyMatrix(groups, strengths, scales, ridge).mul(share);
+    const penalty = penaltyMatrix(groups, strengths, scales, ridge);
     let score = 0;
     for (const { normal, right, part } of training) {
-      const parameters = factorize(Matrix.add(normal, penalty)).solve(right);
-      const residual = Matrix.sub(part.vector, part.matrix.mmul(parameters));
-      score += residual.dot(residual);
+      for (let i = 0; i < system.length; i++) system[i] = normal[i] + share * penalty[i];
+      factorInto(system, p, factor);
+      const parameters = right.slice();
+      solveLowerInPlace(factor, p, parameters);
+      solveUpperInPlace(factor, p, parameters);
+      const fitted = timesVector(part.matrix, parameters);
+      for (let i = 0; i < p; i++) score += (part.vector[i] - fitted[i]) ** 2;
     }
     return score;
   };
@@ -220,18 +247,16 @@ function penaltyMatrix(
   strengths: readonly number[],
   scales: readonly number[],
   ridge: Float64Array,
-): Matrix {
-  const penalty = Matrix.diag(Array.from(ridge));
+): Float64Array {
+  const p = ridge.length;
+  const penalty = new Float64Array(p * p);
+  for (let i = 0; i < p; i++) penalty[i * p + i] = ridge[i];
   groups.forEach((group, g) => {
     const weight = strengths[g] * scales[g];
     const k = group.functionCount;
     for (const offset of group.offsets) {
       for (let i = 0; i < k; i++) {
-        for (let j = 0; j < k; j++) {
-          const value = group.roughness[i * k + j];
-          if (value !== 0)
-            penalty.set(offset + i, offset + j, penalty.get(offset + i, offset + j) + weight * value);
-        }
+        addMultiple(penalty, (offset + i) * p + offset, weight, group.roughness, i * k, k);
       }
     }
   });
@@ -239,39 +264,31 @@ function penaltyMatrix(
 }
 
 /** Mean diagonal information of a group's parameters: strengths are quoted relative to it. */
-function informationScale(information: Matrix, group: PenaltyGroup): number {
+function informationScale(information: Float64Array, p: number, group: PenaltyGroup): number {
   let sum = 0;
   for (const offset of group.offsets) {
-    for (let i = 0; i < group.functionCount; i++) sum += information.get(offset + i, offset + i);
+    for (let i = offset; i < offset + group.functionCount; i++) sum += information[i * p + i];
   }
   return sum / (group.offsets.length * group.functionCount);
 }
 
+/** Shape (B, p): bread times what each block leaves of its moments. */
 function blockInfluences(
   moments: MomentBlocks,
-  whiten: Matrix,
-  bread: Matrix,
+  whiten: Float64Array,
+  bread: Float64Array,
   parameters: Float64Array,
 ): Float64Array {
   const p = moments.size;
   const blocks = moments.matrices.length;
-  const residuals = Matrix.zeros(p, blocks);
+  const influences = new Float64Array(blocks * p);
   for (let block = 0; block < blocks; block++) {
-    const matrix = moments.matrices[block];
-    const vector = moments.vectors[block];
-    for (let i = 0; i < p; i++) {
-      let sum = vector[i];
-      const row = i * p;
-      for (let j = 0; j < p; j++) sum -= matrix[row + j] * parameters[j];
-      residuals.set(i, block, sum);
-    }
+    const fitted = timesVector(moments.matrices[block], parameters);
+    const residuals = moments.vectors[block].map((value, i) => value - fitted[i]);
+    solveLowerInPlace(whiten, p, residuals);
+    influences.set(timesVector(bread, residuals), block * p);
   }
-  const influence = bread.mmul(solveLower(whiten, residuals));
-  const out = new Float64Array(blocks * p);
-  for (let block = 0; block < blocks; block++) {
-    for (let i = 0; i < p; i++) out[block * p + i] = influence.get(i, block);
-  }
-  return out;
+  return influences;
 }
 
 /**
@@ -286,17 +303,22 @@ function smoothingFactorOf(
   groups: readonly PenaltyGroup[],
   strengths: readonly number[],
   scales: readonly number[],
-  inverse: Matrix,
-  information: Matrix,
-  smoother: Matrix,
+  inverse: Float64Array,
+  information: Float64Array,
+  smoother: Float64Array,
   influences: Float64Array,
   p: number,
 ): MomentSolution['smoothingFactor'] {
   if (groups.every((group) => group.fixedStrength !== undefined)) return null;
   const blocks = influences.length / p;
-  const rows = Matrix.from1DArray(blocks, p, influences);
-  const observed = rows.mmul(information).mul(rows).sum();
-  const modelled = smoother.mmul(smoother).trace();
+  const observed = innerProduct(
+    multiply(influences, information, blocks, p, p),
+    0,
+    influences,
+    0,
+    influences.length,
+  );
+  const modelled = innerProduct(smoother, 0, transpose(smoother, p, p), 0, p * p);
   const scale = Math.sqrt(observed / Math.max(modelled, Number.MIN_VALUE));
   const columns: Float64Array[] = [];
   groups.forEach((group, g) => {
@@ -310,7 +332,7 @@ function smoothingFactorOf(
         const column = new Float64Array(p);
         for (let i = 0; i < p; i++) {
           let sum = 0;
-          for (let j = 0; j < k; j++) sum += inverse.get(i, offset + j) * vectors.get(j, e);
+          for (let j = 0; j < k; j++) sum += inverse[i * p + offset + j] * vectors.get(j, e);
           column[i] = size * sum;
         }
         columns.push(column);
@@ -331,58 +353,36 @@ function symmetricEigen(flat: Float64Array, k: number): { values: number[]; vect
   return { values: decomposition.realEigenvalues, vectors: decomposition.eigenvectorMatrix };
 }
 
-function factorize(matrix: Matrix): CholeskyDecomposition {
-  const factor = new CholeskyDecomposition(matrix);
-  if (!factor.isPositiveDefinite()) {
-    throw new NumericalError(
-      'the regression is singular: the data do not tell its functions apart; use fewer functions (a smaller spline:N) or constant',
-    );
-  }
+/** Lower-triangular factor of a positive definite matrix, shape (p, p). */
+function factorize(matrix: Float64Array, p: number): Float64Array {
+  const factor = new Float64Array(p * p);
+  factorInto(matrix, p, factor);
   return factor;
 }
 
-/** Solves L X = R for lower-triangular L by forward substitution. */
-function solveLower(lower: Matrix, right: Matrix): Matrix {
-  const out = right.clone();
-  const n = lower.rows;
-  const columns = right.columns;
-  for (let i = 0; i < n; i++) {
-    for (let j = 0; j < i; j++) {
-      const weight = lower.get(i, j);
-      if (weight === 0) continue;
-      for (let c = 0; c < columns; c++) out.set(i, c, out.get(i, c) - weight * out.get(j, c));
-    }
-    const pivot = lower.get(i, i);
-    for (let c = 0; c < columns; c++) out.set(i, c, out.get(i, c) / pivot);
+function factorInto(matrix: Float64Array, p: number, factor: Float64Array): void {
+  if (factorCholeskyInto(matrix, p, factor)) return;
+  throw new NumericalError(
+    'the regression is singular: the data do not tell its functions apart; use fewer functions (a smaller spline:N) or constant',
+  );
+}
+
+/** X with X L = R for lower-triangular L, so that X acts on moments that are not yet whitened; all of shape (p, p). */
+function solveUpperRight(right: Float64Array, lower: Float64Array, p: number): Float64Array {
+  const turned = transpose(right, p, p);
+  solveUpperRows(lower, p, turned, p);
+  return transpose(turned, p, p);
+}
+
+function pivotRatio(lower: Float64Array, system: Float64Array, p: number): number {
+  let largest = 0;
+  let smallest = Infinity;
+  for (let i = 0; i < p; i++) {
+    const pivot = lower[i * p + i] ** 2 / system[i * p + i];
+    largest = Math.max(largest, pivot);
+    smallest = Math.min(smallest, pivot);
   }
-  return out;
-}
-
-/** Solves X L = R for lower-triangular L, so that X acts on moments that are not yet whitened. */
-function solveUpperRight(right: Matrix, lower: Matrix): Matrix {
-  const out = right.clone();
-  for (let j = lower.columns - 1; j >= 0; j--) {
-    const pivot = lower.get(j, j);
-    for (let i = 0; i < out.rows; i++) {
-      let value = out.get(i, j);
-      for (let l = j + 1; l < lower.rows; l++) value -= out.get(i, l) * lower.get(l, j);
-      out.set(i, j, value / pivot);
-    }
-  }
-  return out;
-}
-
-function crossProduct(matrix: Matrix): Matrix {
-  return matrix.transpose().mmul(matrix);
-}
-
-function trace(matrix: Matrix): number {
-  return matrix.trace();
-}
-
-function pivotRatio(factor: CholeskyDecomposition, system: Matrix): number {
-  const pivots = factor.lowerTriangularMatrix.diagonal().map((pivot, i) => pivot ** 2 / system.get(i, i));
-  return Math.max(...pivots) / Math.min(...pivots);
+  return largest / smallest;
 }
 
 function addInto(target: Float64Array, source: Float64Array): void {

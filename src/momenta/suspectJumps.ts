@@ -6,7 +6,7 @@
  * and the bulk's tail is extrapolated as an exponential, so that heavy but smooth tails are none either.
  */
 
-import { median } from '../numerics/statistics/quantile.js';
+import { median, medianInPlace, selectInPlace } from '../numerics/statistics/quantile.js';
 import { INTERVAL_TOLERANCE } from '../tracks/runs.js';
 import { countTracks, type TrackSet } from '../tracks/TrackSet.js';
 
@@ -39,15 +39,16 @@ function measureSteps(tracks: TrackSet, tolerance: number, order: 1 | 2): Float6
   const size = new Float64Array(n).fill(NaN);
   const usable = (row: number): boolean =>
     Math.abs(times[row + 1] - times[row] - samplingInterval) <= tolerance * samplingInterval;
-  const rows: number[] = [];
+  const rows = new Int32Array(n);
+  let count = 0;
   for (let track = 0; track < countTracks(tracks); track++) {
     for (let row = trackOffsets[track]; row < trackOffsets[track + 1] - order; row++) {
-      if (usable(row) && (order === 1 || usable(row + 1))) rows.push(row);
+      if (usable(row) && (order === 1 || usable(row + 1))) rows[count++] = row;
     }
   }
-  const values = new Float64Array(rows.length);
+  const values = new Float64Array(count);
   for (let axis = 0; axis < dimensions; axis++) {
-    for (let i = 0; i < rows.length; i++) {
+    for (let i = 0; i < count; i++) {
       const at = rows[i] * dimensions + axis;
       const step = positions[at + dimensions] - positions[at];
       values[i] = Math.abs(
@@ -56,24 +57,27 @@ function measureSteps(tracks: TrackSet, tolerance: number, order: 1 | 2): Float6
     }
     const usual = median(values);
     if (!(usual > 0)) continue;
-    for (let i = 0; i < rows.length; i++) {
+    for (let i = 0; i < count; i++) {
       const before = Number.isNaN(size[rows[i]]) ? 0 : size[rows[i]];
-      size[rows[i]] = Math.hypot(before, values[i] / usual);
+      const own = values[i] / usual;
+      size[rows[i]] = Math.sqrt(before * before + own * own);
     }
   }
   return size;
 }
 
 function findOutliers(size: Float64Array, tracks: TrackSet, order: 1 | 2): number[] {
-  const rows: number[] = [];
-  for (let row = 0; row < size.length; row++) if (!Number.isNaN(size[row])) rows.push(row);
-  if (rows.length < FEWEST_STEPS) return [];
-  const overall = median(Float64Array.from(rows, (row) => size[row]));
-  const ratios = new Float64Array(rows.length);
+  const all = new Int32Array(size.length);
+  let count = 0;
+  for (let row = 0; row < size.length; row++) if (!Number.isNaN(size[row])) all[count++] = row;
+  if (count < FEWEST_STEPS) return [];
+  const rows = all.subarray(0, count);
+  const overall = medianInPlace(Float64Array.from(rows, (row) => size[row]));
+  const ratios = new Float64Array(count);
   const { trackOffsets } = tracks;
   let track = 0;
   const neighbours = new Float64Array(2 * NEIGHBOURS);
-  for (let i = 0; i < rows.length; i++) {
+  for (let i = 0; i < count; i++) {
     const row = rows[i];
     while (row >= trackOffsets[track + 1]) track++;
     let found = 0;
@@ -82,16 +86,29 @@ function findOutliers(size: Float64Array, tracks: TrackSet, order: 1 | 2): numbe
       const other = row + shift;
       if (other < trackOffsets[track] || other >= trackOffsets[track + 1] || Number.isNaN(size[other]))
         continue;
-      if (found < neighbours.length) neighbours[found++] = size[other];
+      if (found < neighbours.length) found = insertSorted(neighbours, found, size[other]);
     }
-    const local = found >= NEIGHBOURS ? median(neighbours.subarray(0, found)) : overall;
+    const local = found >= NEIGHBOURS ? (neighbours[(found - 1) >> 1] + neighbours[found >> 1]) / 2 : overall;
     ratios[i] = size[row] / Math.max(local, LOCAL_FLOOR * overall);
   }
-  const sorted = ratios.slice().sort();
-  const tailStart = sorted[Math.floor((1 - TAIL_SHARE) * (sorted.length - 1))];
-  const tailMedian = sorted[Math.floor((1 - TAIL_SHARE / 2) * (sorted.length - 1))];
+  const ranked = ratios.slice();
+  const tailMedian = selectInPlace(ranked, Math.floor((1 - TAIL_SHARE / 2) * (count - 1)));
+  const tailStart = selectInPlace(ranked, Math.floor((1 - TAIL_SHARE) * (count - 1)));
   const scale = (tailMedian - tailStart) / Math.LN2; // of the exponential with that median excess
-  const reach = tailStart + scale * (Math.log(TAIL_SHARE * rows.length) + BEYOND);
+  const reach = tailStart + scale * (Math.log(TAIL_SHARE * count) + BEYOND);
   const limit = Math.max(SMALLEST_RATIO, reach);
-  return rows.filter((_, i) => ratios[i] > limit);
+  const suspects: number[] = [];
+  for (let i = 0; i < count; i++) if (ratios[i] > limit) suspects.push(rows[i]);
+  return suspects;
+}
+
+/** Puts a value among the first `count`, which ascend; returns the new count. */
+function insertSorted(values: Float64Array, count: number, value: number): number {
+  let place = count;
+  while (place > 0 && values[place - 1] > value) {
+    values[place] = values[place - 1];
+    place--;
+  }
+  values[place] = value;
+  return count + 1;
 }

@@ -2,6 +2,7 @@
  * The visited region: where the tracks have been often enough for anything to be said, as counts on a grid.
  */
 
+import { selectInPlace } from '../numerics/statistics/quantile.js';
 import { countPositions, type TrackSet } from './TrackSet.js';
 
 export interface VisitedRegion {
@@ -115,22 +116,22 @@ function findBox(
   dimensions: number,
   axis: number,
 ): { low: number; high: number } {
-  const sorted = new Float64Array(n);
-  for (let row = 0; row < n; row++) sorted[row] = positions[row * dimensions + axis];
-  sorted.sort();
   if (n === 0) return { low: 0, high: 1 };
-  const lower = sorted[Math.floor(0.25 * (n - 1))];
-  const upper = sorted[Math.ceil(0.75 * (n - 1))];
-  let first = 0;
-  let last = n - 1;
-  if (upper > lower) {
-    while (sorted[first] < lower - FENCE * (upper - lower)) first++;
-    while (sorted[last] > upper + FENCE * (upper - lower)) last--;
+  const values = new Float64Array(n);
+  for (let row = 0; row < n; row++) values[row] = positions[row * dimensions + axis];
+  const upper = selectInPlace(values, Math.ceil(0.75 * (n - 1)));
+  const lower = selectInPlace(values, Math.floor(0.25 * (n - 1)));
+  const fence = upper > lower ? FENCE * (upper - lower) : Infinity;
+  let low = Infinity;
+  let high = -Infinity;
+  for (let i = 0; i < n; i++) {
+    if (values[i] >= lower - fence && values[i] < low) low = values[i];
+    if (values[i] <= upper + fence && values[i] > high) high = values[i];
   }
-  const width = sorted[last] - sorted[first];
-  if (width > 0) return { low: sorted[first], high: sorted[last] + PADDING * width };
-  const margin = Math.abs(sorted[first]) > 0 ? 1e-6 * Math.abs(sorted[first]) : 0.5; // all at one place
-  return { low: sorted[first] - margin, high: sorted[first] + margin };
+  const width = high - low;
+  if (width > 0) return { low, high: high + PADDING * width };
+  const margin = Math.abs(low) > 0 ? 1e-6 * Math.abs(low) : 0.5; // all at one place
+  return { low: low - margin, high: low + margin };
 }
 
 /**

@@ -42,11 +42,14 @@ export function correctSecondOrderInto(
 ): void {
   const { force, friction, noise } = local;
   const d = force.length;
+  if (isDiagonal(friction, d)) {
+    correctDiagonalInto(local, slopes, errorVariance, dt);
+    return;
+  }
   const half = friction.map((value) => (value * dt) / 2);
   limitNorm(half, d);
-  const diagonal = isDiagonal(half, d);
-  const turned = diagonal ? half.map((value) => Math.atanh(value)) : Float64Array.from(artanhMatrix(half, d));
-  const gain = diagonal ? diagonalGain(half, turned, d) : matrixGain(half, turned, d);
+  const turned = Float64Array.from(artanhMatrix(half, d));
+  const gain = matrixGain(half, turned, d);
   for (let axis = 0; axis < d; axis++) {
     const own = axis * d + axis;
     const bare = half[own] === 0 ? 1 : Math.atanh(half[own]) / half[own];
@@ -71,6 +74,32 @@ export function correctSecondOrderInto(
   }
 }
 
+/** The same where no axis drags another: thousands of places are corrected for each replicate, so nothing is allocated. */
+function correctDiagonalInto(
+  { force, friction, noise }: LocalCoefficients,
+  slopes: ArrayLike<number>,
+  errorVariance: ArrayLike<number>,
+  dt: number,
+): void {
+  const d = force.length;
+  let half = NaN;
+  let turned = NaN;
+  for (let axis = 0; axis < d; axis++) {
+    const own = axis * d + axis;
+    const next = Math.max(-LARGEST_TANH, Math.min(LARGEST_TANH, (friction[own] * dt) / 2));
+    if (next !== half) turned = Math.atanh(next); // scalar friction: once for all axes
+    half = next;
+    const gain = turnedGain(turned, -slopes[axis] * dt * dt);
+    noise[own] -= slopes[axis] ** 2 * errorVariance[axis] * dt;
+    friction[own] = (2 / dt) * turned;
+    force[axis] *= gain;
+    for (let other = 0; other < d; other++) {
+      noise[axis * d + other] *= gain;
+      noise[other * d + axis] *= gain;
+    }
+  }
+}
+
 /**
  * k/K of the Brownian oscillator as a function of GΔ/2 and KΔ².
  *
@@ -78,7 +107,11 @@ export function correctSecondOrderInto(
  * @param stiffness  KΔ²; beyond the range a sampled oscillator can show it is limited
  */
 export function stiffnessGain(half: number, stiffness: number): number {
-  const turned = Math.atanh(half);
+  return turnedGain(Math.atanh(half), stiffness);
+}
+
+/** The same from ΓΔ/2 itself. */
+function turnedGain(turned: number, stiffness: number): number {
   if (Math.abs(stiffness) < WEAK) return weakGain(turned, stiffness);
   const usable = Math.min(stiffness, 2);
   const cosine = (1 - usable / 2) * Math.cosh(turned);
@@ -126,10 +159,6 @@ export function correctFirstOrderInto(
 }
 
 function limitNorm(half: Float64Array, d: number): void {
-  if (isDiagonal(half, d)) {
-    for (let i = 0; i < half.length; i++) half[i] = Math.max(-LARGEST_TANH, Math.min(LARGEST_TANH, half[i]));
-    return;
-  }
   let norm = 0;
   for (let i = 0; i < half.length; i++) norm += half[i] * half[i];
   norm = Math.sqrt(norm);
@@ -142,15 +171,6 @@ function isDiagonal(matrix: Float64Array, d: number): boolean {
   for (let i = 0; i < d; i++)
     for (let j = 0; j < d; j++) if (i !== j && matrix[i * d + j] !== 0) return false;
   return true;
-}
-
-function diagonalGain(half: Float64Array, turned: Float64Array, d: number): Float64Array {
-  const gain = new Float64Array(d * d);
-  for (let axis = 0; axis < d; axis++) {
-    const own = axis * d + axis;
-    gain[own] = half[own] === 0 ? 1 : turned[own] / half[own];
-  }
-  return gain;
 }
 
 function matrixGain(half: Float64Array, turned: Float64Array, d: number): Float64Array {

@@ -3,11 +3,16 @@
  * places the tracks visited, corrected there, and the change is projected back on each field's own basis.
  */
 
-import { CholeskyDecomposition, Matrix } from 'ml-matrix';
 import type { Basis } from '../../fields/Basis.js';
 import type { CoefficientField, Model } from '../../fields/CoefficientField.js';
 import { createBasis } from '../../fields/createBasis.js';
 import { modelFields } from '../../fields/modelParameters.js';
+import {
+  factorCholeskyInto,
+  solveLowerInPlace,
+  solveUpperInPlace,
+} from '../../numerics/linear/choleskyFactor.js';
+import { trace } from '../../numerics/linear/denseMatrix.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
 import { canonicalOrder } from '../blocks.js';
 import type { EstimationPlan } from '../Estimate.js';
@@ -28,10 +33,16 @@ interface NodeField {
   readonly rawOffset: number;
   readonly modelOffset: number;
   readonly components: number;
-  /** Shape (nodes, k). */
-  readonly design: Float64Array;
-  /** Shape (k, nodes). */
+  readonly design: NodeDesign;
+  /** Lower-triangular factor of the normal equations of the projection back on the basis, shape (k, k). */
   readonly projection: Float64Array;
+}
+
+/** The functions that are not zero at the nodes; as many entries per node as the basis has at most. */
+interface NodeDesign {
+  readonly support: number;
+  readonly indices: Int32Array;
+  readonly values: Float64Array;
 }
 
 /**
@@ -65,7 +76,7 @@ export function createIntervalCorrection(
   const [force, ...others] = prepared;
   const noise = others[others.length - 1];
   const friction = others.length === 2 ? others[0] : null;
-  const slopesDesign = Array.from({ length: d }, (_, axis) => designMatrix(force.basis, nodes, d, axis));
+  const slopesDesign = Array.from({ length: d }, (_, axis) => designAt(force.basis, nodes, d, axis));
   const noiseForm = fields[fields.length - 1].form;
   const frictionForm = friction ? fields[1].form : 'scalar';
 
@@ -139,62 +150,61 @@ function prepareField(
   modelOffset: number,
 ): NodeField {
   const basis = createBasis(field.basis, d);
-  const design = designMatrix(basis, nodes, d, null);
-  const nodeCount = nodes.length / d;
+  const design = designAt(basis, nodes, d, null);
   const k = basis.functionCount;
-  const matrix = Matrix.from1DArray(nodeCount, k, design);
-  const normal = matrix.transpose().mmul(matrix);
-  const scale = normal.trace() / k;
-  const roughness = basis.roughness();
-  // A trace of smoothing carries the change on to functions that no node reaches.
-  for (let i = 0; i < k; i++) {
-    for (let j = 0; j < k; j++) {
-      const smooth = roughness ? 1e-4 * scale * roughness[i * k + j] : 0;
-      normal.set(i, j, normal.get(i, j) + smooth + (i === j ? 1e-9 * scale : 0));
+  const normal = new Float64Array(k * k);
+  for (let start = 0; start < design.indices.length; start += design.support) {
+    for (let i = start; i < start + design.support; i++) {
+      for (let j = start; j < start + design.support; j++) {
+        normal[design.indices[i] * k + design.indices[j]] += design.values[i] * design.values[j];
+      }
     }
   }
-  const projection = new CholeskyDecomposition(normal).solve(matrix.transpose());
+  const scale = trace(normal, k) / k;
+  const roughness = basis.roughness();
+  // A trace of smoothing carries the change on to functions that no node reaches.
+  for (let i = 0; roughness && i < normal.length; i++) normal[i] += 1e-4 * scale * roughness[i];
+  for (let i = 0; i < k; i++) normal[i * k + i] += 1e-9 * scale;
+  const projection = new Float64Array(k * k);
+  factorCholeskyInto(normal, k, projection);
   return {
     basis,
     rawOffset,
     modelOffset,
     components: field.coefficients.length,
     design,
-    projection: Float64Array.from(projection.to1DArray()),
+    projection,
   };
 }
 
-/** Basis values (axis null) or their derivatives along an axis at the nodes, shape (nodes, k). */
-function designMatrix(basis: Basis, nodes: Float64Array, d: number, axis: number | null): Float64Array {
+/** Basis values (axis null) or their derivatives along an axis at the nodes. */
+function designAt(basis: Basis, nodes: Float64Array, d: number, axis: number | null): NodeDesign {
   const nodeCount = nodes.length / d;
-  const k = basis.functionCount;
-  const design = new Float64Array(nodeCount * k);
-  const indices = new Int32Array(basis.support);
-  const values = new Float64Array(basis.support);
+  const { support } = basis;
+  const indices = new Int32Array(nodeCount * support);
+  const values = new Float64Array(nodeCount * support);
   for (let node = 0; node < nodeCount; node++) {
-    const count =
-      axis === null
-        ? basis.evaluateInto(nodes, node * d, indices, values)
-        : basis.differentiateInto(nodes, node * d, axis, indices, values);
-    for (let i = 0; i < count; i++) design[node * k + indices[i]] += values[i];
+    const rowIndices = indices.subarray(node * support, (node + 1) * support);
+    const rowValues = values.subarray(node * support, (node + 1) * support);
+    if (axis === null) basis.evaluateInto(nodes, node * d, rowIndices, rowValues);
+    else basis.differentiateInto(nodes, node * d, axis, rowIndices, rowValues);
   }
-  return design;
+  return { support, indices, values };
 }
 
 function componentAt(
   field: NodeField,
   raw: Float64Array,
-  design: Float64Array,
+  { support, indices, values }: NodeDesign,
   nodeCount: number,
   component: number,
 ): Float64Array {
   const out = new Float64Array(nodeCount);
   if (field.rawOffset < 0) return out;
-  const k = field.basis.functionCount;
-  const offset = field.rawOffset + component * k;
+  const offset = field.rawOffset + component * field.basis.functionCount;
   for (let node = 0; node < nodeCount; node++) {
     let sum = 0;
-    for (let i = 0; i < k; i++) sum += design[node * k + i] * raw[offset + i];
+    for (let i = node * support; i < (node + 1) * support; i++) sum += values[i] * raw[offset + indices[i]];
     out[node] = sum;
   }
   return out;
@@ -203,7 +213,7 @@ function componentAt(
 function valuesAt(
   field: NodeField,
   raw: Float64Array,
-  design: Float64Array,
+  design: NodeDesign,
   nodeCount: number,
 ): Float64Array[] {
   return Array.from({ length: field.components }, (_, component) =>
@@ -269,14 +279,16 @@ function addProjected(
 ): void {
   if (field.rawOffset < 0) return;
   const k = field.basis.functionCount;
+  const { support, indices, values } = field.design;
   for (let component = 0; component < field.components; component++) {
-    const offset = field.modelOffset + component * k;
-    for (let i = 0; i < k; i++) {
-      let sum = 0;
-      const row = i * nodeCount;
-      for (let node = 0; node < nodeCount; node++)
-        sum += field.projection[row + node] * changes[component][node];
-      out[offset + i] += sum;
+    const projected = new Float64Array(k);
+    for (let node = 0; node < nodeCount; node++) {
+      const change = changes[component][node];
+      for (let i = node * support; i < (node + 1) * support; i++) projected[indices[i]] += values[i] * change;
     }
+    solveLowerInPlace(field.projection, k, projected);
+    solveUpperInPlace(field.projection, k, projected);
+    const offset = field.modelOffset + component * k;
+    for (let i = 0; i < k; i++) out[offset + i] += projected[i];
   }
 }

@@ -1,5 +1,7 @@
 /** Cholesky factors of small symmetric matrices in flat arrays, for loops that factor thousands of them. */
 
+import { innerProduct } from './denseMatrix.js';
+
 /**
  * Writes the lower-triangular L with L Lᵀ = matrix.
  *
@@ -16,8 +18,7 @@ export function factorCholeskyInto(
 ): boolean {
   for (let i = 0; i < n; i++) {
     for (let j = 0; j <= i; j++) {
-      let sum = matrix[i * stride + j];
-      for (let l = 0; l < j; l++) sum -= lower[i * n + l] * lower[j * n + l];
+      const sum = matrix[i * stride + j] - innerProduct(lower, i * n, lower, j * n, j);
       if (i !== j) {
         lower[i * n + j] = sum / lower[j * n + j];
       } else {
