@@ -2,6 +2,7 @@
 
 import { DataError } from '../errors.js';
 import { readTable } from '../import/table.js';
+import { suggestName } from '../numerics/text/suggestName.js';
 import { quoteCell, tableError } from '../import/tableError.js';
 
 /**
@@ -29,8 +30,12 @@ export async function readPoints(
         columns = coordinates.map((coordinate) => {
           const matches = names.flatMap((name, i) => (name.toLowerCase() === coordinate ? [i] : []));
           if (matches.length === 1) return matches[0];
+          const close = suggestName(coordinate, names);
+          const hint = close === null ? '' : ` (did you mean ${quoteCell(close)}?)`;
           const found =
-            matches.length === 0 ? `there is no column ${coordinate}` : `column ${coordinate} appears twice`;
+            matches.length === 0
+              ? `there is no column ${coordinate}${hint}`
+              : `column ${coordinate} appears twice`;
           throw tableError(
             { file, line },
             `${found}; the fit needs the columns ${coordinates.join(', ')} (found: ${names.map(quoteCell).join(', ')})`,

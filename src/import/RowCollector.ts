@@ -1,7 +1,7 @@
 /** Rows of cells from any number of files to flat columns of numbers, each cell checked on the way. */
 
 import type { Dialect } from './dialect.js';
-import { findColumns, type TableColumns } from './columns.js';
+import { findColumns, type TableColumns, type NearMiss } from './columns.js';
 import { growFloats, growIntegers } from './GrowableArray.js';
 import { classifyCell, parsePlainNumber } from './parseNumber.js';
 import type { TableConsumer } from './table.js';
@@ -30,6 +30,8 @@ export interface CollectedRows {
   readonly lines: Int32Array;
   readonly hasErrors: boolean;
   readonly hasConcentrations: boolean;
+  /** A column that may have been meant to tell tracks apart. */
+  readonly trackColumn: NearMiss | null;
   /** Per row: time or frame, d coordinates, d errors if there are any, concentration if there is one, as in the table. */
   readonly numbers: Float64Array;
 }
@@ -44,6 +46,8 @@ export class RowCollector implements TableConsumer {
   readonly untrackedFiles: string[] = [];
   /** Coordinate columns the mapping left out, of all files. */
   readonly leftOutColumns = new Set<string>();
+  /** Columns that may have been meant for a role, of all files, by role. */
+  readonly nearMisses = new Map<string, NearMiss>();
 
   readonly #mapping: Readonly<Record<string, string>>;
   readonly #skipInvalid: boolean;
@@ -90,6 +94,7 @@ export class RowCollector implements TableConsumer {
     this.#numberPlaces = [columns.time, ...columns.coordinates, ...(columns.errors ?? []), ...concentration];
     if (columns.track === -1) this.untrackedFiles.push(this.#file);
     for (const name of columns.leftOut) this.leftOutColumns.add(name);
+    for (const miss of columns.nearMisses) this.nearMisses.set(miss.role, miss);
   }
 
   readRow(cells: readonly string[], line: number): void {
@@ -150,6 +155,7 @@ export class RowCollector implements TableConsumer {
       lines: this.#lines.view(),
       hasErrors: (columns?.errors ?? null) !== null,
       hasConcentrations: (columns?.concentration ?? -1) !== -1,
+      trackColumn: this.nearMisses.get('track') ?? null,
       numbers: this.#numbers.view(),
     };
   }

@@ -1,5 +1,6 @@
 /** Collected rows to the track store: grouped, sorted, duplicates dropped, scaled, unwrapped. */
 
+import { writeMapping } from './columns.js';
 import { DataError } from '../errors.js';
 import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
 import type { Units } from '../units.js';
@@ -178,7 +179,7 @@ function conflictError(rows: CollectedRows, first: number, second: number): Data
   const sentence =
     name === file
       ? `the file has no track column and two different positions at ${place}; keep one, or name the column that tells ` +
-        'tracks apart with --columns track=NAME'
+        `tracks apart with --columns ${writeMapping(rows.trackColumn ?? { role: 'track', column: 'NAME' })}`
       : `track ${quoteCell(name)} has two different positions at ${place}; keep one`;
   return tableError({ file }, sentence, { track: name, time, lines });
 }

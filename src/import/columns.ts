@@ -39,6 +39,8 @@ export interface TableColumns {
   readonly concentration: number;
   /** Coordinate columns left out because `--columns` names others. */
   readonly leftOut: readonly string[];
+  /** Columns without a role whose names are close to those of roles that no column has: slips, perhaps. */
+  readonly nearMisses: readonly NearMiss[];
 }
 
 /**
@@ -145,8 +147,37 @@ export function findColumns(
     coordinates,
     errors: missing === -1 ? errors : null,
     concentration,
+    nearMisses: findNearMisses(names, used, [
+      ...(track === -1 ? ['track'] : []),
+      ...(type === -1 ? ['type'] : []),
+      ...(missing === -1 ? [] : axes.map((axis) => `error_${axis}`)),
+    ]),
     leftOut: found.filter((axis) => !axes.includes(axis) && !coordinates.includes(place(axis))),
   };
+}
+
+export interface NearMiss {
+  readonly role: string;
+  readonly column: string;
+}
+
+function findNearMisses(
+  names: readonly string[],
+  used: readonly number[],
+  openRoles: readonly string[],
+): NearMiss[] {
+  const idle = names.filter((name, place) => name !== '' && !used.includes(place));
+  const misses = new Map<string, NearMiss>(); // a column is offered for one role
+  for (const role of openRoles) {
+    const column = suggestName(role, idle) ?? idle.find((name) => holdsWord(name, role));
+    if (column !== undefined && !misses.has(column)) misses.set(column, { role, column });
+  }
+  return [...misses.values()];
+}
+
+/** As it is typed after `--columns`. */
+export function writeMapping({ role, column }: NearMiss): string {
+  return `${role}=${/[\s,]/.test(column) ? `"${column}"` : column}`;
 }
 
 function findColumn(
@@ -197,11 +228,10 @@ function missingError(
 ): Error {
   const although = present.length === 0 ? '' : ` although there is ${present.join(' and ')}`;
   const suggestion = suggestName(role, names) ?? names.find((name) => holdsWord(name, role));
-  const example =
-    suggestion === undefined ? 'NAME' : /[\s,]/.test(suggestion) ? `"${suggestion}"` : suggestion;
+  const example = writeMapping({ role, column: suggestion ?? 'NAME' });
   return tableError(
     { file, line },
-    `there is no column ${wanted}${although}; rename one or say --columns ${role}=${example} (${listNames(names)})`,
+    `there is no column ${wanted}${although}; rename one or say --columns ${example} (${listNames(names)})`,
     { role, columns: names },
   );
 }

@@ -10,7 +10,7 @@ import { DataError, UsageError, type Warning } from '../errors.js';
 import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
 import { NO_UNITS, type Units } from '../units.js';
 import { buildTracks } from './buildTracks.js';
-import { checkColumnMapping } from './columns.js';
+import { checkColumnMapping, writeMapping } from './columns.js';
 import type { TrackSource } from './decodeText.js';
 import { RowCollector } from './RowCollector.js';
 import { readTable } from './table.js';
@@ -161,6 +161,13 @@ function describeReading(
     warn(
       'coordinates-left-out',
       `the columns mapped by --columns are all the coordinates; not used: ${left}`,
+    );
+  }
+  for (const miss of collector.nearMisses.values()) {
+    const { role, column } = miss;
+    warn(
+      'column-not-used',
+      `column ${quoteCell(column)} is not used; if it is what ${role} means, say --columns ${writeMapping(miss)}`,
     );
   }
   if (duplicatesDropped > 0) {
