@@ -153,7 +153,12 @@ class RowSums {
     this.#frictionValues = new Float64Array(layout.frictionComponents + 1);
     this.#frictionResponses = new Float64Array((friction?.functionCount ?? 0) * this.#frictionValues.length);
     const pairCount = this.#pairs.length;
-    const family = (left: Family['left'], right: Family['right'], count: number): Family | null => {
+    const family = (
+      left: Family['left'],
+      right: Family['right'],
+      count: number,
+      gramCount = count,
+    ): Family | null => {
       const [rows, columns] = [layout[left], layout[right]];
       if (rows === null || columns === null) return null;
       const symmetric = this.#shared || left === right;
@@ -161,18 +166,18 @@ class RowSums {
         left,
         right,
         sums: new PairSums(rows.functionCount, columns.functionCount, count),
-        gram: new PairSums(rows.functionCount, columns.functionCount, count, symmetric),
+        gram: new PairSums(rows.functionCount, columns.functionCount, gramCount, symmetric),
         weights: new Float64Array(count),
-        gramWeights: new Float64Array(count),
+        gramWeights: new Float64Array(gramCount),
       };
     };
     const families = this.#shared
-      ? [family('force', 'force', 1 + 2 * d + pairCount)]
+      ? [family('force', 'force', 1 + 2 * d + pairCount, 1 + d + pairCount)]
       : [
           family('force', 'force', 1),
           family('force', 'friction', d),
           family('friction', 'force', d),
-          family('friction', 'friction', pairCount + 1),
+          family('friction', 'friction', pairCount + 1, pairCount),
         ];
     this.#families = families.filter((found) => found !== null);
   }
@@ -212,19 +217,23 @@ class RowSums {
     }
   }
 
-  /** Weights of this row: 1; −velocities; −instruments; products of instruments and velocities; 1. */
+  /**
+   * Weights of this row: 1; −velocities; −instruments; products of instruments and velocities; 1. Those of the Gram
+   * matrix have the instruments for velocities and do without their mirror image.
+   */
   #fillWeights(velocity: Float64Array, earlier: Float64Array): void {
     const { dimensions: d } = this.#layout;
     for (const { left, right, weights, gramWeights } of this.#families) {
       let at = 0;
+      let gramAt = 0;
       if (left === 'force' && right === 'force') {
-        weights[at] = 1;
-        gramWeights[at++] = 1;
+        weights[at++] = 1;
+        gramWeights[gramAt++] = 1;
       }
       if (this.#shared || (left === 'force' && right === 'friction')) {
         for (let axis = 0; axis < d; axis++) {
-          weights[at] = -velocity[axis];
-          gramWeights[at++] = -earlier[axis];
+          weights[at++] = -velocity[axis];
+          gramWeights[gramAt++] = -earlier[axis];
         }
       }
       if (this.#shared || (left === 'friction' && right === 'force')) {
@@ -238,13 +247,10 @@ class RowSums {
           product += earlier[a] * velocity[b];
           square += earlier[a] * earlier[b];
         }
-        weights[at] = product;
-        gramWeights[at++] = square;
+        weights[at++] = product;
+        gramWeights[gramAt++] = square;
       }
-      if (!this.#shared) {
-        weights[at] = 1;
-        gramWeights[at] = 0;
-      }
+      if (!this.#shared) weights[at] = 1;
     }
   }
 
@@ -304,7 +310,7 @@ class RowSums {
       if (kind === 'gram') continue;
       this.#familyOf('friction', 'force')?.sums.addTo(matrix, p, column, axis * kF, start + cross + other);
     }
-    const first = this.#shared ? 1 + 2 * d : 0;
+    const first = this.#shared ? 1 + d + (kind === 'sums' ? d : 0) : 0;
     this.#pairs.forEach(({ rowComponent, columnComponent }, pair) => {
       const row = frictionOffset + rowComponent * k;
       const column = frictionOffset + columnComponent * k;

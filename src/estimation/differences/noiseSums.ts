@@ -13,32 +13,34 @@ export interface NoiseMoments extends MomentBlocks {
   readonly sensitivity: Float64Array;
 }
 
-/** Part of the sensitivity that stands on the functions of one coefficient of the first regression. */
-interface SensitivityPart {
+/** Sums of the functions of the noise with those of one basis (often the same), for all that asks for them. */
+interface Family {
+  readonly basis: Basis;
   readonly row: BasisRow;
   readonly sums: PairSums;
-  /** Noise component × component of the coefficient. */
   readonly weights: Float64Array;
-  readonly offset: number;
-  readonly components: number;
-  readonly functionCount: number;
+}
+
+/** Some of the weights of a family. */
+interface Part {
+  readonly family: Family;
+  readonly first: number;
+  readonly weights: Float64Array;
 }
 
 /** Takes rows block after block. */
 export class NoiseSums {
-  readonly #tracks: TrackSet;
-  readonly #layout: SecondOrderLayout;
-  readonly #components: number;
+  readonly #families: readonly Family[];
   readonly #row: BasisRow;
-  readonly #squares: PairSums;
-  readonly #force: SensitivityPart | null;
-  readonly #friction: SensitivityPart | null;
+  readonly #squares: Part;
+  readonly #force: Part | null;
+  readonly #friction: Part | null;
   readonly #matrices: Float64Array[];
   readonly #vectors: Float64Array[];
+  readonly #sensitivity: Float64Array;
   /** Shape (k, c). */
   readonly #responses: Float64Array;
   readonly #velocity: Float64Array;
-  readonly #one = Float64Array.of(1);
   #block = -1;
 
   /**
@@ -47,71 +49,55 @@ export class NoiseSums {
    * @param blocks  how many blocks there are
    */
   constructor(
-    tracks: TrackSet,
-    layout: SecondOrderLayout,
+    private readonly tracks: TrackSet,
+    private readonly layout: SecondOrderLayout,
     private readonly basis: Basis,
-    components: number,
+    private readonly components: number,
     blocks: number,
   ) {
-    const k = basis.functionCount;
-    const p = components * k;
-    this.#tracks = tracks;
-    this.#layout = layout;
-    this.#components = components;
-    this.#row = new BasisRow(basis);
-    this.#squares = new PairSums(k, k, 1, true);
-    this.#force = this.#createPart(layout.force, 0, layout.dimensions);
-    this.#friction = this.#createPart(layout.friction, layout.frictionOffset, layout.frictionComponents);
+    const p = components * basis.functionCount;
+    const { force, friction, dimensions: d, frictionComponents } = layout;
+    [[this.#squares, this.#force, this.#friction], this.#families] = planFamilies(basis, [
+      [basis, 1],
+      [force, components * d],
+      [friction, components * frictionComponents],
+    ]) as [[Part, Part | null, Part | null], Family[]];
+    this.#row = this.#squares.family.row;
+    this.#squares.weights[0] = 1;
     this.#matrices = Array.from({ length: blocks }, () => new Float64Array(p * p));
     this.#vectors = Array.from({ length: blocks }, () => new Float64Array(p));
+    this.#sensitivity = new Float64Array(p * layout.size);
     this.#responses = new Float64Array(p);
-    this.#velocity = new Float64Array(tracks.dimensions);
-  }
-
-  #createPart(basis: Basis | null, offset: number, components: number): SensitivityPart | null {
-    if (basis === null) return null;
-    const same = sameBasis(basis, this.basis);
-    const weights = new Float64Array(this.#components * components);
-    return {
-      row: same ? this.#row : new BasisRow(basis),
-      sums: new PairSums(this.basis.functionCount, basis.functionCount, weights.length, same),
-      weights,
-      offset,
-      components,
-      functionCount: basis.functionCount,
-    };
+    this.#velocity = new Float64Array(d);
   }
 
   /** Adds one row, whose responses and slopes are in `products`. */
   add(positions: Float64Array, row: number, block: number, products: ResidualProducts): void {
     if (block !== this.#block) this.#closeBlock(block);
-    this.#row.evaluate(positions, row);
-    this.#squares.add(this.#row, this.#row, this.#one);
-    addValues(this.#responses, this.#row, products.responses);
-    fillVelocity(this.#velocity, positions, row, this.#tracks.dimensions, this.#tracks.samplingInterval);
+    fillVelocity(this.#velocity, positions, row, this.tracks.dimensions, this.tracks.samplingInterval);
     this.#fillWeights(products.slopes);
-    for (const part of [this.#force, this.#friction]) {
-      if (part === null) continue;
-      if (part.row !== this.#row) part.row.evaluate(positions, row);
-      part.sums.add(this.#row, part.row, part.weights);
+    this.#row.evaluate(positions, row);
+    for (const family of this.#families) {
+      if (family.row !== this.#row) family.row.evaluate(positions, row);
+      family.sums.add(this.#row, family.row, family.weights);
     }
+    addValues(this.#responses, this.#row, products.responses);
   }
 
   /** A fitted force along an axis moves the residuals there by −1, friction by the velocity it acts on. */
   #fillWeights(slopes: Float64Array): void {
-    const { dimensions: d, frictionForm } = this.#layout;
+    const { dimensions: d, frictionForm, frictionComponents } = this.layout;
     const velocity = this.#velocity;
     if (this.#force) {
       const { weights } = this.#force;
       for (let i = 0; i < weights.length; i++) weights[i] = -slopes[i];
     }
     if (!this.#friction) return;
-    const { weights, components } = this.#friction;
-    weights.fill(0);
-    for (let noise = 0; noise < this.#components; noise++) {
+    const weights = this.#friction.weights.fill(0);
+    for (let noise = 0; noise < this.components; noise++) {
+      const at = noise * frictionComponents;
       for (let axis = 0; axis < d; axis++) {
         const slope = slopes[noise * d + axis];
-        const at = noise * components;
         if (frictionForm === 'matrix') {
           for (let other = 0; other < d; other++) weights[at + axis * d + other] += slope * velocity[other];
         } else {
@@ -125,38 +111,69 @@ export class NoiseSums {
     const block = this.#block;
     this.#block = next;
     if (block < 0) return;
+    const { components, layout } = this;
     const k = this.basis.functionCount;
-    const p = this.#components * k;
-    for (let component = 0; component < this.#components; component++) {
-      this.#squares.addTo(this.#matrices[block], p, component * k, component * k, 0);
+    const p = components * k;
+    for (let noise = 0; noise < components; noise++) {
+      const { family, first } = this.#squares;
+      family.sums.addTo(this.#matrices[block], p, noise * k, noise * k, first);
       for (let i = 0; i < k; i++) {
-        this.#vectors[block][component * k + i] += this.#responses[i * this.#components + component];
+        this.#vectors[block][noise * k + i] += this.#responses[i * components + noise];
       }
+      this.#dealSensitivity(this.#force, 0, layout.dimensions, noise);
+      this.#dealSensitivity(this.#friction, layout.frictionOffset, layout.frictionComponents, noise);
     }
-    this.#squares.clear();
+    for (const { sums } of this.#families) sums.clear();
     this.#responses.fill(0);
+  }
+
+  #dealSensitivity(part: Part | null, offset: number, count: number, noise: number): void {
+    if (part === null) return;
+    const { family, first } = part;
+    for (let component = 0; component < count; component++) {
+      const column = offset + component * family.basis.functionCount;
+      const row = noise * this.basis.functionCount;
+      family.sums.addTo(this.#sensitivity, this.layout.size, row, column, first + noise * count + component);
+    }
   }
 
   /** All that was added. */
   moments(): NoiseMoments {
     this.#closeBlock(-1);
-    const k = this.basis.functionCount;
-    const size = this.#components * k;
+    const size = this.components * this.basis.functionCount;
     const instrumentGram = new Float64Array(size * size);
     for (const matrix of this.#matrices) {
       for (let i = 0; i < matrix.length; i++) instrumentGram[i] += matrix[i];
     }
-    const columns = this.#layout.size;
-    const sensitivity = new Float64Array(size * columns);
-    for (const part of [this.#force, this.#friction]) {
-      if (part === null) continue;
-      for (let noise = 0; noise < this.#components; noise++) {
-        for (let component = 0; component < part.components; component++) {
-          const column = part.offset + component * part.functionCount;
-          part.sums.addTo(sensitivity, columns, noise * k, column, noise * part.components + component);
-        }
-      }
-    }
-    return { size, matrices: this.#matrices, vectors: this.#vectors, instrumentGram, sensitivity };
+    const [matrices, vectors, sensitivity] = [this.#matrices, this.#vectors, this.#sensitivity];
+    return { size, matrices, vectors, instrumentGram, sensitivity };
   }
+}
+
+/** Puts what stands on the same functions into one family, so that they are looked up once a row. */
+function planFamilies(
+  left: Basis,
+  wanted: readonly (readonly [Basis | null, number])[],
+): [(Part | null)[], Family[]] {
+  const groups: { basis: Basis; count: number; members: [index: number, first: number][] }[] = [];
+  wanted.forEach(([basis, count], index) => {
+    if (basis === null) return;
+    const found = groups.find((group) => sameBasis(group.basis, basis));
+    const group = found ?? { basis, count: 0, members: [] };
+    if (found === undefined) groups.push(group);
+    group.members.push([index, group.count]);
+    group.count += count;
+  });
+  const parts: (Part | null)[] = wanted.map(() => null);
+  const families = groups.map(({ basis, count, members }) => {
+    const symmetric = sameBasis(basis, left);
+    const sums = new PairSums(left.functionCount, basis.functionCount, count, symmetric);
+    const family = { basis, row: new BasisRow(basis), sums, weights: new Float64Array(count) };
+    for (const [index, first] of members) {
+      const weights = family.weights.subarray(first, first + wanted[index][1]);
+      parts[index] = { family, first, weights };
+    }
+    return family;
+  });
+  return [parts, families];
 }

@@ -11,6 +11,7 @@ import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { EstimationPlan } from '../Estimate.js';
 import { fillVelocity, RowBuilder, secondDifference, type SecondOrderLayout } from './forceFriction.js';
 import { type NoiseMoments, NoiseSums } from './noiseSums.js';
+import { addValues, BasisRow, sameBasis } from './pairSums.js';
 import { noisePairs, ResidualProducts } from './residualProducts.js';
 import type { SparseRow } from './sparseRows.js';
 
@@ -167,15 +168,44 @@ function collectErrorSensitivity(
   layout: SecondOrderLayout,
   parameters: Float64Array,
 ): Float64Array {
-  const { dimensions: d } = tracks;
-  const sensitivity = new Float64Array(d * layout.size);
-  visitErrorRows(tracks, layout, parameters, (row, _products, _halves, _ratios, _slopes, pulls, rowOf) => {
-    for (let axis = 0; axis < d; axis++) {
-      const { indices, values, length } = rowOf(row, axis, axis === 0);
-      const base = axis * layout.size;
-      for (let i = 0; i < length; i++) sensitivity[base + indices[i]] += pulls[axis] * values[i];
+  const { dimensions: d, positions, samplingInterval: dt } = tracks;
+  const { force, friction, frictionForm, frictionComponents: components, frictionOffset, size } = layout;
+  const forceRow = force && new BasisRow(force);
+  const shared = force && friction && sameBasis(force, friction);
+  const frictionRow = shared ? forceRow : friction && new BasisRow(friction);
+  const forceSums = new Float64Array((force?.functionCount ?? 0) * d);
+  const drags = new Float64Array(d * components); // axis × component
+  const frictionSums = new Float64Array((friction?.functionCount ?? 0) * drags.length);
+  const velocity = new Float64Array(d);
+  visitErrorRows(tracks, layout, parameters, (row, _products, _halves, _ratios, _slopes, pulls) => {
+    if (forceRow) {
+      forceRow.evaluate(positions, row);
+      addValues(forceSums, forceRow, pulls);
     }
+    if (!frictionRow) return;
+    if (!shared) frictionRow.evaluate(positions, row);
+    fillVelocity(velocity, positions, row, d, dt);
+    for (let axis = 0; axis < d; axis++) {
+      const at = axis * components;
+      if (frictionForm === 'matrix') {
+        for (let other = 0; other < d; other++) drags[at + axis * d + other] = -pulls[axis] * velocity[other];
+      } else {
+        drags[at + (frictionForm === 'axes' ? axis : 0)] = -pulls[axis] * velocity[axis];
+      }
+    }
+    addValues(frictionSums, frictionRow, drags);
   });
+  const sensitivity = new Float64Array(d * size);
+  const kF = force?.functionCount ?? 0;
+  const k = friction?.functionCount ?? 0;
+  for (let axis = 0; axis < d; axis++) {
+    for (let i = 0; i < kF; i++) sensitivity[axis * size + axis * kF + i] = forceSums[i * d + axis];
+    for (let i = 0; i < k * components; i++) {
+      const component = Math.floor(i / k);
+      sensitivity[axis * size + frictionOffset + i] =
+        frictionSums[(i - component * k) * drags.length + axis * components + component];
+    }
+  }
   return sensitivity;
 }
 
@@ -186,7 +216,6 @@ function collectErrorSensitivity(
  * @param halves  GΔ/2;  @param ratios  a₀/a₁;  @param slopes  ∂F_e/∂q
  * @param pulls  derivative of the product with respect to a fitted value. Shifting e_{k±1} back on its own row changes
  *   the basis values little: one product stands for both
- * @param rowOf  regressors of an axis at the row; the third argument evaluates the functions there first
  */
 type ErrorVisitor = (
   row: number,
@@ -195,7 +224,6 @@ type ErrorVisitor = (
   ratios: Float64Array,
   slopes: Float64Array,
   pulls: Float64Array,
-  rowOf: (row: number, axis: number, fresh: boolean) => SparseRow,
 ) => void;
 
 function visitErrorRows(
@@ -215,7 +243,6 @@ function visitErrorRows(
     { length: 6 },
     () => new Float64Array(d),
   );
-  const rowOf = (row: number, axis: number, fresh: boolean): SparseRow => run.rowOf(row, axis, fresh);
   for (let r = 0; r < runs.starts.length; r++) {
     const start = runs.starts[r];
     const end = runs.ends[r];
@@ -235,7 +262,7 @@ function visitErrorRows(
         place[axis] = positions[row * d + axis];
       }
       readSlopes?.(place, slopes, 0);
-      visit(row, products, halves, ratios, slopes, pulls, rowOf);
+      visit(row, products, halves, ratios, slopes, pulls);
     }
   }
 }
