@@ -71,15 +71,14 @@ export function estimateDisplacementCovariances(
   const width = wanted + 1;
   const pairs = new Float64Array(blocks * width);
   const sums = Array.from({ length: dimensions }, () => new Float64Array(blocks * width));
-  const displacement = new Float64Array(dimensions);
+  const moves = new Float64Array(n * dimensions); // mean-free displacement that starts at each row
+  for (let i = 0; i + dimensions < moves.length; i++) {
+    moves[i] = positions[i + dimensions] - positions[i] - mean[i % dimensions];
+  }
   for (let track = 0; track < m; track++) {
     const end = trackOffsets[track + 1] - 1;
     for (let row = trackOffsets[track]; row < end; row++) {
       if (frame[row] < 0) continue;
-      for (let axis = 0; axis < dimensions; axis++) {
-        displacement[axis] =
-          positions[(row + 1) * dimensions + axis] - positions[row * dimensions + axis] - mean[axis];
-      }
       const base = blockOfRow[row] * width;
       for (let other = row; other < end; other++) {
         if (frame[other] < 0) continue;
@@ -87,9 +86,7 @@ export function estimateDisplacementCovariances(
         if (lag > wanted) break;
         pairs[base + lag]++;
         for (let axis = 0; axis < dimensions; axis++) {
-          const partner =
-            positions[(other + 1) * dimensions + axis] - positions[other * dimensions + axis] - mean[axis];
-          sums[axis][base + lag] += displacement[axis] * partner;
+          sums[axis][base + lag] += moves[row * dimensions + axis] * moves[other * dimensions + axis];
         }
       }
     }
