@@ -10,6 +10,9 @@ import { quoteCell, tableError } from './tableError.js';
 const POINT = 46; // character code of the decimal point
 const COMMA = 44;
 
+/** What stands in a row under a column: text, or a number where the file holds numbers as such. */
+export type Cell = string | number;
+
 /** A track as first met: tracks of different files are different tracks. */
 export interface CollectedTrack {
   readonly name: string;
@@ -97,7 +100,8 @@ export class RowCollector implements TableConsumer {
     for (const miss of columns.nearMisses) this.nearMisses.set(miss.role, miss);
   }
 
-  readRow(cells: readonly string[], line: number): void {
+  /** @param cells  numbers where the table holds numbers and not their digits */
+  readRow(cells: readonly Cell[], line: number): void {
     const columns = this.#columns;
     if (columns === null) return;
     if (cells.length !== columns.names.length) {
@@ -109,14 +113,15 @@ export class RowCollector implements TableConsumer {
     this.rowCount++;
     this.#rowsOfFile++;
 
-    const name = columns.track === -1 ? this.#file : cells[columns.track];
+    const name = columns.track === -1 ? this.#file : textOf(cells[columns.track]);
     let valid = name !== this.#previousName && name.trim() === '' ? this.#skipEmptyName(columns, line) : true;
     const width = places.length;
     this.#numbers.reserve(width);
     const { values, length: start } = this.#numbers;
     for (let i = 0; i < width; i++) {
-      let value = parsePlainNumber(cells[places[i]], this.#mark);
-      if (value - value !== 0) value = this.#readUnusual(cells[places[i]], places[i], line); // NaN or infinite
+      const cell = cells[places[i]];
+      let value = typeof cell === 'number' ? cell : parsePlainNumber(cell, this.#mark);
+      if (value - value !== 0) value = this.#readUnusual(textOf(cell), places[i], line); // NaN or infinite
       if (value !== value) valid = false;
       values[start + i] = value;
     }
@@ -124,10 +129,11 @@ export class RowCollector implements TableConsumer {
       this.invalidCount++;
       return;
     }
-    if (columns.countsFrames && !Number.isInteger(values[start])) this.#refuseFrame(cells[places[0]], line);
+    if (columns.countsFrames && !Number.isInteger(values[start]))
+      this.#refuseFrame(textOf(cells[places[0]]), line);
     const firstError = 1 + columns.coordinates.length;
     for (let i = firstError; i < firstError + (columns.errors?.length ?? 0); i++) {
-      if (values[start + i] < 0) this.#refuseError(cells[places[i]], places[i], line);
+      if (values[start + i] < 0) this.#refuseError(textOf(cells[places[i]]), places[i], line);
     }
     this.#trackOfRow.push(this.#findTrack(name, columns, cells, line));
     this.#lines.push(line);
@@ -141,6 +147,13 @@ export class RowCollector implements TableConsumer {
       { file: this.#file, line: this.#headerLine },
       'behind the header there is not a single row; one position per row is needed',
     );
+  }
+
+  /** Columns of the open file that are read, counted from 0. */
+  usedColumns(): number[] {
+    const columns = this.#columns;
+    if (columns === null) return [];
+    return [columns.track, columns.type, ...this.#numberPlaces].filter((column) => column !== -1);
   }
 
   /** The rows of all files; a view on the collector's arrays. */
@@ -160,24 +173,24 @@ export class RowCollector implements TableConsumer {
     };
   }
 
-  #findTrack(name: string, columns: TableColumns, cells: readonly string[], line: number): number {
+  #findTrack(name: string, columns: TableColumns, cells: readonly Cell[], line: number): number {
     if (name !== this.#previousName) {
       let track = this.#tracksOfFile.get(name);
       if (track === undefined) {
         track = this.#tracks.length;
         const kept = copyText(name);
-        const type = columns.type === -1 ? null : copyText(cells[columns.type]);
+        const type = columns.type === -1 ? null : copyText(textOf(cells[columns.type]));
         this.#tracks.push({ name: kept, file: this.#file, type, firstLine: line });
         this.#tracksOfFile.set(kept, track);
       }
       this.#previousName = name;
       this.#previousTrack = track;
     }
-    if (columns.type !== -1 && cells[columns.type] !== this.#tracks[this.#previousTrack].type) {
+    if (columns.type !== -1 && textOf(cells[columns.type]) !== this.#tracks[this.#previousTrack].type) {
       const { type, firstLine } = this.#tracks[this.#previousTrack];
       throw tableError(
         { file: this.#file, line, column: columns.names[columns.type] },
-        `track ${quoteCell(name)} is of type ${quoteCell(cells[columns.type])} here but of type ` +
+        `track ${quoteCell(name)} is of type ${quoteCell(textOf(cells[columns.type]))} here but of type ` +
           `${quoteCell(type ?? '')} on line ${firstLine}; a track has one type`,
         { track: name, lines: [firstLine, line] },
       );
@@ -297,8 +310,12 @@ export class RowCollector implements TableConsumer {
   }
 }
 
-function isBlank(cells: readonly string[]): boolean {
-  return cells.every((cell) => cell.trim() === '');
+function isBlank(cells: readonly Cell[]): boolean {
+  return cells.every((cell) => typeof cell === 'string' && cell.trim() === '');
+}
+
+function textOf(cell: Cell): string {
+  return typeof cell === 'string' ? cell : String(cell);
 }
 
 /** A string of its own: cells are views on a whole piece of the file, which they would keep in memory. */

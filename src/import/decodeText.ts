@@ -27,11 +27,13 @@ export class UndecodableText extends Error {
 const LARGEST_PIECE = 1 << 18; // bytes decoded at once: rows of one piece live and die together
 const SNIFFED_BYTES = 6;
 
+const PARQUET = [0x50, 0x41, 0x52, 0x31];
+
 /** First bytes of what people mistake for a table, with the sentence that helps them on. */
 const FOREIGN_FORMATS: readonly (readonly [readonly number[], string])[] = [
   [[0x50, 0x4b, 0x03, 0x04], 'this is a zip archive or a spreadsheet workbook; export the sheet as CSV'],
   [[0xd0, 0xcf, 0x11, 0xe0], 'this is a spreadsheet workbook; export the sheet as CSV'],
-  [[0x50, 0x41, 0x52, 0x31], 'this is a Parquet file; export it as CSV'],
+  [PARQUET, 'this is a Parquet file inside gzip; unpack it first'],
   [[0x89, 0x48, 0x44, 0x46], 'this is an HDF5 file; export the positions as CSV'],
   [[0x42, 0x5a, 0x68], 'this is compressed by bzip2; unpack it first, or use gzip'],
   [[0xfd, 0x37, 0x7a, 0x58, 0x5a], 'this is compressed by xz; unpack it first, or use gzip'],
@@ -44,8 +46,13 @@ function startsWith(bytes: Uint8Array, signature: readonly number[]): boolean {
   return bytes.length >= signature.length && signature.every((byte, i) => bytes[i] === byte);
 }
 
+/** Whether a file is a Parquet file, by its first bytes. */
+export function isParquet(bytes: Uint8Array): boolean {
+  return startsWith(bytes, PARQUET);
+}
+
 /** The same bytes with the first chunk long enough to be recognised (or the file at its end). */
-async function* joinFirstBytes(chunks: AsyncIterable<Uint8Array>): AsyncGenerator<Uint8Array> {
+export async function* joinFirstBytes(chunks: AsyncIterable<Uint8Array>): AsyncGenerator<Uint8Array> {
   let head: Uint8Array | null = new Uint8Array(0);
   for await (const chunk of chunks) {
     if (head === null) {

@@ -2,6 +2,7 @@
  * The way in: track tables to a track store.
  *
  *     bytes → text (decodeText) → rows (readTable) → columns of numbers (RowCollector) → tracks (buildTracks)
+ *     bytes of a Parquet file → rows (readParquet) ↗
  *
  * Opens no files: the caller hands in the bytes.
  */
@@ -11,7 +12,7 @@ import { COORDINATE_NAMES, type TrackSet } from '../tracks/TrackSet.js';
 import { NO_UNITS, type Units } from '../units.js';
 import { buildTracks } from './buildTracks.js';
 import { checkColumnMapping, writeMapping } from './columns.js';
-import type { TrackSource } from './decodeText.js';
+import { isParquet, joinFirstBytes, type TrackSource } from './decodeText.js';
 import { RowCollector } from './RowCollector.js';
 import { readTable } from './table.js';
 import { quoteCell } from './tableError.js';
@@ -69,7 +70,7 @@ export async function importTracks(
   const collector = new RowCollector(options.columns ?? {}, options.skipInvalid ?? false);
   for (const source of sources) {
     collector.openFile(source.name);
-    await readTable(source, collector);
+    await readSource(source, collector);
     collector.closeFile();
   }
   const rows = collector.collectRows();
@@ -94,6 +95,26 @@ export async function importTracks(
   const { prefixed, regularFraction } = built;
   warnings.push(...describeReading(collector, counts, prefixed, regularFraction));
   return { tracks: built.tracks, counts, warnings };
+}
+
+/** Reads one file, which says by its first bytes what it is. */
+async function readSource(source: TrackSource, collector: RowCollector): Promise<void> {
+  const chunks = joinFirstBytes(source.chunks);
+  try {
+    const first = await chunks.next();
+    const whole = async function* (): AsyncGenerator<Uint8Array> {
+      if (!first.done) yield first.value;
+      yield* chunks;
+    };
+    const opened = { name: source.name, chunks: whole() };
+    if (!first.done && isParquet(first.value)) {
+      await (await import('./readParquet.js')).readParquet(opened, collector);
+    } else {
+      await readTable(opened, collector);
+    }
+  } finally {
+    await chunks.return(undefined); // closes the source where reading ended early
+  }
 }
 
 /** Steps that agree with `--interval` to this fraction mean the same interval. */
