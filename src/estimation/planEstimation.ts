@@ -26,6 +26,7 @@ export function planEstimation(
     high: visited.high,
     periods: tracks.periods,
     positions: countPositions(tracks),
+    fine: study.estimator === 'likelihood',
   };
   const planField = (shape: string, option: string, form: FieldPlan['form']): FieldPlan => ({
     basis: resolveBasis(parseShape(shape, option), shapeContext, option),

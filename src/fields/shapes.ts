@@ -15,8 +15,12 @@ export type Shape =
 
 const FORMS = 'zero, constant, linear, polynomial:N, spline, spline:N or waves:N';
 
-/** B-splines per axis where the user leaves the size to the data (roughness is then penalised): by dimension. */
-const AUTO_SPLINES = [36, 10, 5]; // fine enough for features a tenth (1-D) of the region wide; cost grows with the cube
+/**
+ * B-splines per axis where the user leaves the size to the data (roughness is then penalised), by dimension: as fine as
+ * the time for a fit allows. Regressions on moments grow with the cube of the number of functions.
+ */
+const AUTO_SPLINES = [36, 10, 5];
+const FINE_SPLINES = [36, 16, 6];
 
 /** Fewest positions per basis function for which the automatic size is kept. */
 const POSITIONS_PER_FUNCTION = 20;
@@ -67,6 +71,8 @@ export interface ShapeContext {
   readonly periods: readonly number[];
   /** Number of positions that carry the fit. */
   readonly positions: number;
+  /** Whether an estimator for fine splines asks. Default no. */
+  readonly fine?: boolean;
 }
 
 /**
@@ -96,7 +102,7 @@ export function resolveBasis(shape: Shape, context: ShapeContext, option: string
         scale: context.low.map((low, axis) => (context.high[axis] - low) / 2 || 1),
       };
     case 'spline': {
-      const count = shape.count ?? automaticCount(context.positions, dimensions);
+      const count = shape.count ?? automaticCount(context, dimensions);
       return {
         kind: 'spline',
         counts: new Array<number>(dimensions).fill(count),
@@ -118,7 +124,7 @@ export function resolveBasis(shape: Shape, context: ShapeContext, option: string
   }
 }
 
-function automaticCount(positions: number, dimensions: number): number {
+function automaticCount({ positions, fine }: ShapeContext, dimensions: number): number {
   const affordable = Math.floor((positions / POSITIONS_PER_FUNCTION) ** (1 / dimensions));
-  return Math.max(4, Math.min(AUTO_SPLINES[dimensions - 1], affordable));
+  return Math.max(4, Math.min((fine ? FINE_SPLINES : AUTO_SPLINES)[dimensions - 1], affordable));
 }

@@ -16,7 +16,7 @@ import { createFirstOrderPass } from './firstOrderPass.js';
 import { gatherPlaces } from './gatherPlaces.js';
 import { createJointPass } from './joint/jointPass.js';
 import { createSpectralInformation } from './joint/spectralInformation.js';
-import { type FieldSlot, layOutLikelihood, type LikelihoodLayout } from './layout.js';
+import { type FieldSlot, layOutLikelihood, type LikelihoodLayout, orderByPlace } from './layout.js';
 import { createAxisInformation } from './localInformation.js';
 import { withLogLinks } from './positiveLinks.js';
 import type { PassSetting, PathPass } from './PathPass.js';
@@ -64,6 +64,7 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
       blocks: plan.blocks.count,
       groups,
       pull: pullToMean(layout, start),
+      order: orderByPlace(layout),
       evaluate: (parameters, scores) => pass.run(parameters, scores),
       information: (parameters, onTheWay) => {
         const matrix = expectInformation(places, layout, setting, local, parameters);

@@ -81,3 +81,17 @@ export function layOutLikelihood(
     size: offset + (errorEstimated ? dimensions : 0),
   };
 }
+
+/**
+ * All parameters in the order of the places of their functions, the localization errors last: systems whose entries are
+ * there for functions that overlap then have them near the diagonal.
+ */
+export function orderByPlace(layout: LikelihoodLayout): Int32Array {
+  const keys = new Float64Array(layout.size).fill(2);
+  for (const slot of [layout.force, layout.friction, layout.noise]) {
+    if (!slot) continue;
+    for (let i = 0; i < slot.components * slot.functionCount; i++)
+      keys[slot.offset + i] = (i % slot.functionCount) / slot.functionCount;
+  }
+  return Int32Array.from(keys.keys()).sort((a, b) => keys[a] - keys[b] || a - b);
+}

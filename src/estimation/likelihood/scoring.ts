@@ -13,7 +13,7 @@
  */
 
 import { NumericalError } from '../../errors.js';
-import { invertPositive } from '../../numerics/linear/invertPositive.js';
+import { factorPositive, type PositiveFactor } from '../../numerics/linear/factorPositive.js';
 import type { ReportShare } from '../../numerics/ReportShare.js';
 import type { PenaltyGroup } from '../penalizedMoments.js';
 import { createConvergenceShare } from './convergenceShare.js';
@@ -34,6 +34,8 @@ export interface ScoringProblem {
   readonly blocks: number;
   readonly groups: readonly RankedPenalty[];
   readonly pull: Pull;
+  /** Length p: parameters in an order that brings those of neighbouring places together. */
+  readonly order: Int32Array;
   /** Log-likelihood at a point; fills the block scores, shape (B, p), where given. */
   evaluate(parameters: Float64Array, scores: Float64Array | null): number;
   /** The metric at a point, shape (p, p), positive semi-definite; the one for steps may hold parameters in place. */
@@ -100,11 +102,11 @@ export function solveScores(
   let lastStep: Float64Array = new Float64Array(p);
   let converged = false;
   let iterations = 0;
-  let inverse = invertSystem(information, groups, strengths, pull, p);
+  let factor = factorSystem(information, groups, strengths, pull, problem.order);
   while (iterations < MOST_ITERATIONS && !converged) {
     iterations++;
     const gradient = penalizedScore(scores, groups, strengths, pull, parameters);
-    const step = multiply(inverse, gradient);
+    const step = factor.solve(gradient);
     const decrement = innerProduct(gradient, step);
     const before = logLikelihood - penaltyOf(groups, strengths, pull, parameters) / 2;
     // Steps that turn back on the one before overshoot: the metric is too small in some direction.
@@ -121,22 +123,23 @@ export function solveScores(
       // likelihood: a step is good if it brings either nearer to where it should be.
       if (logLikelihood - penaltyOf(groups, strengths, pull, moved) / 2 > before) break;
       const left = penalizedScore(trialScores, groups, strengths, pull, moved);
-      if (innerProduct(left, multiply(inverse, left)) < decrement) break;
+      if (innerProduct(left, factor.solve(left)) < decrement) break;
     }
     parameters = moved;
     [scores, trialScores] = [trialScores, scores];
     information = problem.information(parameters, true);
     // Strengths are worth moving once the coefficients are about where the old ones want them.
-    const settled = decrement < SETTLED * (1 + innerProduct(inverse, information));
+    const inner = factor.innerInverse();
+    const settled = decrement < SETTLED * (1 + innerProduct(inner, information));
     const change = settled
-      ? updateStrengths(groups, strengths, paces, information, inverse, parameters, p)
+      ? updateStrengths(groups, strengths, paces, information, inner, parameters, p)
       : Infinity;
-    inverse = invertSystem(information, groups, strengths, pull, p);
+    factor = factorSystem(information, groups, strengths, pull, problem.order);
     converged = decrement < TOLERANCE && change < STRENGTH_TOLERANCE;
     tellShare(decrement, change);
   }
   information = problem.information(parameters, false);
-  inverse = invertSystem(information, groups, strengths, pull, p);
+  const inverse = factorSystem(information, groups, strengths, pull, problem.order).inverse();
   return {
     parameters,
     scores,
@@ -249,14 +252,15 @@ function penaltyOf(
   return total;
 }
 
-/** (I + S_λ + ridge)⁻¹. */
-function invertSystem(
+/** I + S_λ + ridge. */
+function factorSystem(
   information: Float64Array,
   groups: readonly PenaltyGroup[],
   strengths: Float64Array,
   pull: Pull,
-  p: number,
-): Float64Array {
+  order: Int32Array,
+): PositiveFactor {
+  const p = order.length;
   const system = information.slice();
   for (let i = 0; i < p; i++) system[i * p + i] += pull.precision[i];
   const typical = Float64Array.from({ length: p }, (_, i) => information[i * p + i]);
@@ -273,24 +277,13 @@ function invertSystem(
       }
     }
   });
-  const inverse = invertPositive(system, p);
-  if (!inverse) {
+  const factor = factorPositive(system, p, order);
+  if (!factor) {
     throw new NumericalError(
       'the likelihood has no curvature in some direction: the data do not tell the functions apart; use fewer functions (a smaller spline:N) or constant',
     );
   }
-  return inverse;
-}
-
-function multiply(matrix: Float64Array, vector: Float64Array): Float64Array {
-  const p = vector.length;
-  const out = new Float64Array(p);
-  for (let i = 0; i < p; i++) {
-    let sum = 0;
-    for (let j = 0; j < p; j++) sum += matrix[i * p + j] * vector[j];
-    out[i] = sum;
-  }
-  return out;
+  return factor;
 }
 
 /** Sum of products: of two vectors, or the trace of the product of two symmetric matrices. */

@@ -14,7 +14,7 @@
  */
 
 import { invertMatrix } from '../../../numerics/linear/smallMatrix.js';
-import { invertPositive } from '../../../numerics/linear/invertPositive.js';
+import { factorPositive } from '../../../numerics/linear/factorPositive.js';
 import type { LikelihoodLayout } from '../layout.js';
 import { type LocalInformation, numberLocal } from '../localInformation.js';
 import { createMatrixField, type MatrixField } from './matrixFields.js';
@@ -90,7 +90,7 @@ export function createSpectralInformation(
         addDiagonal(target, n, d, axis, rise * errorVariances[axis]);
         addDiagonal(level, n, d, axis, rise * errorVariances[axis]);
       }
-      const inverse = invertPositive(level, n);
+      const inverse = factorPositive(level, n)?.inverse();
       if (!inverse) continue;
       for (let a = d; a < count; a++) multiplyInto(inverse, spectra[a], products[a], n);
       for (let a = d; a < count; a++) {
