@@ -50,7 +50,9 @@ const REPLICATE_DIGITS = 7;
  * @throws UsageError  where the study asks for something impossible
  *
  * @example
- * const fit = await fitTracks(tracks, studySchema.parse({ friction: 'constant', seed: 7 }));
+ * const study = studySchema.parse({ force: 'linear', friction: 'constant', noise: 'constant', seed: 7 });
+ * const fit = await fitTracks(tracks, study);
+ * console.log(fit.model.order, fit.warnings.length); // → second 0
  */
 export async function fitTracks(
   tracks: TrackSet,

@@ -2,7 +2,7 @@
  * Re-simulation: the fitted model, simulated as the recording was made, against the recording.
  */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitResult } from '../documents/FitDocument.js';
 import { DataError, UsageError, type Warning } from '../errors.js';
 import { modelFields, modelParameters } from '../fields/modelParameters.js';
 import { type MapTasks, mapTasksSerially } from '../numerics/MapTasks.js';
@@ -63,9 +63,13 @@ const TITLES: Readonly<Record<string, string>> = {
  * @throws UsageError  too few replicates, or regions that do not fit the tracks
  * @throws DataError  tracks of other dimensions than the fit, or none
  * @throws NumericalError  where the fitted model runs off to infinity
+ *
+ * @example
+ * const result = await resimulate(fit, tracks, { seed: 1, replicates: 19, refit: createRefit(fit), refits: 1 });
+ * console.log(result.consistent, result.refit.map(({ name }) => name)[0]); // → true force_x[0]
  */
 export async function resimulate(
-  fit: FitDocument,
+  fit: FitResult,
   tracks: TrackSet,
   options: ResimulationOptions,
 ): Promise<ResimulationResult> {
@@ -180,7 +184,7 @@ function findOccupancy(
 
 /** Simulates the fitted coefficients themselves and estimates them again from the simulated recordings. */
 async function refitCoefficients(
-  fit: FitDocument,
+  fit: FitResult,
   design: Design,
   seed: number,
   refits: number,
@@ -214,7 +218,7 @@ async function refitCoefficients(
 }
 
 /** `force_x[0]`, `friction_xx[3]`, …, in model order. */
-function nameCoefficients(fit: FitDocument): string[] {
+function nameCoefficients(fit: FitResult): string[] {
   const axes = fit.data.coordinates;
   return modelFields(fit.model).flatMap((field) => {
     const components = nameComponents(field.name === 'friction', field.form, axes);

@@ -65,7 +65,10 @@ export const fitSchema = z.strictObject({
 export type FitDocument = z.output<typeof fitSchema>;
 
 /** What only the program adds to a fit: what the file is, where the tracks came from, and the clock. */
-type FitOrigin = Pick<FitDocument, 'format' | 'version' | 'program' | 'created' | 'timing' | 'sources'>;
+export type FitOrigin = Pick<
+  FitDocument,
+  'format' | 'version' | 'program' | 'created' | 'timing' | 'sources'
+>;
 
 /** A fit as the library returns it. A fit document is one, too. */
 export type FitResult = Omit<FitDocument, keyof FitOrigin>;

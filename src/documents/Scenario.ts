@@ -32,7 +32,7 @@ const constantField = z
 const coefficient = z.union([fieldSchema, formulaField, constantField]);
 
 /** Standing conditions of a unique stationary law: see `assessStanding`. */
-const standingSchema = z.strictObject({
+export const standingSchema = z.strictObject({
   conditions: z
     .array(
       z.strictObject({

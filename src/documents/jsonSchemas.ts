@@ -5,9 +5,13 @@ import { fitSchema } from './FitDocument.js';
 import { scenarioSchema } from './Scenario.js';
 import { studySchema } from './Study.js';
 
-const PUBLISHED = { study: studySchema, fit: fitSchema, scenario: scenarioSchema } as const;
+export type DocumentName = 'study' | 'fit' | 'scenario';
 
-export type DocumentName = keyof typeof PUBLISHED;
+const PUBLISHED: Readonly<Record<DocumentName, z.ZodType>> = {
+  study: studySchema,
+  fit: fitSchema,
+  scenario: scenarioSchema,
+};
 
 /**
  * JSON Schemas (draft 2020-12) by document name. Keys with a default may be left out, as in files written by hand;

@@ -24,6 +24,19 @@ export interface LawContext {
  * Reads laws. A name (of the study first, then of the shelf) may carry the coordinate it runs along: `tanh-step:y`.
  *
  * @throws UsageError  for formulas that cannot be read, and for start or held values no law has a parameter for
+ *
+ * @example
+ * const laws = resolveLaws(['g0', 'g0*(1+a*x)'], {
+ *   readFormula: await loadFormulaReader(),
+ *   coordinates: ['x'],
+ *   hasConcentration: false,
+ *   field: 'friction',
+ *   laws: {},
+ *   start: { g0: 1 },
+ *   fixed: {},
+ * });
+ * const request = { hypothesis: 'law', field: 'friction', laws, confidence: 0.95, seed: 1 } as const;
+ * console.log(testHypothesis(fit, tracks, request).comparison?.length); // → 2
  */
 export function resolveLaws(texts: readonly string[], context: LawContext): Law[] {
   const laws = texts.map((text) => resolveLaw(text.trim(), context));

@@ -49,6 +49,10 @@ const FEW_BLOCKS = 30; // below this the covariance is too rough for Hotelling's
  * @throws DataError, NumericalError  as the estimators do
  *
  * Cost  one likelihood fit and 2 p evaluations of the model; a hundred times that for small recordings.
+ *
+ * @example
+ * const result = testHypothesis(fit, tracks, { hypothesis: 'zero-force', confidence: 0.95, seed: 1 });
+ * console.log(result.rejected, result.method); // → true theory
  */
 export function testHypothesis(fit: FitResult, tracks: TrackSet, request: TestRequest): TestResult {
   const plan = planTest(fit, request);

@@ -9,6 +9,10 @@ const ROWS_PER_CHUNK = 4096;
  *
  * Numbers are written with the fewest digits that give the same double precision number again. Names are quoted
  * where they need it. Coordinates of periodic axes are written unwrapped.
+ *
+ * @example
+ * const [header] = [...formatTrackTable(tracks)].join('').split('\n');
+ * console.log(header); // → track,time,x
  */
 export function* formatTrackTable(tracks: TrackSet): Generator<string> {
   const { dimensions, coordinates, times, positions, trackOffsets, trackNames, trackTypes } = tracks;

@@ -61,6 +61,12 @@ export interface ImportResult {
  * @param sources  at least one; read one after another
  * @throws UsageError  an option is out of its range, no source, or the same source twice
  * @throws DataError  the tables cannot be read or make no tracks; says file, line and column
+ *
+ * @example
+ * const table = 'track,time,x\na,0,0.5\na,1,0.7\na,2,0.6\n';
+ * const source = { name: 'tracks.csv', chunks: new Blob([table]).stream() }; // of a file: createReadStream(path)
+ * const { tracks } = await importTracks([source], { units: { length: 'um', time: 's' } });
+ * console.log(countTracks(tracks), countPositions(tracks)); // → 1 3
  */
 export async function importTracks(
   sources: readonly TrackSource[],

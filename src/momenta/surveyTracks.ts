@@ -38,6 +38,11 @@ const FORGOTTEN = 3;
  *
  * @param tracks  any tracks; those that do not move at all are described without velocities
  * @returns plain numbers, arrays and strings, in the units of the tracks
+ *
+ * @example
+ * const survey = surveyTracks(tracks);
+ * console.log(survey.recommendedOrder, survey.missingFrames); // → second 0
+ * console.log(survey.warnings.map(({ code }) => code)); // → []
  */
 export function surveyTracks(tracks: TrackSet, options: SurveyOptions = {}): Survey {
   const { dimensions, samplingInterval: interval } = tracks;

@@ -1,7 +1,7 @@
 /** What a page can be made of: a fit, and the results of other commands where they were asked for. */
 
 import type { ResimulationResult } from '../checks/ResimulationResult.js';
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitOfAnyOrigin } from '../documents/FitDocument.js';
 import type { Scenario } from '../documents/Scenario.js';
 
 /** A test of a statement about the coefficients, as `test --json` prints it. */
@@ -19,7 +19,7 @@ export interface ReportedTest {
   readonly comparison?: readonly ReportedLaw[];
 }
 
-type ReportedParameters = Readonly<
+export type ReportedParameters = Readonly<
   Record<string, { readonly value: number; readonly low: number; readonly high: number }>
 >;
 
@@ -45,7 +45,7 @@ export interface ReportedChallenge {
 }
 
 export interface ReportInput {
-  readonly fit: FitDocument;
+  readonly fit: FitOfAnyOrigin;
   readonly tests?: readonly ReportedTest[];
   readonly challenges?: readonly ReportedChallenge[];
   readonly resimulation?: ResimulationResult;

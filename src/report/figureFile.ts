@@ -30,7 +30,13 @@ function readSize(svg: string): { width: number; height: number } {
   return { width, height };
 }
 
-/** A complete SVG document in the light colours, without references to anything outside. */
+/**
+ * A complete SVG document in the light colours, without references to anything outside.
+ *
+ * @example
+ * const { figures } = await drawReport({ fit });
+ * console.log(composeFigure(figures[0]).slice(0, 4)); // → <svg
+ */
 export function composeFigure(figure: Figure): string {
   const chart = readSize(figure.chart.svg);
   const width = chart.width + 2 * MARGIN;

@@ -25,7 +25,7 @@ const hash = (text: string) => `'sha256-${createHash('sha256').update(text).dige
 
 function writeHeader(context: PageContext, sections: readonly Section[]): Html {
   const { fit } = context;
-  const names = fit.sources.map((source) => tameText(source.path.split(/[\\/]/).pop() ?? '', 70));
+  const names = (fit.sources ?? []).map((source) => tameText(source.path.split(/[\\/]/).pop() ?? '', 70));
   const title =
     names.length === 0
       ? 'recorded tracks'
@@ -55,7 +55,12 @@ export interface DrawnReport {
  * Draws a page that needs nothing beside itself: style, pictures and one small script are inside, and its content
  * security policy forbids everything else. Text from the user's files appears as text alone.
  *
- * @param input  a fit, with the results of other commands where they are to be shown
+ * @param input  a fit, with the results of tests, challenges, a re-simulation and a scenario where they are to be shown
+ *
+ * @example
+ * const { page, figures } = await drawReport({ fit, scenario });
+ * console.log(page.slice(0, 15)); // → <!doctype html>
+ * console.log(figures[0].name, figures[0].table.length); // → tracks 3
  */
 export async function drawReport(input: ReportInput): Promise<DrawnReport> {
   const context = createContext(input, await openDrawing());
@@ -69,6 +74,7 @@ export async function drawReport(input: ReportInput): Promise<DrawnReport> {
     writeSettings(context),
     writeCautions(context),
   ].filter((section) => section !== null);
+  const program = tameText(input.fit.program ?? 'wanderlaw', 60);
   const policy = `default-src 'none'; style-src ${hash(PAGE_STYLE)}; script-src ${hash(PAGE_SCRIPT)}; base-uri 'none'; form-action 'none'`;
   const page = html`<!doctype html>
 <html lang="en">
@@ -76,8 +82,8 @@ export async function drawReport(input: ReportInput): Promise<DrawnReport> {
 <meta charset="utf-8">
 <meta http-equiv="Content-Security-Policy" content="${new Html(policy)}">
 <meta name="viewport" content="width=device-width, initial-scale=1">
-<meta name="generator" content="${tameText(input.fit.program, 60)}">
-<title>${tameText(input.fit.sources[0]?.path.split(/[\\/]/).pop() ?? 'Tracks', 70)} – fitted coefficients</title>
+<meta name="generator" content="${program}">
+<title>${tameText(input.fit.sources?.[0]?.path.split(/[\\/]/).pop() ?? 'Tracks', 70)} – fitted coefficients</title>
 <style>${new Html(PAGE_STYLE)}</style>
 </head>
 <body>
@@ -86,7 +92,7 @@ ${writeHeader(context, sections)}
 <main>
 ${sections.map((section, i) => html`<section id="${section.id}"><h2><span class="number">${i + 1}</span>${section.title}</h2>\n${section.body}</section>\n`)}
 </main>
-<footer>Written by ${tameText(input.fit.program, 60)}.</footer>
+<footer>Written by ${program}.</footer>
 <script>${new Html(PAGE_SCRIPT)}</script>
 </body>
 </html>
@@ -94,7 +100,14 @@ ${sections.map((section, i) => html`<section id="${section.id}"><h2><span class=
   return { page, figures: context.figures };
 }
 
-/** The page alone, a complete HTML document: see `drawReport`. */
+/**
+ * The page alone, a complete HTML document: see `drawReport`.
+ *
+ * @example
+ * const challenges = challengeModel(fit, tracks, 0.95).checks;
+ * const page = await renderReport({ fit, challenges });
+ * console.log(page.includes('Assumptions of the model')); // → true
+ */
 export async function renderReport(input: ReportInput): Promise<string> {
   return (await drawReport(input)).page;
 }

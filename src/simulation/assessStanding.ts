@@ -16,6 +16,11 @@ import { assessConditions } from './standingConditions.js';
  * @param seed  of that simulation
  * @param onProgress  is told how much of the longest simulation there may be is done
  * @throws UsageError  where a formula cannot be read
+ *
+ * @example
+ * const { conditions, relaxation } = await assessStanding(scenario, 1);
+ * console.log(conditions.every(({ verdict }) => verdict === 'holds')); // → true
+ * console.log(relaxation?.time); // a time, in the units of the scenario
  */
 export async function assessStanding(
   scenario: Scenario,

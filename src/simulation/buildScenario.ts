@@ -22,6 +22,10 @@ const ENSEMBLE_DRAWS = 200;
  *   start         the recorded positions kept in the fit, or draws from the visited cells
  *   observation   as many tracks and frames as were recorded, with their interval, error, exposure and loss
  *   ensemble      coefficient draws from the fit's uncertainty
+ *
+ * @example
+ * const scenario = buildScenario(fit);
+ * console.log(scenario.order, scenario.observation.frames); // → second 150
  */
 export function buildScenario(fit: FitOfAnyOrigin): Scenario {
   const { model, data } = fit;

@@ -28,7 +28,26 @@ export function parseScenario(
   return scenario;
 }
 
-/** A scenario from typed input, with the same checks as one from a file. */
+/**
+ * A scenario from typed input, with the same checks as one from a file.
+ *
+ * @example
+ * const trap = createScenario({
+ *   format: 'wanderlaw-scenario',
+ *   version: 1,
+ *   dimensions: 1,
+ *   order: 'first',
+ *   axes: [{ kind: 'open' }],
+ *   parameters: { k: 2 },
+ *   coefficients: {
+ *     drift: { form: 'vector', formulas: ['-k*x'] },
+ *     diffusion: { form: 'scalar', values: [0.5] },
+ *   },
+ *   start: { kind: 'normal', mean: [0], spread: [0.5] },
+ *   observation: { tracks: 10, frames: 100, interval: 0.1, localizationError: [0] },
+ * });
+ * console.log(trap.title, trap.reading); // what was left out has its default
+ */
 export function createScenario(input: ScenarioInput): Scenario {
   return parseScenario(input);
 }

@@ -67,6 +67,10 @@ const WARN_RATIO = 3; // a given step this many times the recommended one is wor
  *
  * @throws UsageError  where an option, a formula or the step cannot be used
  * @throws NumericalError  where a position stops being finite
+ *
+ * @example
+ * const { tracks, step } = await simulateScenario(scenario, { seed: 7, tracks: 3, frames: 50 });
+ * console.log(countTracks(tracks), countPositions(tracks), step < tracks.samplingInterval); // → 3 150 true
  */
 export async function simulateScenario(
   scenario: Scenario,

@@ -1,6 +1,6 @@
 /** The curl of a fitted force or drift: where it is not zero, no potential can be behind it. */
 
-import type { FitDocument } from '../documents/FitDocument.js';
+import type { FitResult } from '../documents/FitDocument.js';
 import { createBasis } from '../fields/createBasis.js';
 
 export interface EvaluatedCurl {
@@ -26,7 +26,7 @@ export interface EvaluatedCurl {
  *   field itself
  */
 export function evaluateCurl(
-  fit: FitDocument,
+  fit: FitResult,
   places: Float64Array,
   first: number,
   second: number,

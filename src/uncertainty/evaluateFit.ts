@@ -24,6 +24,14 @@ export interface EvaluatedColumn {
  * @param places  shape (m, d), length; outside the visited region the bases are held at their edge and `visited` is 0
  * @returns columns named force_x …, friction_xx …, noise_xx …, temperature_xx … (second order) or drift_x …,
  *          diffusion_xx … (first), in the units of the tracks
+ *
+ * @example
+ * const places = Float64Array.of(-0.5, 0.5); // two places in one dimension
+ * const { columns, visited } = evaluateFit(fit, places);
+ * console.log(columns.map(({ name }) => name).join()); // → force_x,friction_xx,noise_xx,temperature_xx
+ * console.log(visited.join()); // → 1,1
+ * const [force] = columns;
+ * console.log(force.low[0] > 0 && force.high[1] < 0); // → true
  */
 export function evaluateFit(
   fit: FitResult,

@@ -25,6 +25,10 @@ import { measureInnovations } from './innovations.js';
  * @param confidence  level of the verdicts
  * @param onProgress  is told how much is done
  * @throws DataError, NumericalError  as the likelihood estimator does
+ *
+ * @example
+ * const { checks, holds } = challengeModel(fit, tracks, 0.95);
+ * console.log(holds, checks.length); // → true 6
  */
 export function challengeModel(
   fit: FitResult,

@@ -38,8 +38,8 @@ export function writeSettings(context: PageContext): Section {
   const { fit, resimulation, scenario } = context;
   const idle: readonly string[] = IDLE[fit.model.order];
   const diagnostics = Object.entries(fit.diagnostics);
-  const seconds = Object.values(fit.timing).reduce((sum, value) => sum + value, 0);
-  const sources = fit.sources.map((source): [string, ReturnType<typeof html>] => [
+  const seconds = Object.values(fit.timing ?? {}).reduce((sum, value) => sum + value, 0);
+  const sources = (fit.sources ?? []).map((source): [string, ReturnType<typeof html>] => [
     tameText(source.path.split(/[\\/]/).pop() ?? source.path, 90),
     html`<span class="hash">SHA-256 ${tameText(source.sha256, 64)}</span>`,
   ]);
@@ -56,13 +56,13 @@ export function writeSettings(context: PageContext): Section {
       ? ([['seed behind the scenario', scenario.provenance.seed]] as [string, unknown][])
       : []),
   ];
-  const body = html`<h3>Sources</h3>${writeList(sources, true)}
+  const body = html`${sources.length > 0 ? html`<h3>Sources</h3>${writeList(sources, true)}` : null}
 <h3>Study</h3>${listEntries(Object.entries(fit.study).filter(([name]) => !idle.includes(name)))}
 <h3>Seeds and program</h3>${listEntries([
     ...seeds,
-    ['program', fit.program],
-    ['fit written', fit.created],
-    ['time taken', `${formatNumber(seconds, 2)} s`],
+    ...(fit.program === undefined ? [] : [['program', fit.program] as const]),
+    ...(fit.created === undefined ? [] : [['fit written', fit.created] as const]),
+    ...(seconds > 0 ? [['time taken', `${formatNumber(seconds, 2)} s`] as const] : []),
     ['uncertainty', fit.uncertainty.method],
   ])}
 ${diagnostics.length > 0 ? html`<h3>What the estimator says of itself</h3>${listEntries(diagnostics)}` : null}`;
