@@ -83,9 +83,9 @@ export class Terminal {
     if (!this.quiet) this.streams.stderr.write(`wanderlaw: ${text}\n`);
   }
 
-  /** Advice on standard error; silent with `--quiet`. */
+  /** Advice on standard error, with its code for those who look it up; silent with `--quiet`. */
   warn(warning: Warning): void {
-    this.note(`${this.noteColors.yellow('warning')}: ${warning.message}`);
+    this.note(`${this.noteColors.yellow('warning')}: ${warning.message} [${warning.code}]`);
   }
 
   /** The sentence an error ends the command with; never silent. */

@@ -1,11 +1,12 @@
 /** What README and DEVELOPERS tell people to type, read and open exists. */
 
-import { existsSync, readFileSync } from 'node:fs';
+import { existsSync, readdirSync, readFileSync } from 'node:fs';
 import { fileURLToPath } from 'node:url';
 import { describe, expect, test } from 'vitest';
 import { DATA_SET_NAMES } from '../../datasets/truth.js';
 import { COMMANDS } from '../../src/cli/commandTable.js';
 import { OPTIONS, type OptionName } from '../../src/cli/options.js';
+import { STANDING_CODE } from '../../src/simulation/standingConditions.js';
 
 const ROOT = fileURLToPath(new URL('../..', import.meta.url));
 const readme = readFileSync(`${ROOT}/README.md`, 'utf8');
@@ -45,6 +46,36 @@ describe('README', () => {
   });
 });
 
+/** Codes of warnings in the sources; where a part of one is put in, `…` stands for it. */
+function listWarningCodes(): Set<string> {
+  const sources = readdirSync(`${ROOT}/src`, { recursive: true, encoding: 'utf8' }).filter((path) =>
+    path.endsWith('.ts'),
+  );
+  const codes = new Set<string>();
+  for (const path of sources) {
+    const text = readFileSync(`${ROOT}/src/${path}`, 'utf8');
+    for (const [, code] of text.matchAll(/\bcode: '([a-z-]+)'/g)) codes.add(code);
+    for (const [, code] of text.matchAll(/\bwarn\(\s*'([a-z-]+)'/g)) codes.add(code);
+    for (const [, head] of text.matchAll(/\bcode: `([^`$]*)\$\{/g)) codes.add(`${head}…`);
+  }
+  return codes;
+}
+
+test('README explains every warning there is, and no other', () => {
+  const section = readme.slice(
+    readme.indexOf('## What the warnings mean'),
+    readme.indexOf('## As a library'),
+  );
+  const explained = [...section.matchAll(/^\| (`.*?`) \|/gm)].flatMap(([, cell]) =>
+    [...cell.matchAll(/`([^`]+)`/g)].map(([, code]) => code),
+  );
+  const inSources = [...listWarningCodes()].flatMap((code) => {
+    if (code === 'negative-…') return ['friction', 'noise', 'diffusion'].map((name) => `negative-${name}`);
+    return code === '…' ? [`${STANDING_CODE}…`] : [code]; // the one code that begins with a name
+  });
+  expect(explained.sort()).toEqual([...new Set(inSources)].sort());
+});
+
 test('npm scripts named in README and DEVELOPERS exist', () => {
   const { scripts } = JSON.parse(readFileSync(`${ROOT}/package.json`, 'utf8')) as {
     scripts: Record<string, string>;
@@ -67,4 +98,16 @@ test('links in README and DEVELOPERS lead somewhere', () => {
   );
   const local = targets.filter((target) => !/^https?:/.test(target));
   expect(local.filter((target) => !existsSync(`${ROOT}/${target}`))).toEqual([]);
+});
+
+test('links within README lead to its headings', () => {
+  const anchors = [...readme.matchAll(/^#+ (.+)$/gm)].map(([, heading]) =>
+    heading
+      .toLowerCase()
+      .replace(/[^\p{L}\p{N} -]/gu, '')
+      .replaceAll(' ', '-'),
+  );
+  const targets = [...readme.matchAll(/\]\(#([^)]+)\)/g)].map(([, target]) => target);
+  expect(targets.length).toBeGreaterThan(2);
+  expect(targets.filter((target) => !anchors.includes(target))).toEqual([]);
 });

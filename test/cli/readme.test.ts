@@ -18,11 +18,14 @@ function listBlocks(language: string): string[] {
   );
 }
 
-/** Lines that begin with `wanderlaw`, without their comments; the demos have a test of their own. */
-const lines = listBlocks('sh')
+/** Every line in a block of shell, without its comment. */
+const typed = listBlocks('sh')
   .flatMap((block) => block.split('\n'))
   .map((line) => line.replace(/\s+#.*$/, ''))
-  .filter((line) => line.startsWith('wanderlaw ') && !line.startsWith('wanderlaw demo'));
+  .filter((line) => line !== '');
+
+/** Lines that begin with `wanderlaw`; the demos have a test of their own, with their pages (test/pages/demo.test.ts). */
+const lines = typed.filter((line) => line.startsWith('wanderlaw ') && !line.startsWith('wanderlaw demo'));
 
 /** The words of a line as a shell would hand them over. */
 function splitWords(line: string): string[] {
@@ -49,6 +52,27 @@ beforeAll(() => {
 });
 
 describe('README', () => {
+  it('shows no commands but those of the program, of npm, and of a shell that learns to complete', () => {
+    const { scripts } = JSON.parse(
+      readFileSync(fileURLToPath(new URL('../../package.json', import.meta.url)), 'utf8'),
+    ) as {
+      scripts: Record<string, string>;
+    };
+    expect(scripts.start).toBe('node dist/bin/wanderlaw.js demo');
+    const others = typed.filter((line) => !line.startsWith('wanderlaw '));
+    for (const line of others) {
+      const [, script] = /^npm run (\S+)$/.exec(line) ?? [];
+      if (script !== undefined) expect(scripts).toHaveProperty(script);
+      else expect(['npm ci', 'npm start', 'npm link', 'eval "$(wanderlaw completion bash)"']).toContain(line);
+    }
+  });
+
+  it('teaches bash to complete', async () => {
+    const { status, stdout } = await place.run(['completion', 'bash']);
+    expect(status).toBe(0);
+    expect(stdout).toContain('complete -F _wanderlaw wanderlaw');
+  });
+
   it.each(lines)('%s', async (line) => {
     const { status, stderr } = await place.run(splitWords(line).slice(1));
     expect(status, stderr).toBe(0);
