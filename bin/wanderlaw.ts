@@ -1,16 +1,20 @@
 #!/usr/bin/env node
-import { removeUnfinishedFiles } from '../src/cli/files.js';
+import { writeSync } from 'node:fs';
+import { explainSystemError } from '../src/cli/files.js';
 import { run } from '../src/cli/main.js';
+import { removeUnfinishedFiles } from '../src/cli/unfinishedFiles.js';
 
-for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP'] as const) {
-  process.once(signal, () => {
-    removeUnfinishedFiles();
-    process.kill(process.pid, signal); // the listener is gone: ends the way the signal says
-  });
-}
 for (const stream of [process.stdout, process.stderr]) {
   stream.on('error', (error: NodeJS.ErrnoException) => {
-    if (error.code !== 'EPIPE') throw error; // EPIPE: the reader has seen enough (`wanderlaw … | head`)
+    if (error.code === 'EPIPE') return; // the reader has seen enough (`wanderlaw … | head`)
+    removeUnfinishedFiles();
+    if (stream === process.stdout) {
+      writeSync(
+        2,
+        `wanderlaw: standard output cannot be written: ${explainSystemError(error)}; send it elsewhere\n`,
+      );
+    }
+    process.exit(2);
   });
 }
 

@@ -15,15 +15,7 @@ import {
 import { open, readFile, rename, rm } from 'node:fs/promises';
 import { basename, dirname, join } from 'node:path';
 import { UsageError } from '../errors.js';
-
-/** Temporary files that have not yet become what they are for. */
-const unfinished = new Set<string>();
-
-/** Removes what an interrupted command would leave behind; called when a signal ends the program. */
-export function removeUnfinishedFiles(): void {
-  for (const path of unfinished) rmSync(path, { force: true });
-  unfinished.clear();
-}
+import { hold, release } from './unfinishedFiles.js';
 
 /** Why a system call failed, in words. */
 export function explainSystemError(error: unknown): string {
@@ -122,12 +114,12 @@ export function checkOutput(
 /** Some places refuse new files whatever their permissions say (/proc, a full or read-only disk). */
 function probeDirectory(directory: string, name: string): void {
   const probe = temporaryPath(directory, name);
-  unfinished.add(probe);
+  hold(probe);
   try {
     closeSync(openSync(probe, 'wx'));
   } finally {
     rmSync(probe, { force: true });
-    unfinished.delete(probe);
+    release(probe);
   }
 }
 
@@ -159,7 +151,7 @@ export async function writeWhole(
   const direct = target !== null && !target.isFile();
   const final = target !== null && !direct ? realpathSync(path) : path; // a link stays a link
   const temporary = direct ? final : temporaryPath(dirname(final), basename(final));
-  if (!direct) unfinished.add(temporary);
+  if (!direct) hold(temporary);
   try {
     const handle = await guard(() => open(temporary, 'w'));
     try {
@@ -182,7 +174,7 @@ export async function writeWhole(
     }
     throw error;
   } finally {
-    unfinished.delete(temporary);
+    release(temporary);
   }
 }
 

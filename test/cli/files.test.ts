@@ -1,7 +1,8 @@
 import { existsSync, mkdirSync, readFileSync, readlinkSync, symlinkSync } from 'node:fs';
 import { join } from 'node:path';
 import { afterAll, beforeEach, describe, expect, it } from 'vitest';
-import { checkOutput, removeUnfinishedFiles, writeWhole } from '../../src/cli/files.js';
+import { checkOutput, writeWhole } from '../../src/cli/files.js';
+import { removeUnfinishedFiles } from '../../src/cli/unfinishedFiles.js';
 import { UsageError } from '../../src/errors.js';
 import { Workplace } from './runInProcess.js';
 
