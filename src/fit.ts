@@ -63,7 +63,10 @@ export async function fitTracks(
   const progress = (done: number, stage: string): void => context.onProgress?.(share * done, 1, stage);
   // Shares of the time, as fits of some ten thousand positions spend it.
   progress(0, 'surveying');
-  const survey = surveyTracks(tracks, { localizationError: study.localizationError });
+  const survey = surveyTracks(tracks, {
+    localizationError: study.localizationError,
+    exposure: study.exposure,
+  });
   const order = study.order === 'auto' ? survey.recommendedOrder : study.order;
   const { tracks: usable, warnings: lengthWarnings } = checkTrackLengths(tracks, order);
   const visited = describeVisited(usable);

@@ -46,7 +46,7 @@ export const COMMANDS: readonly CommandSpec[] = [
     description:
       'Counts, interval, gaps, visited region, localization error, relaxation time of the velocity, recommended order, and warnings.',
     operands: [TRACKS],
-    options: [...TABLE_OPTIONS, 'momenta', 'fit', 'output', ...SPEECH_OPTIONS],
+    options: [...TABLE_OPTIONS, 'exposure', 'momenta', 'fit', 'output', ...SPEECH_OPTIONS],
     examples: ['wanderlaw survey tracks.csv', 'wanderlaw survey tracks.csv --momenta momenta.csv --mass 2'],
     load: async () => (await import('./commands/survey.js')).runSurvey,
   },

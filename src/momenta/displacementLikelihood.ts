@@ -29,7 +29,8 @@ import { computePredictionFilter } from './predictionFilter.js';
 export interface DisplacementFit {
   readonly kind: ModelKind;
   readonly model: DisplacementModel;
-  /** Localization error variance s², length²; at first order less DΔ/3 for a full exposure, so it may be negative. */
+  /** Localization error variance s², length²; at first order less DΔ/3 for a full exposure that was not told, so it may be
+   * negative. */
   readonly errorVariance: number;
   readonly logLikelihood: number;
   /** Length B: share of each block in the log-likelihood. */
@@ -46,8 +47,9 @@ export function taperedInto(
   errorVariance: number,
   weights: Float64Array,
   out: Float64Array,
+  exposure: number,
 ): void {
-  displacementCovariancesInto(model, errorVariance, out);
+  displacementCovariancesInto(model, errorVariance, out, exposure);
   for (let lag = 0; lag < out.length; lag++) out[lag] *= weights[lag];
 }
 
@@ -77,6 +79,7 @@ export function describeDisplacementFit(
   model: DisplacementModel,
   errorVariance: number,
   errorKnown: boolean,
+  exposure: number,
 ): DisplacementFit {
   const { blocks, lags, pairs, totalPairs } = covariances;
   const sums = covariances.sums[axis];
@@ -87,7 +90,7 @@ export function describeDisplacementFit(
   const covariancesAt = (point: readonly number[]): Float64Array => {
     const out = new Float64Array(width);
     const changed = withParameters(names, point, model, errorVariance);
-    taperedInto(changed.model, changed.errorVariance, weights, out);
+    taperedInto(changed.model, changed.errorVariance, weights, out, exposure);
     return out;
   };
   const centre = covariancesAt(values);

@@ -2,10 +2,13 @@
  * Closed-form autocovariances of displacements per frame, c_j = Cov(Δy_k, Δy_{k+j}), for the four constant-coefficient
  * motions the survey tells apart. Times are counted in sampling intervals, so a friction here is friction × interval;
  * lengths are whatever the variances are in. Localization error of variance s² adds 2s² at lag 0 and −s² at lag 1.
+ * Positions are snapshots unless an exposure is given (`motionBlur`).
  *
  * Source  Uhlenbeck & Ornstein, On the theory of the Brownian motion, Phys. Rev. 36 (1930) 823 (velocity correlation
  *         exp(−Γτ); correlation of the bound particle); displacement covariances by integrating them over two frames.
  */
+
+import { blurredCovariancesInto } from './motionBlur.js';
 
 /** Free first-order motion: independent displacements. */
 export interface FreeFirstOrder {
@@ -47,12 +50,46 @@ export type DisplacementModel = FreeFirstOrder | TrappedFirstOrder | FreeSecondO
  *
  * @param errorVariance  s², length²
  * @param out  length L + 1
+ * @param exposure  fraction of the interval a position is averaged over, 0 to 1
  */
 export function displacementCovariancesInto(
   model: DisplacementModel,
   errorVariance: number,
   out: Float64Array,
+  exposure = 0,
 ): void {
+  if (exposure > 0) blurredCovariancesInto((time) => meanSquaredDisplacement(model, time), exposure, out);
+  else snapshotCovariancesInto(model, out);
+  out[0] += 2 * errorVariance;
+  if (out.length > 1) out[1] -= errorVariance;
+}
+
+/**
+ * Mean squared displacement over a time.
+ *
+ * @param time  in intervals, 0 or above
+ */
+export function meanSquaredDisplacement(model: DisplacementModel, time: number): number {
+  switch (model.kind) {
+    case 'first-free':
+      return 2 * model.diffusion * time;
+    case 'first-trapped':
+      return -2 * (model.diffusion / model.relaxation) * Math.expm1(-model.relaxation * time);
+    case 'second-free':
+      return (2 * model.velocityVariance * forgottenTime(model.friction * time)) / model.friction ** 2;
+    case 'second-trapped': {
+      const { velocityVariance, friction, stiffness } = model;
+      return 2 * (velocityVariance / stiffness) * (1 - oscillatorCorrelation(friction, stiffness, time));
+    }
+  }
+}
+
+/** x − 1 + e⁻ˣ; the series below 1e-3 is exact to 1e-13 where the difference would cancel. */
+function forgottenTime(x: number): number {
+  return x > 1e-3 ? x + Math.expm1(-x) : (x * x * (1 - (x / 3) * (1 - x / 4))) / 2;
+}
+
+function snapshotCovariancesInto(model: DisplacementModel, out: Float64Array): void {
   switch (model.kind) {
     case 'first-free':
       out.fill(0);
@@ -69,9 +106,7 @@ export function displacementCovariancesInto(
       const x = model.friction;
       const lost = -Math.expm1(-x);
       const scale = model.velocityVariance / (x * x);
-      // x − 1 + e⁻ˣ; the series below 1e-3 is exact to 1e-13 where the difference would cancel
-      const excess = x > 1e-3 ? x - lost : (x * x * (1 - (x / 3) * (1 - x / 4))) / 2;
-      out[0] = 2 * scale * excess;
+      out[0] = 2 * scale * forgottenTime(x);
       geometricTailInto(scale * lost * lost, 1 - lost, out);
       break;
     }
@@ -88,8 +123,6 @@ export function displacementCovariancesInto(
       break;
     }
   }
-  out[0] += 2 * errorVariance;
-  if (out.length > 1) out[1] -= errorVariance;
 }
 
 /** c_j = first · ratio^(j−1) for j ≥ 1. */

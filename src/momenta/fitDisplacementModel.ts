@@ -34,10 +34,12 @@ const HIGHEST_STIFFNESS = Math.log(9); // an undamped period of about two frames
 /**
  * Fits a model to one axis.
  *
- * At first order the error variance is what it is less DΔ/3 for an exposure of the whole frame, so it may come out
- * negative there, and stays free even where s² is known: motion blur must not pass for a remembered velocity.
+ * Where no exposure is given, the error variance of a first-order motion is what it is less DΔ/3 for an exposure of the
+ * whole frame, so it may come out negative there, and stays free even where s² is known: motion blur must not pass for a
+ * remembered velocity.
  *
  * @param givenErrorVariance  s² where it is known beforehand (length²); null to estimate it
+ * @param exposure  fraction of the interval a position is averaged over, 0 to 1
  * @returns null where the tracks carry no displacement variance at all
  */
 export function fitDisplacementModel(
@@ -45,10 +47,12 @@ export function fitDisplacementModel(
   axis: number,
   kind: ModelKind,
   givenErrorVariance: number | null = null,
+  exposure = 0,
 ): DisplacementFit | null {
   const isFirst = kind === 'first-free' || kind === 'first-trapped';
-  const knownErrorVariance = isFirst ? null : givenErrorVariance;
-  const lowestShare = isFirst ? BLURRED_SHARE : 0;
+  const mayBeBlurred = isFirst && exposure === 0;
+  const knownErrorVariance = mayBeBlurred ? null : givenErrorVariance;
+  const lowestShare = mayBeBlurred ? BLURRED_SHARE : 0;
   const { totalPairs } = covariances;
   const sampled = covariances.covariances[axis];
   const total = sampled[0];
@@ -63,14 +67,14 @@ export function fitDisplacementModel(
     if (knownErrorVariance !== null) {
       const processVariance = total * Math.exp(last);
       return {
-        ...unitModel(kind, point, processVariance),
+        ...unitModel(kind, point, processVariance, exposure),
         errorVariance: knownErrorVariance,
         profiled: false,
       };
     }
     const share = lowestShare + (1 - lowestShare) * Math.sin(last) ** 2;
     return {
-      ...unitModel(kind, point, total * (1 - share)),
+      ...unitModel(kind, point, total * (1 - share), exposure),
       errorVariance: (total * share) / 2,
       profiled: true,
     };
@@ -78,7 +82,7 @@ export function fitDisplacementModel(
   const deviance = (point: Float64Array): number => {
     if (!isInside(kind, point)) return Infinity;
     const { model, errorVariance, profiled } = build(point);
-    taperedInto(model, errorVariance, weights, work);
+    taperedInto(model, errorVariance, weights, work, exposure);
     const { variance, misfit } = measureMisfit(work, target);
     return Math.log(variance) + (profiled ? Math.log(misfit) + 1 : misfit);
   };
@@ -95,15 +99,28 @@ export function fitDisplacementModel(
     if (found.value < best.value) best = found;
   }
   const found = build(best.point);
-  taperedInto(found.model, found.errorVariance, weights, work);
+  taperedInto(found.model, found.errorVariance, weights, work, exposure);
   const scale = found.profiled ? measureMisfit(work, target).misfit : 1;
   const model = rescale(found.model, scale);
   const errorVariance = found.errorVariance * scale;
-  return describeDisplacementFit(covariances, axis, kind, model, errorVariance, knownErrorVariance !== null);
+  return describeDisplacementFit(
+    covariances,
+    axis,
+    kind,
+    model,
+    errorVariance,
+    knownErrorVariance !== null,
+    exposure,
+  );
 }
 
 /** A model whose displacement variance is `variance`. */
-function unitModel(kind: ModelKind, point: Float64Array, variance: number): { model: DisplacementModel } {
+function unitModel(
+  kind: ModelKind,
+  point: Float64Array,
+  variance: number,
+  exposure: number,
+): { model: DisplacementModel } {
   const one = new Float64Array(1);
   let model: DisplacementModel;
   switch (kind) {
@@ -120,7 +137,7 @@ function unitModel(kind: ModelKind, point: Float64Array, variance: number): { mo
       model = { kind, velocityVariance: 1, friction: Math.exp(point[0]), stiffness: Math.exp(point[1]) };
       break;
   }
-  displacementCovariancesInto(model, 0, one);
+  displacementCovariancesInto(model, 0, one, exposure);
   return { model: rescale(model, variance / one[0]) };
 }
 

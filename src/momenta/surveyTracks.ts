@@ -22,6 +22,8 @@ import { warnOfRecording } from './warnOfRecording.js';
 export interface SurveyOptions {
   /** Standard deviation of the localization error where it is known beforehand, length; default: estimated. */
   readonly localizationError?: number | 'auto';
+  /** Fraction of the interval a position is averaged over, 0 to 1; default 0. */
+  readonly exposure?: number;
 }
 
 const LEVEL = 0.95;
@@ -50,7 +52,7 @@ export function surveyTracks(tracks: TrackSet, options: SurveyOptions = {}): Sur
   const visited = describeVisited(tracks);
   const covariances = estimateDisplacementCovariances(tracks);
   const known = listKnownErrors(tracks, options.localizationError ?? 'auto');
-  const memory = estimateVelocityMemory(covariances, known.variances);
+  const memory = estimateVelocityMemory(covariances, known.variances, options.exposure ?? 0);
   const { logFriction: found } = memory;
   const logFriction = found !== null && found.value + found.error < Math.log(FORGOTTEN) ? found : null;
   const order = logFriction === null ? 'first' : 'second';

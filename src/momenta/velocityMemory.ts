@@ -33,10 +33,15 @@ const SMALLEST_GAIN = 3; // odds of e³ ≈ 20 to 1
 const SMALLEST_STANDARD_ERRORS = 2;
 const LARGEST_LOG_ERROR = 0.8; // a friction known to less than a factor of e^0.8 ≈ 2 is not resolved
 
-/** Lets the motions compete on every axis. */
+/**
+ * Lets the motions compete on every axis.
+ *
+ * @param exposure  fraction of the interval a position is averaged over, 0 to 1
+ */
 export function estimateVelocityMemory(
   covariances: DisplacementCovariances,
   knownErrorVariances: readonly (number | null)[],
+  exposure = 0,
 ): VelocityMemory {
   const first: (DisplacementFit | null)[] = [];
   const second: (DisplacementFit | null)[] = [];
@@ -45,8 +50,10 @@ export function estimateVelocityMemory(
   for (let axis = 0; axis < covariances.dimensions; axis++) {
     const known = knownErrorVariances[axis];
     const enough = covariances.lags >= 2; // three numbers are needed to tell memory from localization error
-    first.push(fitBest(covariances, axis, ['first-free', 'first-trapped'], known));
-    second.push(enough ? fitBest(covariances, axis, ['second-free', 'second-trapped'], known) : null);
+    first.push(fitBest(covariances, axis, ['first-free', 'first-trapped'], known, exposure));
+    second.push(
+      enough ? fitBest(covariances, axis, ['second-free', 'second-trapped'], known, exposure) : null,
+    );
     const a = first[axis];
     const b = second[axis];
     if (a === null || b === null) continue;
@@ -67,11 +74,12 @@ function fitBest(
   axis: number,
   kinds: readonly ModelKind[],
   known: number | null,
+  exposure: number,
 ): DisplacementFit | null {
   let best: DisplacementFit | null = null;
   let bestScore = -Infinity;
   for (const kind of kinds) {
-    const fit = fitDisplacementModel(covariances, axis, kind, known);
+    const fit = fitDisplacementModel(covariances, axis, kind, known, exposure);
     if (fit === null) continue;
     const score = fit.logLikelihood - PARAMETER_COST * fit.parameters.length;
     if (score > bestScore) {

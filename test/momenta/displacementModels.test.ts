@@ -85,6 +85,50 @@ describe('displacement covariances', () => {
     }
   });
 
+  it.each([0.3, 1])('of blurred diffusion are those of Berglund (exposure %s)', (exposure) => {
+    const out = new Float64Array(LAGS + 1);
+    displacementCovariancesInto({ kind: 'first-free', diffusion: 0.5 }, 0.2, out, exposure);
+    // Phys. Rev. E 82 (2010) 011917: c₀ = 2D(1 − 2R) + 2s², c₁ = 2DR − s² with R = exposure/6; nothing beyond
+    expect(out[0]).toBeCloseTo(1 - exposure / 3 + 0.4, 9);
+    expect(out[1]).toBeCloseTo(exposure / 6 - 0.2, 9);
+    for (const value of out.subarray(2)) expect(Math.abs(value)).toBeLessThan(1e-9);
+  });
+
+  it.each<DisplacementModel>([
+    { kind: 'first-trapped', diffusion: 0.7, relaxation: 0.4 },
+    { kind: 'second-free', velocityVariance: 2, friction: 0.3 },
+    { kind: 'second-trapped', velocityVariance: 2, friction: 0.6, stiffness: 0.5 },
+  ])('of blurred positions are the means over pairs of instants ($kind)', (model) => {
+    const exposure = 0.8;
+    const blurred = new Float64Array(LAGS + 1);
+    displacementCovariancesInto(model, 0, blurred, exposure);
+    // Snapshots over a fine interval 1/n: the covariance of positions averaged over the last m of n of them is a plain sum.
+    const n = 40;
+    const m = exposure * n;
+    const fine = new Float64Array((LAGS + 3) * n);
+    const shorter: DisplacementModel =
+      model.kind === 'first-trapped'
+        ? { ...model, diffusion: model.diffusion / n, relaxation: model.relaxation / n }
+        : model.kind === 'second-trapped'
+          ? { ...model, velocityVariance: 2 / n ** 2, friction: model.friction / n, stiffness: 0.5 / n ** 2 }
+          : { kind: 'second-free', velocityVariance: 2 / n ** 2, friction: 0.3 / n };
+    displacementCovariancesInto(shorter, 0, fine);
+    // weights of the fine displacements in the difference of two averages
+    const weights = Array.from({ length: n + m - 1 }, (_, i) =>
+      Math.min(1, (i + 1) / m, (n + m - 1 - i) / m),
+    );
+    for (const lag of [0, 1, 2, 5]) {
+      let sum = 0;
+      weights.forEach((a, i) => {
+        weights.forEach((b, j) => {
+          sum += a * b * fine[Math.abs(lag * n + j - i)];
+        });
+      });
+      // m instants spread over less than the exposure, by 1/(2m²) of it, and the blur is less than the whole.
+      expect(Math.abs(sum - blurred[lag])).toBeLessThan((1.5 * blurred[0]) / (2 * m * m));
+    }
+  });
+
   it('make second differences of the factors 2/3 and 1/6 where a velocity lasts long', () => {
     // Var D = 2c₀ − 2c₁ = (2/3) N, Cov(D_k, D_{k+1}) = 2c₁ − c₀ − c₂ = (1/6) N, next terms O(Γ) relative
     const friction = 1e-3;

@@ -2,12 +2,33 @@ import { describe, expect, it } from 'vitest';
 import { frictionPrecisionBound } from '../../src/momenta/precisionBound.js';
 import type { Survey } from '../../src/momenta/Survey.js';
 import { surveyTracks } from '../../src/momenta/surveyTracks.js';
+import type { TrackSet } from '../../src/tracks/TrackSet.js';
+import { randomStream } from '../../src/numerics/random/RandomStream.js';
 import { simulateFirstOrder, simulateSecondOrder } from '../support/exactProcesses.js';
 import { deviationOf, meanOf } from '../support/estimateStudy.js';
 import { makeTrack, makeTracks, movePositions } from '../support/makeTracks.js';
 
 const DESIGN = { tracks: 40, frames: 200 };
 const SEEDS = 15;
+
+/** Recordings at a tenth of the interval, to be averaged over an exposure. */
+const SUBFRAMES = 10;
+const FINE = { tracks: 40, frames: 200 * SUBFRAMES, interval: 1 / SUBFRAMES };
+
+/** One axis as a camera records it that is open for `open` of the ten subframes before each frame; with localization error. */
+function blur({ positions, trackOffsets }: TrackSet, open: number, error = 0, seed = 1): TrackSet {
+  const stream = randomStream(seed, 'localization', 0);
+  return makeTracks(
+    Array.from({ length: FINE.tracks }, (_, track) =>
+      makeTrack(
+        Array.from({ length: FINE.frames / SUBFRAMES }, (__, frame) => {
+          const end = trackOffsets[track] + (frame + 1) * SUBFRAMES;
+          return meanOf(Array.from(positions.subarray(end - open, end))) + error * stream.normal();
+        }),
+      ),
+    ),
+  );
+}
 
 const repeat = (survey: (seed: number) => Survey): Survey[] =>
   Array.from({ length: SEEDS }, (_, i) => survey(i + 1));
@@ -50,6 +71,34 @@ describe('the survey of a second-order motion', () => {
       expect(covered.length).toBeGreaterThanOrEqual(11); // of 15 at 95 %: fewer in one series out of 1600
       for (const survey of surveys.slice(0, 5)) expect(survey.trapped).toEqual([stiffness > 0]);
     });
+  });
+
+  it.each([
+    [10, 0],
+    [10, 0.2],
+    [5, 0.1],
+  ])('finds relaxation time and error under motion blur (%s of 10 subframes, error %s)', (open, error) => {
+    const friction = 0.3;
+    const recordings = Array.from({ length: SEEDS }, (_, i) =>
+      blur(simulateSecondOrder({ ...FINE, friction, seed: i + 1 }), open, error, i + 1),
+    );
+    // The mean of ten instants stands for an exposure of √(m² − 1)/10.
+    const exposure = Math.sqrt(open ** 2 - 1) / SUBFRAMES;
+    const surveys = recordings.map((tracks) => surveyTracks(tracks, { exposure }));
+    const logs = surveys.map((survey) => Math.log((survey.relaxationTime ?? NaN) * friction));
+    // Three standard errors, and a bias of second order in the scatter or 2 %.
+    const allowed = (3 * deviationOf(logs)) / Math.sqrt(SEEDS) + 0.02;
+    expect(Math.abs(meanOf(logs))).toBeLessThan(allowed);
+    const errors = surveys.map((survey) => survey.localizationError[0]);
+    // At zero the root of what is cut off at 0 leaves the fourth root of a standard error of some 1e-4 of its square.
+    expect(Math.abs(meanOf(errors) - error)).toBeLessThan(
+      error === 0 ? 0.1 : (4 * deviationOf(errors)) / Math.sqrt(SEEDS),
+    );
+    // Untold, blur is taken for a longer memory.
+    const untold = recordings.map((tracks) =>
+      Math.log((surveyTracks(tracks).relaxationTime ?? NaN) * friction),
+    );
+    if (open === SUBFRAMES) expect(meanOf(untold)).toBeGreaterThan(allowed);
   });
 
   it('measures velocity variance and thermal speed per axis', () => {
@@ -106,17 +155,24 @@ describe('the survey of a first-order motion', () => {
   });
 
   it('does not take motion blur for memory', () => {
-    const SUBFRAMES = 10;
     for (let seed = 1; seed <= 5; seed++) {
-      const fine = simulateFirstOrder({ tracks: 40, frames: 200 * SUBFRAMES, interval: 1 / SUBFRAMES, seed });
-      const places = Array.from({ length: 40 * 200 }, (_, k) =>
-        meanOf(Array.from(fine.positions.subarray(k * SUBFRAMES, (k + 1) * SUBFRAMES))),
-      );
-      const blurred = makeTracks(
-        Array.from({ length: 40 }, (_, track) => makeTrack(places.slice(200 * track, 200 * (track + 1)))),
-      );
+      const blurred = blur(simulateFirstOrder({ ...FINE, seed }), SUBFRAMES);
       expect(surveyTracks(blurred)).toMatchObject({ recommendedOrder: 'first', localizationError: [0] });
     }
+  });
+
+  it('finds diffusion and localization error under motion blur that it is told', () => {
+    const surveys = repeat((seed) => {
+      const fine = simulateFirstOrder({ ...FINE, diffusion: 0.5, seed });
+      return surveyTracks(blur(fine, SUBFRAMES, 0.3, seed), { exposure: 1 });
+    });
+    for (const { recommendedOrder } of surveys) expect(recommendedOrder).toBe('first');
+    const diffusions = surveys.map((survey) => survey.diffusion[0] ?? NaN);
+    expect(Math.abs(meanOf(diffusions) / 0.5 - 1)).toBeLessThan(
+      (3.5 * deviationOf(diffusions)) / 0.5 / Math.sqrt(SEEDS),
+    );
+    const errors = surveys.map((survey) => survey.localizationError[0] ** 2);
+    expect(Math.abs(meanOf(errors) - 0.09)).toBeLessThan((3.5 * deviationOf(errors)) / Math.sqrt(SEEDS));
   });
 
   it('recommends first order where velocities are all but gone after a frame', () => {

@@ -61,7 +61,10 @@ export async function runDemo({ operands, options, terminal }: Call): Promise<vo
   const paths = [relative(terminal.streams.cwd, tracksPath)];
 
   const recording = await readRecording(paths, study, terminal);
-  const survey = surveyTracks(recording.tracks, { localizationError: study.localizationError });
+  const survey = surveyTracks(recording.tracks, {
+    localizationError: study.localizationError,
+    exposure: study.exposure,
+  });
   await keep('survey.json', formatJson(survey));
   await say(`${formatSurveySummary({ ...survey, units: study.units }, terminal.summaryStyle)}\n`);
 

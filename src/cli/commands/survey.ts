@@ -24,7 +24,10 @@ export async function runSurvey({ operands, options, terminal }: Call): Promise<
     throw new UsageError('--fit smooths the momenta; say with --momenta where they go', { option: '--fit' });
   }
   const recording = await readRecording(operands, study, terminal);
-  const survey = surveyTracks(recording.tracks, { localizationError: study.localizationError });
+  const survey = surveyTracks(recording.tracks, {
+    localizationError: study.localizationError,
+    exposure: study.exposure,
+  });
   const warnings = [...recording.warnings, ...survey.warnings];
   for (const warning of warnings) terminal.warn(warning);
   if (momenta !== undefined) {
