@@ -19,6 +19,7 @@ import { type MapTasks, mapTasksSerially, type Task } from '../numerics/MapTasks
 import type { TrackSet } from '../tracks/TrackSet.js';
 import { visitedCentres } from '../tracks/visitedRegion.js';
 import { evaluateColumns, planColumns } from '../uncertainty/columns.js';
+import { measureDistance } from '../uncertainty/scales.js';
 import { measureSpread } from '../uncertainty/spread.js';
 import { createRefit } from './createRefit.js';
 import { createDesign, type Design, simulateDesign } from './simulateDesign.js';
@@ -176,10 +177,7 @@ function measureMove(
     let count = 0;
     for (let place = 0; place < spread.values.length; place++) {
       if (!(spread.deviations[place] > 0)) continue;
-      const change =
-        spread.scale === 'logarithmic'
-          ? Math.log(after[column][place] / before[column][place])
-          : after[column][place] - before[column][place];
+      const change = measureDistance(spread.scale, before[column][place], after[column][place]);
       squares += (change / spread.deviations[place]) ** 2;
       count++;
     }

@@ -9,9 +9,7 @@ import { createModelEvaluator } from '../fields/evaluateModel.js';
 import type { CoefficientField, Model } from '../fields/CoefficientField.js';
 import { withParameters } from '../fields/modelParameters.js';
 import { COORDINATE_NAMES } from '../tracks/TrackSet.js';
-
-/** How far apart two values of a column are measured: on the scale itself, or as a ratio (positive by construction). */
-export type ColumnScale = 'linear' | 'logarithmic';
+import type { ColumnScale } from './scales.js';
 
 export interface ColumnPlan {
   readonly name: string;
@@ -31,11 +29,12 @@ export function planColumns(model: Model): ColumnPlan[] {
     }));
   };
   if (model.order === 'first') return [...vector('drift'), ...matrix(model.diffusion, true)];
+  const ratioScale: ColumnScale = model.friction.link === 'log' ? 'logarithmic' : 'reciprocal';
   return [
     ...vector('force'),
     ...matrix(model.friction, false),
     ...matrix(model.noise, true),
-    ...axes.map((axis): ColumnPlan => ({ name: `temperature_${axis}${axis}`, scale: 'logarithmic' })),
+    ...axes.map((axis): ColumnPlan => ({ name: `temperature_${axis}${axis}`, scale: ratioScale })),
   ];
 }
 

@@ -4,6 +4,7 @@
 
 import type { FitResult } from '../documents/FitDocument.js';
 import { isVisited } from '../tracks/visitedRegion.js';
+import { valueAt } from './scales.js';
 import { measureSpread } from './spread.js';
 
 export interface EvaluatedColumn {
@@ -41,11 +42,7 @@ export function evaluateFit(
   const d = fit.model.dimensions;
   const columns = measureSpread(fit.model, replicates, places).map(({ name, scale, values, deviations }) => {
     const shifted = (widths: number) =>
-      values.map((value, place) =>
-        scale === 'logarithmic'
-          ? value * Math.exp(widths * deviations[place])
-          : value + widths * deviations[place],
-      );
+      values.map((value, place) => valueAt(scale, value, widths * deviations[place]));
     const band = simultaneous[name] ?? multiplier;
     return {
       name,

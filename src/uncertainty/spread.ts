@@ -7,9 +7,10 @@ import { quantileSorted } from '../numerics/statistics/quantile.js';
 import { normalQuantile } from '../numerics/special/normal.js';
 import { studentQuantile } from '../numerics/special/student.js';
 import type { Model } from '../fields/CoefficientField.js';
-import { evaluateColumns, evaluateReplicate, planColumns, type ColumnScale } from './columns.js';
+import { evaluateColumns, evaluateReplicate, planColumns } from './columns.js';
+import { type ColumnScale, measureDistance } from './scales.js';
 
-/** Estimate and spread of one column: on a logarithmic scale, `deviation` is that of the logarithm. */
+/** Estimate and spread of one column; deviations and distances are on the column's scale. */
 export interface ColumnSpread {
   readonly name: string;
   readonly scale: ColumnScale;
@@ -48,9 +49,7 @@ export function measureSpread(
           const noiseChange = columns[noise][place] / estimate[noise][place];
           return noiseChange - columns[friction][place] / estimate[friction][place];
         }
-        return scale === 'logarithmic'
-          ? Math.log(columns[column][place] / value)
-          : columns[column][place] - value;
+        return measureDistance(scale, value, columns[column][place]);
       }),
     );
     const deviations = values.map((_, place) => {

@@ -10,6 +10,7 @@ import { frictionPrecisionBound } from '../../src/momenta/precisionBound.js';
 import { describeVisited } from '../../src/tracks/visitedRegion.js';
 import type { TrackSet } from '../../src/tracks/TrackSet.js';
 import { drawReplicates } from '../../src/uncertainty/bootstrap.js';
+import { measureDistance } from '../../src/uncertainty/scales.js';
 import { measureSpread, pointwiseMultiplier } from '../../src/uncertainty/spread.js';
 import { simulateFirstOrder, simulateSecondOrder } from '../support/exactProcesses.js';
 import { simulateVaried } from '../support/variedProcess.js';
@@ -241,7 +242,7 @@ function repeatStudy(study: KnownStudy, studies: number): Map<string, Finding[]>
     for (const { name, scale, values, deviations } of spreads) {
       findings.get(name)?.forEach((finding, i) => {
         const truth = study.truth[name](study.places[i]);
-        const distance = scale === 'logarithmic' ? Math.log(values[i] / truth) : values[i] - truth;
+        const distance = measureDistance(scale, values[i], truth);
         if (Math.abs(distance) <= multiplier * deviations[i]) finding.covered++;
         finding.deviations.push(truth === 0 ? values[i] : values[i] / truth - 1);
       });

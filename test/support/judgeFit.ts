@@ -2,6 +2,7 @@
 
 import type { FitResult } from '../../src/documents/FitDocument.js';
 import { visitedCentres } from '../../src/tracks/visitedRegion.js';
+import { measureDistance } from '../../src/uncertainty/scales.js';
 import { measureSpread } from '../../src/uncertainty/spread.js';
 import { truthOf, type VariedCase } from './variedCases.js';
 
@@ -30,9 +31,10 @@ export function judgeFit(fit: FitResult, given: VariedCase): ColumnVerdict[] {
       const value = spread.values[i];
       size += isVector ? truth * truth : 1;
       squares += (isVector ? value - truth : value / truth - 1) ** 2;
-      const distance = Math.abs(spread.scale === 'logarithmic' ? Math.log(value / truth) : value - truth);
+      // Not a number where an estimate that should be positive is not: then neither holds.
+      const distance = Math.abs(measureDistance(spread.scale, value, truth));
       if (distance <= fit.uncertainty.multiplier * spread.deviations[i]) covered++;
-      if (distance > fit.uncertainty.simultaneous[spread.name] * spread.deviations[i]) held = false;
+      if (!(distance <= fit.uncertainty.simultaneous[spread.name] * spread.deviations[i])) held = false;
     }
     return { name: spread.name, error: Math.sqrt(squares / size), coverage: covered / m, held };
   });

@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { Estimate } from '../../src/estimation/Estimate.js';
 import { drawReplicates } from '../../src/uncertainty/bootstrap.js';
+import { measureDistance } from '../../src/uncertainty/scales.js';
 import { measureSpread, pointwiseMultiplier } from '../../src/uncertainty/spread.js';
 import { CONSTANT, estimateStudy } from '../support/estimateStudy.js';
 import { simulateFirstOrder, simulateSecondOrder } from '../support/exactProcesses.js';
@@ -90,8 +91,7 @@ describe('coverage', () => {
           replicates,
           Float64Array.of(0),
         )) {
-          const distance =
-            scale === 'logarithmic' ? Math.log(values[0] / truth[name]) : values[0] - truth[name];
+          const distance = measureDistance(scale, values[0], truth[name]);
           covered[name] = (covered[name] ?? 0) + (Math.abs(distance) <= multiplier * deviations[0] ? 1 : 0);
         }
       }

@@ -76,6 +76,11 @@ describe('columns', () => {
       temperature_xx: 'logarithmic',
     });
   });
+
+  it('of a friction that is estimated as it stands make temperatures that are spread as reciprocals', () => {
+    const scales = Object.fromEntries(planColumns(PLANE).map(({ name, scale }) => [name, scale]));
+    expect(scales).toMatchObject({ friction_xx: 'linear', temperature_xx: 'reciprocal' });
+  });
 });
 
 describe('multipliers', () => {
@@ -152,9 +157,9 @@ describe('a fit at places', () => {
     expect(friction.high[0] - 0.5).toBeCloseTo(1.96 * deviation, 12);
     expect(0.5 - friction.low[0]).toBeCloseTo(1.96 * deviation, 12);
     // relative scatter of a ratio of two independent values of 5 % each: 7.1 %, from 400 draws to 1/√800 = 3.5 %
-    const ratio = Math.log(temperature.high[0] / 3) / 1.96;
+    const ratio = (1 - 3 / temperature.high[0]) / 1.96;
     expect(Math.abs(ratio / (0.05 * Math.SQRT2) - 1)).toBeLessThan(4 * 0.035);
-    expect(temperature.high[0] * temperature.low[0]).toBeCloseTo(9, 10);
+    expect(1 / temperature.high[0] + 1 / temperature.low[0]).toBeCloseTo(2 / 3, 10);
   });
 
   it('says where the tracks have been', () => {
