@@ -209,13 +209,13 @@ export function collectDiffusionMoments(
  *
  * @param products  with the responses (Δ/2) Σ_{|j|≤1} e_k e_{k+j} of the row
  * @param neighbours  length d: e_k e_{k+1} per axis, length²/time²
- * @param driftRowOf  regressors of the drift along an axis
+ * @param driftRowOf  regressors of the drift along an axis, at the row or one row ahead; ask for the axes in order, from 0 on
  */
 export type DiffusionVisitor = (
   row: number,
   products: ResidualProducts,
   neighbours: Float64Array,
-  driftRowOf: (axis: number) => SparseRow,
+  driftRowOf: (axis: number, ahead?: number) => SparseRow,
 ) => void;
 
 /**
@@ -268,7 +268,10 @@ export function visitDiffusionRows(
       products.fill(residuals, row - start);
       for (let axis = 0; axis < dimensions; axis++)
         neighbours[axis] = residuals[at + axis] * residuals[at + axis + dimensions];
-      visit(row, products, neighbours, (axis) => driftRowOf(row, axis));
+      visit(row, products, neighbours, (axis, ahead = 0) => {
+        if (ahead > 0 && axis === 0) recent.evaluate(positions, row + ahead, dimensions);
+        return driftRowOf(row + ahead, axis);
+      });
       rows++;
     }
   }

@@ -22,6 +22,8 @@ export class ResidualProducts {
    */
   readonly slopes: Float64Array;
   readonly #windows: Float64Array;
+  #residuals: Float64Array = new Float64Array(0);
+  #row = 0;
 
   /**
    * @param form  of the noise: scalar, axes or matrix
@@ -31,7 +33,7 @@ export class ResidualProducts {
   constructor(
     form: string,
     private readonly dimensions: number,
-    private readonly reach: number,
+    readonly reach: number,
     private readonly scale: number,
   ) {
     this.pairs = noisePairs(form, dimensions);
@@ -45,23 +47,76 @@ export class ResidualProducts {
    * @param row  with `reach` residuals before and after it
    */
   fill(residuals: Float64Array, row: number): void {
-    const { dimensions: d, reach, responses, slopes } = this;
+    this.#residuals = residuals;
+    this.#row = row;
+    const { dimensions: d, reach, slopes } = this;
     const windows = this.#windows;
-    const at = row * d;
     for (let axis = 0; axis < d; axis++) {
       windows[axis] = 0;
-      for (let j = -reach; j <= reach; j++) windows[axis] += residuals[at + axis + j * d];
+      for (let j = -reach; j <= reach; j++) windows[axis] += residuals[(row + j) * d + axis];
     }
+    this.#multiply();
     slopes.fill(0);
     this.pairs.forEach((pairs, component) => {
       const share = this.scale / pairs.length;
-      let response = 0;
       for (const [a, b] of pairs) {
-        response += (residuals[at + a] * windows[b] + residuals[at + b] * windows[a]) / 2;
         slopes[component * d + a] += share * windows[b];
         slopes[component * d + b] += share * windows[a];
       }
-      responses[component] = share * response;
+    });
+  }
+
+  /**
+   * Replaces, in the responses, the residuals before the row by those after it: the sum over a run is the same but for
+   * its ends. For a regression on the place of the row this is the better arrangement: given that place, residuals
+   * after it have mean zero, those before it do not (who has come to a far place has moved outwards), and products of
+   * them with the localization error of the place would lower the noise wherever the density falls. The slopes are to
+   * be asked for by `fillSlopesAhead`.
+   */
+  lookAhead(): void {
+    const { dimensions: d, reach } = this;
+    const residuals = this.#residuals;
+    const at = this.#row * d;
+    for (let axis = 0; axis < d; axis++) {
+      let sum = residuals[at + axis];
+      for (let j = 1; j <= reach; j++) sum += 2 * residuals[at + axis + j * d];
+      this.#windows[axis] = sum;
+    }
+    this.#multiply();
+  }
+
+  /**
+   * Derivative of the responses after `lookAhead` with respect to a shift of the residuals some rows ahead, in `slopes`.
+   *
+   * @param ahead  0 … reach
+   */
+  fillSlopesAhead(ahead: number): void {
+    const { dimensions: d, slopes } = this;
+    const residuals = this.#residuals;
+    const windows = this.#windows;
+    const at = this.#row * d;
+    const slopeOf = (other: number): number =>
+      ahead === 0 ? (windows[other] + residuals[at + other]) / 2 : residuals[at + other];
+    slopes.fill(0);
+    this.pairs.forEach((pairs, component) => {
+      const share = this.scale / pairs.length;
+      for (const [a, b] of pairs) {
+        slopes[component * d + a] += share * slopeOf(b);
+        slopes[component * d + b] += share * slopeOf(a);
+      }
+    });
+  }
+
+  /** Responses from the residual of the row and the windows. */
+  #multiply(): void {
+    const windows = this.#windows;
+    const residuals = this.#residuals;
+    const at = this.#row * this.dimensions;
+    this.pairs.forEach((pairs, component) => {
+      let response = 0;
+      for (const [a, b] of pairs)
+        response += (residuals[at + a] * windows[b] + residuals[at + b] * windows[a]) / 2;
+      this.responses[component] = (this.scale / pairs.length) * response;
     });
   }
 }

@@ -333,12 +333,13 @@ export function collectNoiseMoments(
  * What is done with one row of the noise regression.
  *
  * @param products  with the responses Δ Σ_{|j|≤2} e_k e_{k+j} of the row
- * @param regressorsOf  regressors of the force–friction regression along an axis; ask for the axes in order, from 0 on
+ * @param regressorsOf  regressors of the force–friction regression along an axis, at the row or up to two rows ahead; ask
+ *   for the axes in order, from 0 on
  */
 export type NoiseVisitor = (
   row: number,
   products: ResidualProducts,
-  regressorsOf: (axis: number) => SparseRow,
+  regressorsOf: (axis: number, ahead?: number) => SparseRow,
 ) => void;
 
 /**
@@ -365,7 +366,7 @@ export function visitNoiseRows(
     run.fill(start, end);
     for (let row = start + 3; row < end - 3; row++) {
       products.fill(run.residuals, row - start);
-      visit(row, products, (axis) => run.rowOf(row, axis, axis === 0));
+      visit(row, products, (axis, ahead = 0) => run.rowOf(row + ahead, axis, axis === 0));
     }
   }
 }

@@ -20,10 +20,10 @@ import {
   type NoiseRows,
   secondOrderRows,
 } from './noiseMoments.js';
-import { type PlugInData, referenceBandwidth, startBandwidth } from './plugInStart.js';
+import { createNoiseWindows } from './noiseWindows.js';
+import { type PlugInData, startBandwidth } from './plugInStart.js';
 import { reportEffects } from './reportEffects.js';
 import { solveFields } from './solveFields.js';
-import { createWindows } from './windows.js';
 
 export interface NoiseEstimate {
   /** Per component: K values, or one where the field does not vary. */
@@ -52,24 +52,20 @@ export function estimateNoise(
   const { dimensions: d } = tracks;
   const { count: blocks } = plan.blocks;
   const second = plan.order === 'second';
-  const components = noisePairs(plan.noise.form, d).length;
+  const pairs = noisePairs(plan.noise.form, d);
+  const components = pairs.length;
   const field = noiseField(second ? 'noise' : 'diffusion', plan.noise.basis?.kind === 'spline', components);
   const first = second ? null : firstOrderRows(tracks, plan, driftBasis(plan, d), motion.parameters);
   const rows: NoiseRows =
     first?.rows ?? secondOrderRows(tracks, plan.noise.form, layOutSecondOrder(plan, d), motion.parameters);
   const p1 = motion.parameters.length;
   const { moments, sensitivity } = collectNoiseMoments(tracks, plan, grid, rows, p1, Math.min(PARTS, blocks));
-  const windows = createWindows(grid, moments.counts, referenceBandwidth(grid, moments.counts));
   const start = field.varies ? startBandwidth(grid, moments, plugInData(tracks, rows)) : [];
+  const diagonal = pairs.flatMap(([[a, b]], component) => (a === b ? [component] : []));
+  const { windows, moments: weighted } = createNoiseWindows(moments, field, diagonal, grid, start);
+  const residualsOfFolds = moments.folds.map((fold) => fold.vector);
   const bandwidth = field.varies
-    ? chooseBandwidth(
-        moments,
-        field,
-        moments.folds.map((fold) => fold.vector),
-        grid,
-        windows,
-        start,
-      )
+    ? chooseBandwidth(weighted, field, residualsOfFolds, grid, windows, start)
     : [];
   const smoothers = [createFieldSmoother(moments, field, grid, windows, bandwidth)];
   const [values] = solveFields(moments, smoothers, moments.total.vector).values;

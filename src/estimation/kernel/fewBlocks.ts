@@ -14,7 +14,7 @@
 
 import { studentQuantile } from '../../numerics/special/student.js';
 import type { BinnedMoments } from './BinnedMoments.js';
-import { createFieldSmoother } from './fieldSmoother.js';
+import { createFieldSmoother, type FieldSmoother } from './fieldSmoother.js';
 import type { KernelGrid } from './grid.js';
 import type { LocalField } from './localFields.js';
 import { ROUGH_TOLERANCE, solveFields } from './solveFields.js';
@@ -32,10 +32,12 @@ export interface BlockShares {
   readonly freedom: Float64Array;
   /** Length K: ratio of Student's quantiles. */
   readonly widening: Float64Array;
+  /** Length K: standard deviation of the estimate for uncorrelated rows of unit variance. */
+  readonly designDeviations: Float64Array;
 }
 
 /**
- * Leverages of the blocks for one field.
+ * What the blocks say for one field.
  *
  * @param bandwidth  per axis, length; null for a global average
  * @param blockCounts  per block, length K: rows that each knot stands for
@@ -68,7 +70,22 @@ export function measureShares(
     freedom[knot] = Math.max(LEAST_FREEDOM, 1 / squares - 1);
     widening[knot] = Math.max(1, studentQuantile(TAIL, freedom[knot]) / usual);
   }
-  return { leverageFactors, freedom, widening };
+  return { leverageFactors, freedom, widening, designDeviations: measureDesign(moments, smoother) };
+}
+
+/** Standard deviation per knot for rows of unit variance: root of Σ counts · weights², weights from unit moments. */
+function measureDesign(moments: BinnedMoments, smoother: FieldSmoother): Float64Array {
+  const { size, counts } = moments;
+  const variances = new Float64Array(size);
+  const unit = new Float64Array(size);
+  for (let bin = 0; bin < size; bin++) {
+    if (counts[bin] === 0) continue;
+    unit[bin] = 1;
+    const [weights] = solveFields(moments, [smoother], unit).values;
+    unit[bin] = 0;
+    for (let knot = 0; knot < size; knot++) variances[knot] += counts[bin] * weights[knot] ** 2;
+  }
+  return variances.map(Math.sqrt);
 }
 
 /** A plain regression with as many rows at each knot. */

@@ -3,8 +3,10 @@
  * smooth over space.
  *
  * A standard deviation read from the blocks in one window is itself uncertain, and for products of residuals it is small
- * just where the estimate happens to be small, so that intervals miss upwards too often. Its logarithm is smoothed as a
- * line over windows twice as wide, each knot weighing as much as it has degrees of freedom, and effects are scaled to it.
+ * just where the estimate happens to be small, so that intervals miss upwards too often. What the design makes of it, its
+ * rise towards the edge above all, is known: the standard deviation for uncorrelated rows of equal variance. The
+ * logarithm of the ratio to that, which varies slowly, is smoothed as a line over windows twice as wide, each knot
+ * weighing as much as it has degrees of freedom, and effects are scaled to it.
  *
  * Source  smoothing of variances in local regression: Ruppert, Wand, Holst & Hössjer, Local polynomial variance-function
  *         estimation, Technometrics 39 (1997) 262.
@@ -69,7 +71,7 @@ function steadyScales(
   effects: Float64Array,
   p: number,
   offset: number,
-  { freedom }: BlockShares,
+  { freedom, designDeviations }: BlockShares,
   grid: KernelGrid,
   windows: KnotWindows,
   bandwidth: readonly number[],
@@ -79,7 +81,8 @@ function steadyScales(
   for (let knot = 0; knot < size; knot++) {
     let sum = 0;
     for (let at = offset + knot; at < effects.length; at += p) sum += effects[at] ** 2;
-    logarithms[knot] = Math.log(sum + Number.MIN_VALUE) / 2;
+    logarithms[knot] =
+      Math.log(sum + Number.MIN_VALUE) / 2 - Math.log(designDeviations[knot] + Number.MIN_VALUE);
   }
   const weights = new Float64Array(size);
   for (const knot of windows.visited) weights[knot] = freedom[knot];

@@ -4,7 +4,7 @@
  *
  * Smoothing flattens peaks and fills valleys. What it takes away from a coefficient, it takes away again when the estimate
  * itself is smoothed; so the part of the moments that the smoothed field fails to explain is smoothed once more and added,
- * twice over. That leaves a bias of sixth order in the bandwidth instead of second, at the price of more scatter, which the
+ * three times over. That leaves a bias of eighth order in the bandwidth instead of second, at the price of more scatter, which the
  * intervals contain because the correction is linear in the data like everything else.
  *
  * Source  backfitting: Buja, Hastie & Tibshirani, Linear smoothers and additive models, Ann. Statist. 17 (1989) 453;
@@ -23,8 +23,11 @@ export interface FieldValues {
   readonly converged: boolean;
 }
 
-/** With one, intervals still miss the top of a bump a few bandwidths wide; with three, they cover it. */
-const CORRECTIONS = 2;
+/**
+ * With one, intervals still miss the top of a bump a few bandwidths wide. Three leave a bias of eighth order: cross-validation
+ * picks a window twice too wide now and then, and the intervals have to cover the truth then too.
+ */
+const CORRECTIONS = 3;
 
 const ROUNDS = 60;
 const TOLERANCE = 1e-6; // far below the scatter of any estimate

@@ -1,6 +1,6 @@
 /**
  * How wide the kernel's window is at each knot: one bandwidth per axis for the whole field, wider where data are
- * scarce and a little narrower where they are plenty.
+ * scarce or scatter much, and a little narrower where they are plenty.
  */
 
 import { type KernelGrid, separateKnots, stepsBetween } from './grid.js';
@@ -8,8 +8,8 @@ import { type KernelGrid, separateKnots, stepsBetween } from './grid.js';
 export interface KnotWindows {
   /** Knots with enough data around them to be estimated. */
   readonly visited: Int32Array;
-  /** Length K: how many rows each knot stands for. */
-  readonly counts: Float64Array;
+  /** Length K: rows that each knot stands for, over their variance where that is smaller than usual. */
+  readonly information: Float64Array;
   /** Length K: factor on the bandwidth, 1 at a place of typical density. */
   readonly factors: Float64Array;
   /** Per knot: the nearest visited ones (several where they are equally near); itself where visited. */
@@ -19,15 +19,16 @@ export interface KnotWindows {
 const SCARCE = 0.01; // of the mean count of occupied knots: below, a knot is continued from its neighbours
 const WIDEST = 4;
 const NARROWEST = 0.7;
-/** Of the rows a window usually holds: with fewer, instruments and velocities of a few tracks decide the estimate. */
+/** Of the information a window usually holds: with less, instruments and velocities of a few tracks decide the estimate. */
 const LEAST_SHARE = 0.3;
 const WIDENING = 1.15;
 
 /**
- * Windows for the density of the data. The optimal bandwidth falls with the density f as f^{−1/(4+d)}.
+ * Windows for the density f of the data and the variance σ² of a row: the optimal bandwidth goes as (σ²/f)^{1/(4+d)}.
  *
  * @param counts  length K: how many rows each knot stands for
  * @param scales  length d: smoothing width of the density, length
+ * @param variances  length K, relative; default: the same everywhere
  *
  * Source  the optimal local bandwidth of local linear regression: Fan & Gijbels (1996), eq. 3.20.
  */
@@ -35,6 +36,7 @@ export function createWindows(
   grid: KernelGrid,
   counts: Float64Array,
   scales: readonly number[],
+  variances?: Float64Array,
 ): KnotWindows {
   const { size, dimensions: d } = grid;
   const rows = counts.reduce((sum, count) => sum + count, 0);
@@ -43,7 +45,8 @@ export function createWindows(
   const visited = Int32Array.from(
     Array.from({ length: size }, (_, knot) => knot).filter((knot) => counts[knot] > least),
   );
-  const density = smoothCounts(grid, counts, scales);
+  const overVariance = (value: number, knot: number): number => (variances ? value / variances[knot] : value);
+  const density = smoothCounts(grid, counts, scales).map(overVariance);
   let logarithm = 0;
   for (let knot = 0; knot < size; knot++)
     if (counts[knot] > 0) logarithm += (counts[knot] / rows) * Math.log(density[knot]);
@@ -55,12 +58,14 @@ export function createWindows(
   const sources = Array.from({ length: size }, (_, knot) =>
     isVisited[knot] === 1 ? [knot] : findNearest(grid, knot, visited),
   );
-  return { counts, visited, factors, sources };
+  // Rows that scatter much have widened the factor already; few rows are enough where each is precise.
+  const information = counts.map((value, knot) => Math.max(value, overVariance(value, knot)));
+  return { information, visited, factors, sources };
 }
 
 /**
  * Standard deviations of the normal kernel per knot and axis, shape (K, d), for one bandwidth per axis. Windows that
- * would hold less than a share of what is usual are widened until they hold it, or reach their limit.
+ * would hold less than a share of the usual information are widened until they hold it, or reach their limit.
  */
 export function spreadBandwidth(
   windows: KnotWindows,
@@ -68,7 +73,7 @@ export function spreadBandwidth(
   grid: KernelGrid,
 ): Float64Array {
   const { size, dimensions: d, periods } = grid;
-  const { counts, factors, visited } = windows;
+  const { information, factors, visited } = windows;
   const widths = new Float64Array(size * d);
   const contents = new Float64Array(size);
   const widen = (knot: number, factor: number): void => {
@@ -77,16 +82,16 @@ export function spreadBandwidth(
       // On a period the window must not close on itself: the line would meet its own other end.
       widths[knot * d + axis] = periods[axis] > 0 ? Math.min(wide, WIDEST_ON_PERIOD * periods[axis]) : wide;
     }
-    contents[knot] = weighCounts(grid, counts, knot, widths.subarray(knot * d, (knot + 1) * d));
+    contents[knot] = weighCounts(grid, information, knot, widths.subarray(knot * d, (knot + 1) * d));
   };
   let usual = 0;
-  let rows = 0;
+  let all = 0;
   for (const knot of visited) {
     widen(knot, factors[knot]);
-    usual += counts[knot] * contents[knot];
-    rows += counts[knot];
+    usual += information[knot] * contents[knot];
+    all += information[knot];
   }
-  const least = LEAST_SHARE * (usual / rows);
+  const least = LEAST_SHARE * (usual / all);
   for (const knot of visited) {
     for (let factor = factors[knot]; contents[knot] < least && factor < WIDEST; ) {
       factor = Math.min(WIDEST, factor * WIDENING);

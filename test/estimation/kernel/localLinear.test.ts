@@ -160,7 +160,7 @@ describe('local linear regression on bins', () => {
     );
   });
 
-  it('damps a wave on a circle as theory says, and the correction takes that back to third order', () => {
+  it('damps a wave on a circle as theory says, and the correction takes that back to fourth order', () => {
     const grid = unitGrid([1], 64 * 25);
     const wave = (t: number): number => Math.cos(2 * Math.PI * t);
     const rows = Array.from({ length: 64 }, (_, i): Row => {
@@ -178,7 +178,7 @@ describe('local linear regression on bins', () => {
     const [corrected] = solveFields(moments, [smoother], moments.total.vector).values;
     for (let i = 0; i < 64; i++) {
       expect(Math.abs(once[i] - damping * wave(i / 64))).toBeLessThan(2e-4);
-      expect(Math.abs(corrected[i] - (1 - (1 - damping) ** 3) * wave(i / 64))).toBeLessThan(2e-4);
+      expect(Math.abs(corrected[i] - (1 - (1 - damping) ** 4) * wave(i / 64))).toBeLessThan(2e-4);
     }
   });
 
