@@ -50,14 +50,26 @@ export async function readDocument(path: string, kind: string, shown: string): P
     throw new UsageError(`${kind} ${shown} cannot be read: ${explainSystemError(error)}`, { path, kind });
   }
   try {
-    const value = JSON.parse(new TextDecoder('utf-8', { fatal: true }).decode(bytes)) as unknown;
+    const text = new TextDecoder('utf-8', { fatal: true }).decode(bytes);
+    const value = JSON.parse(text) as unknown;
+    if (/__proto__|\\u/.test(text)) refusePrototypes(value, kind, shown);
     if (typeof value === 'object' && value !== null && !Array.isArray(value))
       Reflect.deleteProperty(value, '$schema');
     return value;
   } catch (error) {
+    if (error instanceof UsageError) throw error;
     const reason = error instanceof SyntaxError ? firstSentence(error.message) : 'it is not text';
     throw new UsageError(`${shown} is not a ${kind}: it does not hold JSON (${reason})`, { path, kind });
   }
+}
+
+/** `__proto__` names no field of any document; readers of JSON differ in what they make of it. */
+function refusePrototypes(value: unknown, kind: string, shown: string): void {
+  if (typeof value !== 'object' || value === null) return;
+  if (Object.hasOwn(value, '__proto__')) {
+    throw new UsageError(`${shown}: "__proto__" is not a key of a ${kind}; remove it`, { kind });
+  }
+  for (const part of Object.values(value)) refusePrototypes(part, kind, shown);
 }
 
 function firstSentence(message: string): string {

@@ -88,7 +88,7 @@ export function lengthOrAutoValue(text: string, option: string): number | 'auto'
 
 /** `role=name,role=name`; a comma inside a name is kept unless a known role and `=` follow it. */
 export function columnsValue(text: string, option: string): Record<string, string> {
-  const columns: Record<string, string> = {};
+  const columns = Object.create(null) as Record<string, string>; // any name may be typed
   const boundary = new RegExp(`,(?=\\s*(?:${COLUMN_ROLES.join('|')})\\s*=)`);
   for (const pair of text.split(boundary)) {
     const at = pair.indexOf('=');
@@ -103,7 +103,7 @@ export function columnsValue(text: string, option: string): Record<string, strin
         },
       );
     }
-    if (role in columns) {
+    if (Object.hasOwn(columns, role)) {
       throw new UsageError(`${option} gives the role ${role} twice; keep one of them`, {
         option,
         value: text,
@@ -112,7 +112,7 @@ export function columnsValue(text: string, option: string): Record<string, strin
     columns[role] = name;
   }
   checkColumnMapping(columns);
-  return columns;
+  return { ...columns };
 }
 
 /** `LENGTH,TIME`: two labels. */
@@ -129,7 +129,7 @@ export function unitsValue(text: string, option: string): { length: string; time
 
 /** `g0=1,a=0.1`: values of named parameters. */
 export function parametersValue(text: string, option: string): Record<string, number> {
-  const values: Record<string, number> = {};
+  const values = Object.create(null) as Record<string, number>; // any name may be typed
   for (const pair of text.split(',')) {
     const [name, value = '', ...rest] = pair.split('=').map((part) => part.trim());
     if (name === '' || value === '' || rest.length > 0 || !Number.isFinite(Number(value))) {
@@ -143,7 +143,7 @@ export function parametersValue(text: string, option: string): Record<string, nu
     }
     values[name] = Number(value);
   }
-  return values;
+  return { ...values };
 }
 
 /** `4,3`: one period per axis, 0 = open. */

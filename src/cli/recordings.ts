@@ -1,7 +1,7 @@
 /** Reading recordings: track files hashed while they stream into the importer. */
 
 import { createHash, type Hash } from 'node:crypto';
-import { existsSync, statSync } from 'node:fs';
+import { statSync } from 'node:fs';
 import { basename, dirname, join, resolve } from 'node:path';
 import type { FitDocument } from '../documents/FitDocument.js';
 import type { Study } from '../documents/Study.js';
@@ -172,7 +172,16 @@ function listPlaces(source: Source, fitPath: string, terminal: Terminal): string
     if (directory === dirname(directory)) break;
   }
   places.push(join(dirname(fitPath), basename(source.path)));
-  return [...new Set(places)].filter((place) => existsSync(place));
+  return [...new Set(places)].filter(isRegularFile);
+}
+
+/** A path in a fit file leads to files only: a device would be read without end. */
+function isRegularFile(path: string): boolean {
+  try {
+    return statSync(path).isFile();
+  } catch {
+    return false; // not there, or no path at all
+  }
 }
 
 async function findSource(source: Source, places: readonly string[], terminal: Terminal): Promise<string> {
