@@ -33,6 +33,9 @@ export function sayStatement(test: ReportedTest): string {
     const field = tameText(test.field ?? 'the coefficient', 30).replace('_', ' along ');
     return `${field[0]?.toUpperCase() ?? ''}${field.slice(1)} follows the law ${tameText(test.law, 100)}`;
   }
+  // At first order the noise is that of the position.
+  const ofDiffusion = Object.keys(test.parameters).some((name) => name.startsWith('diffusion'));
+  if (test.hypothesis === 'uniform-noise' && ofDiffusion) return 'The diffusion is the same everywhere';
   return lookUp(STATEMENTS, test.hypothesis);
 }
 
@@ -55,7 +58,7 @@ export function sayTests(tests: readonly ReportedTest[]): string {
     return rejected === 1 ? 'The statement is rejected.' : 'Nothing speaks against the statement.';
   if (rejected === 0) return `Nothing speaks against any of the ${tests.length} statements.`;
   return rejected === tests.length
-    ? `All ${tests.length} statements are rejected.`
+    ? `${tests.length === 2 ? 'Both' : `All ${tests.length}`} statements are rejected.`
     : `Of ${tests.length} statements ${rejected} ${rejected === 1 ? 'is' : 'are'} rejected.`;
 }
 

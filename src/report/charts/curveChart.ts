@@ -65,6 +65,9 @@ function gatherRows(curve: Curve, xFactor: number, yFactor: number): Row[] {
   return rows;
 }
 
+/** Height of the picture over that of the wide band, where the course is flat. */
+const ROOM_AROUND_BAND = 2.5;
+
 /**
  * The vertical range: the values and pointwise intervals of visited places, except that intervals may not stretch
  * it beyond twice what the values and the typical interval need (a band may leave the picture at a poor end).
@@ -84,6 +87,13 @@ export function chooseRange(curve: Curve): [number, number] {
   if (high <= low) {
     const room = Math.abs(high) || 1;
     [low, high] = [low - room, high + room];
+  }
+  // A course that is flat against its band gets room around it: a picture filled by its band shows neither.
+  const bands = shown.map((row) => row.bandHigh - row.bandLow).filter(Number.isFinite);
+  bands.sort((a, b) => a - b);
+  const lacking = ROOM_AROUND_BAND * (bands[Math.floor(bands.length / 2)] ?? 0) - (high - low);
+  if (values.high - values.low < (bands[0] ?? 0) && lacking > 0) {
+    [low, high] = [low - lacking / 2, high + lacking / 2];
   }
   // Zero is worth seeing where it is near.
   if (low > 0 && low < 0.5 * high) low = 0;

@@ -80,6 +80,12 @@ export function tabulatePlaces(context: PageContext, places: Float64Array): Figu
   }));
 }
 
+/** A note as a sentence: a capital letter in front, a full stop behind, and numbers with a minus sign. */
+export function saySentence(text: string): string {
+  const signed = text.replace(/(^|[\s(=])-(?=\d)/g, '$1−');
+  return capitalize(/[.!?…]$/.test(signed) || signed === '' ? signed : `${signed}.`);
+}
+
 export const capitalize = (text: string): string => `${text[0]?.toUpperCase() ?? ''}${text.slice(1)}`;
 
 export interface Evaluated {

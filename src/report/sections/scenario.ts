@@ -13,7 +13,7 @@ import {
   tameUnits,
 } from '../format.js';
 import { type Html, html, tameText } from '../html.js';
-import type { PageContext, Section } from './Section.js';
+import { capitalize, type PageContext, saySentence, type Section } from './Section.js';
 import { writeList } from './settingList.js';
 import { writeWarnings } from './warnings.js';
 
@@ -97,10 +97,10 @@ function drawStanding(scenario: Scenario): Html | null {
           relaxation.time === null
             ? 'How fast it settles was not resolved.'
             : `Its slowest relaxation takes ${joinUnit(formatInterval(relaxation.time, relaxation.low, relaxation.high ?? Number.NaN), 'time', units)}.`
-        } ${tameText(relaxation.note, 400)}</p>`;
+        } ${saySentence(tameText(relaxation.note, 400))}</p>`;
   return html`<h3>Standing conditions</h3>${verdict}<ul class="findings">${standing.conditions.map(
     (condition) =>
-      html`<li class="${VERDICTS[condition.verdict]}"><span class="outcome">${condition.verdict}</span><div><p><strong>${tameText(condition.title, 200)}.</strong> ${tameText(condition.note, 600)}</p></div></li>`,
+      html`<li class="${VERDICTS[condition.verdict]}"><span class="outcome">${condition.verdict}</span><div><p><strong>${capitalize(tameText(condition.title, 200))}.</strong> ${saySentence(tameText(condition.note, 600))}</p></div></li>`,
   )}</ul>${pace}`;
 }
 

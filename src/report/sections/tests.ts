@@ -4,7 +4,7 @@ import { formatInterval, formatNumber, formatWithError } from '../format.js';
 import { type Html, html, tameText } from '../html.js';
 import type { ReportedTest } from '../ReportInput.js';
 import { sayAssumption, sayChallenges, sayP, sayStatement, sayTests } from '../statements.js';
-import type { PageContext, Section } from './Section.js';
+import { type PageContext, saySentence, type Section } from './Section.js';
 
 interface Finding {
   readonly tone: 'good' | 'bad' | 'strong' | 'open';
@@ -19,7 +19,7 @@ interface Finding {
 function drawFindings(findings: readonly Finding[]): Html {
   return html`<ul class="findings">${findings.map(
     ({ tone, verdict, statement, figures, note, more }) =>
-      html`<li class="${tone}"><span class="outcome">${verdict}</span><div><p><strong>${statement}.</strong> ${tameText(note, 600)}</p>${more}</div><span class="figures">${figures}</span></li>`,
+      html`<li class="${tone}"><span class="outcome">${verdict}</span><div><p><strong>${statement}.</strong> ${saySentence(tameText(note, 600))}</p>${more}</div><span class="figures">${figures}</span></li>`,
   )}</ul>`;
 }
 
