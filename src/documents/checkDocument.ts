@@ -61,7 +61,9 @@ function describeIssue(issue: z.core.$ZodIssue, schema: z.ZodType, place: Docume
       return describeIssue({ ...deepest, path: [...issue.path, ...deepest.path] }, schema, place);
     }
   }
-  const message = issue.message.replace(/^Invalid input: /, '').replace(/^Invalid option: /, '');
+  const message = issue.message
+    .replace(/^Invalid input: expected (.+), received undefined$/, 'is missing; give it as $1')
+    .replace(/^Invalid (input|option): /, '');
   return at === '' ? message : `${at}: ${message}`;
 }
 

@@ -119,7 +119,12 @@ export function writeNode(node: SyntaxNode, writer: Writer): string {
 
 function writeNumber(value: unknown, text: string): string {
   if (typeof value !== 'number')
-    return refuse(text, `holds ${JSON.stringify(value)}`, 'use numbers and names only', 1);
+    return refuse(
+      text,
+      value === undefined ? 'is empty' : `holds ${JSON.stringify(value)}`,
+      'use numbers and names only',
+      1,
+    );
   if (!Number.isFinite(value))
     return refuse(text, `holds a number that is not finite (${value})`, 'use finite numbers', 1);
   return value < 0 ? `(${value})` : String(value);
