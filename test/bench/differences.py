@@ -8,6 +8,7 @@ once, needs tracks without gaps in row order, and takes the smoothing strengths 
 """
 
 import json
+import resource
 import sys
 import time
 
@@ -204,6 +205,7 @@ def main():
                 "resampling": round(end - regressed, 2),
                 "total": round(end - start, 2),
                 "positions": len(table),
+                "peak": resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024,
                 "localizationError": np.sqrt(np.maximum(variance, 0)).tolist(),
                 "friction": [float(friction[centre].mean()), float(friction[centre].std())],
                 "noise_": [float(noises[centre].mean()), float(noises[centre].std())],
