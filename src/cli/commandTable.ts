@@ -30,7 +30,10 @@ export interface CommandSpec {
   readonly load: () => Promise<RunCommand>;
 }
 
-const TRACKS = ['<tracks...>', 'track tables (CSV, TSV, gzipped, or Parquet); - reads standard input'] as const;
+const TRACKS = [
+  '<tracks...>',
+  'track tables (CSV, TSV, gzipped, or Parquet); - reads standard input',
+] as const;
 const FIT = ['<fit>', 'fit file'] as const;
 
 /** Shipped data sets, the default one first. */

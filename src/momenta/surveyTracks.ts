@@ -4,6 +4,7 @@
  */
 
 import { fitStraightLine } from '../numerics/linear/plainRegression.js';
+import type { ReportShare } from '../numerics/ReportShare.js';
 import { countPositions, type TrackSet } from '../tracks/TrackSet.js';
 import { describeVisited, measureVisitedShare } from '../tracks/visitedRegion.js';
 import { estimateCommonDrift } from './commonDrift.js';
@@ -24,6 +25,8 @@ export interface SurveyOptions {
   readonly localizationError?: number | 'auto';
   /** Fraction of the interval a position is averaged over, 0 to 1; default 0. */
   readonly exposure?: number;
+  /** Is told how much is done. */
+  readonly onProgress?: ReportShare;
 }
 
 const LEVEL = 0.95;
@@ -48,9 +51,12 @@ const FORGOTTEN = 3;
  */
 export function surveyTracks(tracks: TrackSet, options: SurveyOptions = {}): Survey {
   const { dimensions, samplingInterval: interval } = tracks;
+  const tell = options.onProgress ?? (() => {});
   const recording = describeRecording(tracks);
   const visited = describeVisited(tracks);
+  tell(0.2);
   const covariances = estimateDisplacementCovariances(tracks);
+  tell(0.4);
   const known = listKnownErrors(tracks, options.localizationError ?? 'auto');
   const memory = estimateVelocityMemory(covariances, known.variances, options.exposure ?? 0);
   const { logFriction: found } = memory;
@@ -58,9 +64,12 @@ export function surveyTracks(tracks: TrackSet, options: SurveyOptions = {}): Sur
   const order = logFriction === null ? 'first' : 'second';
   const fits = order === 'second' ? memory.second : memory.first;
   const frictionTimesInterval = logFriction === null ? null : Math.exp(logFriction.value);
+  tell(0.5);
   const drift = estimateCommonDrift(tracks, covariances);
+  tell(0.7);
   const axes = fits.map((fit, axis) => describeAxis(fit, known.variances[axis], interval));
   const visits = countVisits(tracks, visited);
+  tell(0.8);
   const survey: Omit<Survey, 'warnings'> = {
     ...recording,
     dimensions,
@@ -114,6 +123,7 @@ export function surveyTracks(tracks: TrackSet, options: SurveyOptions = {}): Sur
     commonDriftStandardErrors: drift.standardErrors,
     commonDriftChance: drift.chance,
   };
+  tell(1);
   return { ...survey, warnings: warnOfRecording(survey) };
 }
 

@@ -63,7 +63,7 @@ async function writeTemplate(
 ): Promise<void> {
   if (writeStudy === undefined || options.output !== undefined) {
     throw new UsageError(
-      'fit needs track tables (CSV or TSV, also gzipped); wanderlaw fit --help explains it',
+      'fit needs track tables (CSV, TSV, gzipped, or Parquet); wanderlaw fit --help explains it',
     );
   }
   await writeWhole(terminal.resolve(writeStudy), formatJson(study), writeStudy);

@@ -24,10 +24,13 @@ export async function runSurvey({ operands, options, terminal }: Call): Promise<
     throw new UsageError('--fit smooths the momenta; say with --momenta where they go', { option: '--fit' });
   }
   const recording = await readRecording(operands, study, terminal);
+  const progress = await terminal.startProgress('surveying');
   const survey = surveyTracks(recording.tracks, {
     localizationError: study.localizationError,
     exposure: study.exposure,
+    onProgress: (share) => progress.update(share, 1),
   });
+  progress.stop();
   const warnings = [...recording.warnings, ...survey.warnings];
   for (const warning of warnings) terminal.warn(warning);
   if (momenta !== undefined) {
