@@ -1,6 +1,7 @@
 /**
  * All fields of a regression together, each with its own bandwidth: every field in turn is smoothed from what the others
- * leave of the moments, until none changes any more.
+ * leave of the moments, until none changes any more. Smoothers with instruments are not symmetric, and the plain iteration
+ * may run away; it is accelerated in a way that also finds fixed points that repel (`FixedPointAccelerator`).
  *
  * Smoothing flattens peaks and fills valleys. What it takes away from a coefficient, it takes away again when the estimate
  * itself is smoothed; so the part of the moments that the smoothed field fails to explain is smoothed once more and added,
@@ -15,6 +16,7 @@
 
 import { type BinnedMoments, subtractExplained } from './BinnedMoments.js';
 import { type FieldSmoother, smooth } from './fieldSmoother.js';
+import { FixedPointAccelerator } from './FixedPointAccelerator.js';
 import { addCoefficients, gatherMoments, instrumentsOf, type LocalField } from './localFields.js';
 
 export interface FieldValues {
@@ -30,7 +32,7 @@ export interface FieldValues {
 const CORRECTIONS = 3;
 
 const ROUNDS = 60;
-const TOLERANCE = 1e-6; // far below the scatter of any estimate
+const TOLERANCE = 1e-9; // far below the scatter of any estimate, and below what the localization variance settles to
 
 /** Enough for the effect of a block, of which only the size over all blocks matters. */
 export const ROUGH_TOLERANCE = 1e-3;
@@ -52,19 +54,24 @@ export function solveFields(
     (field) => new Float64Array(field.components.length * moments.size),
   );
   const others = <T>(items: readonly T[], index: number): T[] => items.filter((_, i) => i !== index);
-  let converged = fields.length < 2;
-  for (let round = 0; round < (converged ? 1 : ROUNDS); round++) {
-    let change = 0;
+  /** Smooths every field in turn from what the others leave, in place. */
+  const sweep = (): void =>
     smoothers.forEach((smoother, index) => {
       const left = explainAway(moments, others(fields, index), others(values, index), vector, fields[index]);
-      const next = smoothAndCorrect(moments, smoother, left);
-      change = Math.max(change, relativeChange(next, values[index]));
-      values[index] = next;
+      values[index] = smoothAndCorrect(moments, smoother, left);
     });
-    if (fields.length > 1 && change <= tolerance) {
-      converged = true;
-      break;
-    }
+  if (fields.length < 2) {
+    sweep();
+    return { values, converged: true };
+  }
+  const accelerator = new FixedPointAccelerator();
+  let converged = false;
+  for (let round = 0; round < ROUNDS && !converged; round++) {
+    const before = values.map((value) => value.slice());
+    sweep();
+    const change = Math.max(...values.map((value, index) => relativeChange(value, before[index])));
+    converged = change <= tolerance;
+    if (!converged) accelerator.advance(before, values);
   }
   return { values, converged };
 }
