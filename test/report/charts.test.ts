@@ -112,6 +112,14 @@ describe('a curve', () => {
     expect(low).toBeLessThan(-3e-8);
   });
 
+  test('keeps room around its band where its course is flat', () => {
+    const all = (value: number) => curve.x.map(() => value);
+    const flat = { ...curve, value: all(412), low: all(401), high: all(423) };
+    const [low, high] = chooseRange({ ...flat, bandLow: all(397), bandHigh: all(427) });
+    expect(high - low).toBeGreaterThan(2 * (427 - 397));
+    expect((low + high) / 2).toBeCloseTo(412, 6);
+  });
+
   test('is drawn alike every time', () => {
     expect(draw().svg.replace(/clip-\d+/g, '')).toBe(draw().svg.replace(/clip-\d+/g, ''));
   });
