@@ -68,6 +68,8 @@ export class RowCollector implements TableConsumer {
   #mark = POINT;
   #markLine = 0;
   #numberPlaces: readonly number[] = [];
+  /** Where each cell of a row ends in its text. */
+  #cellEnds = new Int32Array(0);
   readonly #tracksOfFile = new Map<string, number>();
   #previousName: string | null = null;
   #previousTrack = -1;
@@ -90,6 +92,7 @@ export class RowCollector implements TableConsumer {
     const columns = findColumns(cells, this.#mapping, this.#file, line);
     this.#checkAgreement(columns, line);
     this.#columns = columns;
+    this.#cellEnds = new Int32Array(columns.names.length);
     this.#headerLine = line;
     this.#mark = dialect.decimalCommas ? 0 : POINT;
     this.#markLine = 0;
@@ -138,6 +141,57 @@ export class RowCollector implements TableConsumer {
     this.#trackOfRow.push(this.#findTrack(name, columns, cells, line));
     this.#lines.push(line);
     this.#numbers.length = start + width;
+  }
+
+  readPlainRow(text: string, start: number, end: number, delimiter: number, line: number): void {
+    if (!this.#readUsualRow(text, start, end, delimiter, line)) {
+      const cells = text.slice(start, end).split(String.fromCharCode(delimiter));
+      if (cells.length > 1 || cells[0].trim() !== '') this.readRow(cells, line);
+    }
+  }
+
+  /**
+   * Takes a row that is like almost all others: as many cells as the header, plain numbers, the track of the row before.
+   *
+   * @returns false, with nothing taken, where the row is not like that
+   */
+  #readUsualRow(text: string, start: number, end: number, delimiter: number, line: number): boolean {
+    const columns = this.#columns;
+    const track = this.#previousTrack;
+    const name = this.#previousName;
+    if (columns === null || name === null || columns.type !== -1) return false;
+    const ends = this.#cellEnds;
+    let count = 0;
+    for (let place = start; place < end; place++) {
+      if (text.charCodeAt(place) !== delimiter) continue;
+      if (count === ends.length) return false;
+      ends[count++] = place;
+    }
+    if (count !== ends.length - 1) return false;
+    ends[count] = end;
+    if (columns.track !== -1) {
+      const from = columns.track === 0 ? start : ends[columns.track - 1] + 1;
+      if (ends[columns.track] - from !== name.length || !text.startsWith(name, from)) return false;
+    }
+    const places = this.#numberPlaces;
+    const firstError = 1 + columns.coordinates.length;
+    const lastError = firstError + (columns.errors?.length ?? 0);
+    this.#numbers.reserve(places.length);
+    const { values, length: at } = this.#numbers;
+    for (let i = 0; i < places.length; i++) {
+      const from = places[i] === 0 ? start : ends[places[i] - 1] + 1;
+      const value = parsePlainNumber(text, this.#mark, from, ends[places[i]]);
+      if (value - value !== 0) return false; // NaN or infinite
+      if (value < 0 && i >= firstError && i < lastError) return false;
+      values[at + i] = value;
+    }
+    if (columns.countsFrames && !Number.isInteger(values[at])) return false;
+    this.rowCount++;
+    this.#rowsOfFile++;
+    this.#trackOfRow.push(track);
+    this.#lines.push(line);
+    this.#numbers.length = at + places.length;
+    return true;
   }
 
   /** @throws DataError  the file has a header but no rows */

@@ -13,23 +13,24 @@ const BLOCK = 9; // decimal digits that fit a 32-bit integer
  * remainder (divideRounded). Everything else is left to `Number`.
  *
  * @param mark  character code of the decimal mark, or 0 where a mark is not to be accepted
+ * @param start  where in the text the number begins (included)
+ * @param end  where it ends (excluded)
  * @returns the correctly rounded value; NaN for anything else (then ask classifyCell)
  *
  * Source   Clinger, How to read floating point numbers accurately, PLDI (1990), section 3.
  */
-export function parsePlainNumber(cell: string, mark: number): number {
-  const length = cell.length;
-  let place = 0;
-  let code = length > 0 ? cell.charCodeAt(0) : 0;
+export function parsePlainNumber(text: string, mark: number, start = 0, end = text.length): number {
+  let place = start;
+  let code = end > start ? text.charCodeAt(start) : 0;
   const negative = code === 45;
-  if (negative || code === 43) place = 1;
+  if (negative || code === 43) place++;
   let first = 0; // the first nine significant digits
   let second = 0; // the next nine
   let digits = 0; // significant ones
   let markPlace = -1;
   let digitSeen = false;
-  for (; place < length; place++) {
-    code = cell.charCodeAt(place);
+  for (; place < end; place++) {
+    code = text.charCodeAt(place);
     const digit = code - 48;
     if (digit >= 0 && digit <= 9) {
       digitSeen = true;
@@ -44,14 +45,14 @@ export function parsePlainNumber(cell: string, mark: number): number {
   }
   if (!digitSeen) return NaN;
   let exponent = markPlace === -1 ? 0 : markPlace + 1 - place;
-  if (place < length) {
-    const given = parseExponent(cell, place);
+  if (place < end) {
+    const given = parseExponent(text, place, end);
     if (given !== given) return NaN;
     exponent += given;
   }
   let size: number;
   if (exponent < -22 || exponent > 22 || digits > 2 * BLOCK) {
-    return Number(mark === 44 ? cell.replace(',', '.') : cell);
+    return readByLibrary(text.slice(start, end), mark);
   }
   const shift = digits > BLOCK ? POWERS_OF_TEN[digits - BLOCK] : 1;
   if (digits <= 15) {
@@ -59,22 +60,26 @@ export function parsePlainNumber(cell: string, mark: number): number {
     size = exponent < 0 ? mantissa / POWERS_OF_TEN[-exponent] : mantissa * POWERS_OF_TEN[exponent];
   } else {
     size = exponent <= 0 ? divideRounded(first, shift, second, POWERS_OF_TEN[-exponent]) : NaN;
-    if (size !== size) return Number(mark === 44 ? cell.replace(',', '.') : cell);
+    if (size !== size) return readByLibrary(text.slice(start, end), mark);
   }
   return negative ? -size : size;
 }
 
+function readByLibrary(cell: string, mark: number): number {
+  return Number(mark === 44 ? cell.replace(',', '.') : cell);
+}
+
 /** The power of ten behind `e` or `E` at the given place; NaN where there is anything else. */
-function parseExponent(cell: string, place: number): number {
-  let code = cell.charCodeAt(place);
+function parseExponent(text: string, place: number, end: number): number {
+  let code = text.charCodeAt(place);
   if (code !== 69 && code !== 101) return NaN;
-  code = cell.charCodeAt(++place);
+  code = ++place < end ? text.charCodeAt(place) : 0;
   const negative = code === 45;
   if (negative || code === 43) place++;
-  if (place >= cell.length) return NaN;
+  if (place >= end) return NaN;
   let exponent = 0;
-  for (; place < cell.length; place++) {
-    code = cell.charCodeAt(place);
+  for (; place < end; place++) {
+    code = text.charCodeAt(place);
     if (code < 48 || code > 57) return NaN;
     exponent = Math.min(exponent * 10 + (code - 48), 100_000); // far beyond any double, safe from overflow
   }

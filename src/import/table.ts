@@ -12,6 +12,11 @@ export interface TableConsumer {
   readHeader(cells: readonly string[], line: number, dialect: Dialect): void;
   /** Called for every row behind the header that is not an empty line; the number of cells is as found. */
   readRow(cells: readonly string[], line: number): void;
+  /**
+   * The same for a row that holds no quotes, without cutting it up: the row stands in the text from `start` to `end`.
+   * Consumers that have no use for it leave it out.
+   */
+  readPlainRow?(text: string, start: number, end: number, delimiter: number, line: number): void;
 }
 
 interface ParsedPiece {
@@ -107,6 +112,11 @@ class TableParser {
       }
       this.#parser = new Papa.Parser({ delimiter: this.#dialect.delimiter, newline: '\n' });
     }
+    if (this.#headerRead && this.#consumer.readPlainRow !== undefined && !lines.includes('"')) {
+      this.#readPlainRows(lines);
+      this.#rest = '';
+      return;
+    }
     const piece = this.#parser.parse(lines, 0, !last) as ParsedPiece;
     this.#readRows(piece, holdsBrokenCells(lines, piece), last);
     this.#rest = last ? '' : lines.slice(piece.meta.cursor);
@@ -114,6 +124,17 @@ class TableParser {
       this.#rest,
       'a quote is opened here and not closed within a million characters; close or remove it',
     );
+  }
+
+  /** Whole lines without a quote are rows as they stand. */
+  #readPlainRows(lines: string): void {
+    const delimiter = this.#dialect?.delimiter.charCodeAt(0) ?? 0;
+    for (let start = 0; start < lines.length; this.#line++) {
+      let end = lines.indexOf('\n', start);
+      if (end === -1) end = lines.length;
+      if (end > start) this.#consumer.readPlainRow?.(lines, start, end, delimiter, this.#line);
+      start = end + 1;
+    }
   }
 
   #readRows(piece: ParsedPiece, broken: boolean, last: boolean): void {
