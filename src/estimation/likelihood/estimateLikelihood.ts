@@ -4,13 +4,13 @@
  * positive by construction; roughness penalties are chosen by marginal likelihood.
  */
 
-import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
 import type { Warning } from '../../errors.js';
 import { withParameters } from '../../fields/modelParameters.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import { describeVisited } from '../../tracks/visitedRegion.js';
 import { LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan } from '../Estimate.js';
+import { blockEffects } from './blockEffects.js';
 import { expectInformation } from './expectedInformation.js';
 import { createFirstOrderPass } from './firstOrderPass.js';
 import { gatherPlaces } from './gatherPlaces.js';
@@ -20,10 +20,11 @@ import { type FieldSlot, layOutLikelihood, type LikelihoodLayout, orderByPlace }
 import { createAxisInformation } from './localInformation.js';
 import { withLogLinks } from './positiveLinks.js';
 import type { PassSetting, PathPass } from './PathPass.js';
-import { type Pull, type RankedPenalty, type ScoringSolution, solveScores } from './scoring.js';
+import { type Pull, type ScoringSolution, solveScores } from './scoring.js';
 import { measureFlow } from './measureFlow.js';
 import { measureMotion } from './measureMotion.js';
 import { createSecondOrderPass } from './secondOrderPass.js';
+import { decomposePenalty, factorOfSmoothing, type SpectralPenalty } from './smoothingFactor.js';
 import { findStart } from './startValues.js';
 
 const FLOOR = 1e-7; // smallest localization error variance, relative to the mean squared displacement per step
@@ -81,7 +82,7 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
   return {
     model: withParameters(model, parameters.subarray(0, layout.modelSize)),
     parameters,
-    influences: blockInfluences(solution, plan.blocks.count),
+    influences: blockEffects(tracks, layout, setting, solution),
     smoothingFactor: factorOfSmoothing(solution, groups),
     toModelParameters: (raw) => raw.slice(0, layout.modelSize),
     localizationError: describeErrors(tracks, plan, layout, solution, floors),
@@ -180,75 +181,27 @@ function holdAtFloor(
   }
 }
 
-function listPenalties(layout: LikelihoodLayout, plan: EstimationPlan): RankedPenalty[] {
-  const groups: RankedPenalty[] = [];
+function listPenalties(layout: LikelihoodLayout, plan: EstimationPlan): SpectralPenalty[] {
+  const groups: SpectralPenalty[] = [];
   const push = (slot: FieldSlot | null, smoothing: EstimationPlan['force']['smoothing']): void => {
     if (!slot || slot.basis < 0) return;
     const roughness = layout.bases[slot.basis].roughness();
     if (!roughness) return;
     const k = slot.functionCount;
-    const { realEigenvalues } = decompose(roughness, k);
-    const largest = Math.max(...realEigenvalues);
+    const spectrum = decomposePenalty(roughness, k);
     groups.push({
       offsets: Array.from({ length: slot.components }, (_, component) => slot.offset + component * k),
       roughness,
       functionCount: k,
       fixedStrength: smoothing === 'light' ? LIGHT_SMOOTHING : undefined,
-      rank: realEigenvalues.filter((value) => value > 1e-9 * largest).length,
+      rank: spectrum.values.length,
+      spectrum,
     });
   };
   push(layout.force, plan.force.smoothing);
   push(layout.friction, plan.friction.smoothing);
   push(layout.noise, plan.noise.smoothing);
   return groups;
-}
-
-function decompose(flat: Float64Array, k: number): EigenvalueDecomposition {
-  return new EigenvalueDecomposition(Matrix.from1DArray(k, k, flat), { assumeSymmetric: true });
-}
-
-/** One-step effect of every block, (I + S)⁻¹ s_b; shape (B, p). */
-function blockInfluences({ scores, inverse, parameters }: ScoringSolution, blocks: number): Float64Array {
-  const p = parameters.length;
-  return Float64Array.from(
-    Matrix.from1DArray(blocks, p, scores)
-      .mmul(Matrix.from1DArray(p, p, inverse))
-      .to1DArray(),
-  );
-}
-
-/** Smoothing bias as a random effect, (I + S)⁻¹ S^{1/2}; see `penalizedMoments` for the source. */
-function factorOfSmoothing(
-  { inverse, strengths, parameters }: ScoringSolution,
-  groups: readonly RankedPenalty[],
-): Estimate['smoothingFactor'] {
-  const p = parameters.length;
-  const columns: Float64Array[] = [];
-  groups.forEach(({ offsets, functionCount: k, roughness, fixedStrength }, g) => {
-    if (fixedStrength !== undefined) return; // no bias is accounted for
-    const { realEigenvalues, eigenvectorMatrix } = decompose(roughness, k);
-    const largest = Math.max(...realEigenvalues);
-    for (const offset of offsets) {
-      for (let e = 0; e < k; e++) {
-        if (realEigenvalues[e] <= 1e-9 * largest) continue;
-        const size = Math.sqrt(strengths[g] * realEigenvalues[e]);
-        const vector = eigenvectorMatrix.getColumn(e);
-        columns.push(
-          Float64Array.from({ length: p }, (_, i) => {
-            let sum = 0;
-            for (let j = 0; j < k; j++) sum += inverse[i * p + offset + j] * vector[j];
-            return size * sum;
-          }),
-        );
-      }
-    }
-  });
-  if (columns.length === 0) return null;
-  const values = new Float64Array(p * columns.length);
-  columns.forEach((column, c) => {
-    for (let i = 0; i < p; i++) values[i * columns.length + c] = column[i];
-  });
-  return { values, columns: columns.length };
 }
 
 function describeErrors(

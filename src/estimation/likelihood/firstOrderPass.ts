@@ -1,7 +1,7 @@
 /**
  * The likelihood pass at first order, axis by axis: a Kalman filter of the position, with drift, its slope and diffusion
- * read where the filter is before each step, and its adjoint for the score. Reading them there and not halfway keeps the
- * Itô reading, and the innovations a martingale difference.
+ * read around where the filter is before each step, and its adjoint for the score. Reading them there and not halfway
+ * keeps the Itô reading, and the innovations a martingale difference.
  *
  * Over a step of length h, with drift μ − κ(q − m) about the filter's mean m, the transition is that of an
  * Ornstein–Uhlenbeck position. The first position of a track starts the filter and is not counted.
@@ -10,8 +10,10 @@
  */
 
 import { countTracks, type TrackSet } from '../../tracks/TrackSet.js';
+import { createStepAverage, type StepAverage } from './averageOverStep.js';
 import { readErrorVariances } from './errorVariances.js';
 import type { LikelihoodLayout } from './layout.js';
+import { createMatrixField } from './matrixFields.js';
 import { measureCells } from './measureCells.js';
 import type { PassSetting, PathObserver, PathPass } from './PathPass.js';
 import { type CoefficientReader, createReader, readCoefficients } from './readCoefficients.js';
@@ -39,6 +41,10 @@ export function createFirstOrderPass(
     adjointMean: new Float64Array(d),
     adjointVariance: new Float64Array(d),
     errorVariance: new Float64Array(d),
+    average: createStepAverage(layout, createMatrixField(layout.noise, d).read),
+    spreads: new Float64Array(d),
+    drift: new Float64Array(d),
+    diffusion: new Float64Array(d * d),
   };
   return {
     run(parameters, scores, observer) {
@@ -68,6 +74,11 @@ interface PassState extends CoefficientReader {
   readonly adjointMean: Float64Array;
   readonly adjointVariance: Float64Array;
   readonly errorVariance: Float64Array;
+  /** Null where the coefficients do not bend. */
+  readonly average: StepAverage | null;
+  readonly spreads: Float64Array;
+  readonly drift: Float64Array;
+  readonly diffusion: Float64Array;
 }
 
 function filterTrack(
@@ -109,6 +120,7 @@ function filterTrack(
         readCoefficients(state, parameters, node);
       }
       tape.step[node] = h;
+      if (state.average) averageNode(state, state.average, parameters, node, h);
       for (let axis = 0; axis < d; axis++) {
         const at = node * d + axis;
         const x = tape.slope[at] * h;
@@ -141,6 +153,29 @@ function filterTrack(
   }
   tape.firstNode[end - start] = node;
   return logLikelihood;
+}
+
+/** Takes drift and diffusion of a node for their means over the step. */
+function averageNode(
+  state: PassState,
+  average: StepAverage,
+  parameters: Float64Array,
+  node: number,
+  h: number,
+): void {
+  const { tape, variance, spreads, drift, diffusion } = state;
+  const d = variance.length;
+  const at = node * d;
+  for (let axis = 0; axis < d; axis++) {
+    spreads[axis] = Math.sqrt(variance[axis] + tape.noise[at + axis] * h);
+    drift[axis] = tape.force[at + axis];
+    diffusion[axis * d + axis] = tape.noise[at + axis];
+  }
+  average.apply(state, parameters, spreads, drift, diffusion);
+  for (let axis = 0; axis < d; axis++) {
+    tape.force[at + axis] = drift[axis];
+    tape.noise[at + axis] = diffusion[axis * d + axis];
+  }
 }
 
 /** (1 − e⁻ˣ)/x. */

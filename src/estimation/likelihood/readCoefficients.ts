@@ -88,6 +88,28 @@ export function sumComponents(
   );
 }
 
+/** Writes force and weighted sums of the noise's components at `place` moved along an axis. */
+export function probe(
+  { layout, place, derivativeIndices, derivativeValues }: CoefficientReader,
+  parameters: Float64Array,
+  axis: number,
+  shift: number,
+  force: Float64Array,
+  noiseSums: Float64Array,
+): void {
+  const centre = place[axis];
+  place[axis] = centre + shift;
+  const shared = layout.force.basis === layout.noise.basis;
+  let count = layout.bases[layout.noise.basis].evaluateInto(place, 0, derivativeIndices, derivativeValues);
+  weighComponents(parameters, layout.noise, derivativeIndices, derivativeValues, 0, count, noiseSums);
+  if (layout.force.basis >= 0) {
+    if (!shared)
+      count = layout.bases[layout.force.basis].evaluateInto(place, 0, derivativeIndices, derivativeValues);
+    weighComponents(parameters, layout.force, derivativeIndices, derivativeValues, 0, count, force);
+  }
+  place[axis] = centre;
+}
+
 /** Writes the derivatives of the weighted sums along an axis, at `place`. */
 export function sumSlopes(
   { layout, place, derivativeIndices, derivativeValues }: CoefficientReader,

@@ -5,7 +5,7 @@ import type { PathObserver } from '../PathPass.js';
 import { LONGEST_PATH, measureSteepness } from '../secondOrderFilter.js';
 import { growTape } from '../tape.js';
 import { growState, type JointGroup, type JointState } from './jointState.js';
-import { readNode, writeSystem } from './jointSystem.js';
+import { averageNode, readNode, writeSystem } from './jointSystem.js';
 
 const MOST_SUBSTEPS = 256;
 const SHUT = 1e-9; // of an interval: the shutter opens at once
@@ -100,6 +100,7 @@ function advance(
       substeps = countSubsteps(tape, node, state.cellWidths, duration);
       step = duration / substeps;
     }
+    if (!second) averageNode(state, parameters, node, step);
     tape.step[node] = step;
     state.windows[node] = window;
     state.opens[node] = sub === 0 && window > 0 ? 1 : 0;

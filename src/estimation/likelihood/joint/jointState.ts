@@ -6,11 +6,12 @@
 
 import type { TrackSet } from '../../../tracks/TrackSet.js';
 import type { LikelihoodLayout } from '../layout.js';
+import { createStepAverage, type StepAverage } from '../averageOverStep.js';
 import { measureCells } from '../measureCells.js';
 import { measureMotion } from '../measureMotion.js';
 import type { PassSetting } from '../PathPass.js';
 import { type CoefficientReader, createReader } from '../readCoefficients.js';
-import { createMatrixField, type MatrixField } from './matrixFields.js';
+import { createMatrixField, type MatrixField } from '../matrixFields.js';
 import {
   createMomentFlow,
   createSlopes,
@@ -57,6 +58,9 @@ export interface JointState extends CoefficientReader {
   readonly diffuseVelocity: Float64Array;
   /** Length d: first position of the track. */
   readonly origin: Float64Array;
+  /** First order: means over a step; null where the coefficients do not bend, and at second order. */
+  readonly average: StepAverage | null;
+  readonly spreads: Float64Array;
   /** Exposure, time. */
   readonly exposure: number;
   /** Per node: friction, noise and minus the slopes of the force, shape (d, d) each; force less slopes × centre. */
@@ -105,6 +109,8 @@ export function createJointState(
     diffusePlace: steps.map((value) => DIFFUSE * value),
     diffuseVelocity: velocities.map((value) => DIFFUSE * value),
     origin: new Float64Array(d),
+    average: second ? null : createStepAverage(layout, createMatrixField(layout.noise, d).read),
+    spreads: new Float64Array(d),
     exposure: exposure * tracks.samplingInterval,
     nodeFrictions: empty,
     nodeNoises: empty,

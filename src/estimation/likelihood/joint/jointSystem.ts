@@ -43,6 +43,24 @@ export function readNode(state: JointState, parameters: Float64Array, node: numb
   }
 }
 
+/** First order: takes drift and diffusion of a node for their means over the step. */
+export function averageNode(state: JointState, parameters: Float64Array, node: number, step: number): void {
+  const { average, layout, groups, spreads, matrix, forceSlopes: drift } = state;
+  if (!average) return;
+  const d = layout.dimensions;
+  for (const { axes, size, covariance } of groups) {
+    axes.forEach((axis, i) => {
+      spreads[axis] = Math.sqrt(covariance[i * size + i] + state.tape.noise[node * d + axis] * step);
+    });
+  }
+  for (let i = 0; i < d * d; i++) matrix[i] = state.nodeNoises[node * d * d + i];
+  for (let axis = 0; axis < d; axis++) drift[axis] = state.tape.force[node * d + axis];
+  average.apply(state, parameters, spreads, drift, matrix);
+  state.nodeNoises.set(matrix, node * d * d);
+  for (let axis = 0; axis < d; axis++)
+    state.nodeForces[node * d + axis] += drift[axis] - state.tape.force[node * d + axis];
+}
+
 /** Minus the derivative of the group's forces along an axis. */
 function readStiffness(
   state: JointState,

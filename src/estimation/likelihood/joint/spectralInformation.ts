@@ -17,7 +17,7 @@ import { invertMatrix } from '../../../numerics/linear/smallMatrix.js';
 import { factorPositive } from '../../../numerics/linear/factorPositive.js';
 import type { LikelihoodLayout } from '../layout.js';
 import { type LocalInformation, numberLocal } from '../localInformation.js';
-import { createMatrixField, type MatrixField } from './matrixFields.js';
+import { createMatrixField, type MatrixField } from '../matrixFields.js';
 
 const FREQUENCIES = 20; // midpoints in the root of ω, dense near zero where spectra of slow friction turn
 const FOLDS = 3; // m from −FOLDS to FOLDS; what lies beyond falls off as their fourth power

@@ -3,8 +3,8 @@
  * slopes along their entries to scores of the components.
  */
 
-import { createSymmetricExponential } from '../../../numerics/linear/symmetricExponential.js';
-import type { FieldSlot } from '../layout.js';
+import { createSymmetricExponential } from '../../numerics/linear/symmetricExponential.js';
+import type { FieldSlot } from './layout.js';
 
 /** A field of positive matrices read at one place; `read` goes before the other two. */
 export interface MatrixField {
