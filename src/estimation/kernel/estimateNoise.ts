@@ -107,7 +107,7 @@ function plugInData(tracks: TrackSet, rows: NoiseRows): PlugInData | null {
   if (tracks.dimensions > 1) return null;
   const places: number[] = [];
   const responses: number[] = [];
-  rows((row, products) => {
+  rows.visit((row, products) => {
     places.push(tracks.positions[row]);
     responses.push(products.responses[0]);
   });

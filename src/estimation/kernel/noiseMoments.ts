@@ -1,8 +1,10 @@
 /**
  * Binned moments of noise or diffusion, with how they move with the coefficients of the first regression.
  *
- * Rows are binned at y_k, and their products look ahead from there (`ResidualProducts.lookAhead`). At first order the
- * diffusion acts from y_k to y_{k+1}: to first order in the interval the mean of D along the step is that of its two ends,
+ * Rows are binned at y_k, and their products look ahead from there (`ResidualProducts.lookAhead`). At first order they still
+ * hold the square of the error of y_k, which is above average where the density of positions is convex; where that matters
+ * (`LARGE_ERROR`), rows are binned at y_{k−1}, at the price of more scatter. The diffusion acts from y_k to y_{k+1}: to
+ * first order in the interval its mean along the step is that of the two ends,
  * (1/Δ) ∫ E[D(q_t)] dt = E[D(q_k) + D(q_{k+1})]/2 + O(Δ²), and so the pairs of knots are kept for both.
  *
  * Source  Itô–Taylor expansion of the squared increment: Kloeden & Platen, Numerical Solution of Stochastic Differential
@@ -33,8 +35,18 @@ type RowVisitor = (
   regressorsOf: (axis: number, ahead?: number) => SparseRow,
 ) => void;
 
-/** Visits the rows of the regression; made by `secondOrderRows` or `firstOrderRows`. */
-export type NoiseRows = (visit: RowVisitor) => void;
+/** The rows of the regression; made by `secondOrderRows` or `firstOrderRows`. */
+export interface NoiseRows {
+  readonly visit: (visit: RowVisitor) => void;
+  /** How many rows before its own a row is binned at. */
+  readonly lag: 0 | 1;
+}
+
+/**
+ * s⁴/(2DΔ σ²) with the spread σ of positions from which rows of first order are binned a row before: binned at y_k, the
+ * diffusion is too large by s⁴ ρ″/(2DΔ ρ) of itself, three times this at two standard deviations of a normal density ρ.
+ */
+const LARGE_ERROR = 0.01;
 
 export function secondOrderRows(
   tracks: TrackSet,
@@ -42,11 +54,14 @@ export function secondOrderRows(
   layout: SecondOrderLayout,
   parameters: Float64Array,
 ): NoiseRows {
-  return (visit) =>
-    visitNoiseRows(tracks, form, layout, parameters, (row, products, regressorsOf) => {
-      products.lookAhead();
-      visit(row, products, regressorsOf);
-    });
+  return {
+    lag: 0,
+    visit: (visit) =>
+      visitNoiseRows(tracks, form, layout, parameters, (row, products, regressorsOf) => {
+        products.lookAhead();
+        visit(row, products, regressorsOf);
+      }),
+  };
 }
 
 /**
@@ -62,15 +77,43 @@ export function firstOrderRows(
 ): { rows: NoiseRows; errors: ErrorSums } {
   const { form } = plan.noise;
   const errors = createErrorSums(tracks, plan, drift, parameters);
-  visitDiffusionRows(tracks, form, drift, parameters, (row, _products, neighbours) => {
+  let diffusion = 0;
+  let count = 0;
+  visitDiffusionRows(tracks, form, drift, parameters, (row, products, neighbours) => {
     errors.add(row, neighbours);
+    diffusion += products.responses[0];
+    count++;
   });
-  const rows: NoiseRows = (visit) =>
-    visitDiffusionRows(tracks, form, drift, parameters, (row, products, _neighbours, driftRowOf) => {
-      products.lookAhead();
-      visit(row, products, driftRowOf);
-    });
+  const variance =
+    errors.errorSums.reduce((sum, value) => sum + value, 0) /
+    errors.errorWeights.reduce((sum, value) => sum + value, 0);
+  const displacement = (2 * diffusion * tracks.samplingInterval) / count; // its variance, 2DΔ
+  const rows: NoiseRows = {
+    lag: variance ** 2 > LARGE_ERROR * displacement * measureSpread(tracks) ? 1 : 0,
+    visit: (visit) =>
+      visitDiffusionRows(tracks, form, drift, parameters, (row, products, _neighbours, driftRowOf) => {
+        products.lookAhead();
+        visit(row, products, driftRowOf);
+      }),
+  };
   return { rows, errors };
+}
+
+/** Smallest variance of the positions over the axes, length². */
+function measureSpread({ positions, dimensions: d }: TrackSet): number {
+  const count = positions.length / d;
+  let least = Infinity;
+  for (let axis = 0; axis < d; axis++) {
+    let sum = 0;
+    let squares = 0;
+    for (let at = axis; at < positions.length; at += d) {
+      const away = positions[at] - positions[axis];
+      sum += away;
+      squares += away * away;
+    }
+    least = Math.min(least, squares / count - (sum / count) ** 2);
+  }
+  return least;
 }
 
 /**
@@ -93,10 +136,11 @@ export function collectNoiseMoments(
   const at = createKnotWeights(grid);
   const seen = createSeenWeights(grid, plan.order);
   const one = Float64Array.of(1);
-  rows((row, products, regressorsOf) => {
-    if (!isInside(grid, positions, row * d)) return;
-    at.count = grid.basis.evaluateInto(positions, row * d, at.indices, at.values);
-    fillSeen(seen, plan.order, grid, positions, row, at);
+  rows.visit((row, products, regressorsOf) => {
+    const place = (row - rows.lag) * d;
+    if (!isInside(grid, positions, place)) return;
+    at.count = grid.basis.evaluateInto(positions, place, at.indices, at.values);
+    fillSeen(seen, plan.order, grid, positions, row);
     collector.add(plan.blocks.ofPosition[row] % folds, at, seen, one, one, products.responses);
     if (parameterCount === 0) return;
     for (let ahead = 0; ahead <= products.reach; ahead++) {
@@ -143,10 +187,11 @@ export function collectNoiseResiduals(
   const counts = Array.from({ length: count }, () => new Float64Array(grid.size));
   const at = createKnotWeights(grid);
   const seen = createSeenWeights(grid, plan.order);
-  rows((row, products) => {
-    if (!isInside(grid, positions, row * d)) return;
-    at.count = grid.basis.evaluateInto(positions, row * d, at.indices, at.values);
-    fillSeen(seen, plan.order, grid, positions, row, at);
+  rows.visit((row, products) => {
+    const place = (row - rows.lag) * d;
+    if (!isInside(grid, positions, place)) return;
+    at.count = grid.basis.evaluateInto(positions, place, at.indices, at.values);
+    fillSeen(seen, plan.order, grid, positions, row);
     const out = residuals[ofPosition[row]];
     for (let i = 0; i < at.count; i++) counts[ofPosition[row]][at.indices[i]] += at.values[i];
     for (let component = 0; component < components; component++) {
@@ -165,29 +210,25 @@ function createSeenWeights(grid: KernelGrid, order: 'first' | 'second'): KnotWei
   return { indices: new Int32Array(capacity), values: new Float64Array(capacity), count: 0 };
 }
 
-/** @param at  weights of the place of the row */
+/** Weights of the places at which the coefficients act on a row. */
 function fillSeen(
   seen: KnotWeights,
   order: 'first' | 'second',
   grid: KernelGrid,
   positions: Float64Array,
   row: number,
-  at: KnotWeights,
 ): void {
-  const share = order === 'first' ? 1 / 2 : 1;
-  for (let i = 0; i < at.count; i++) {
-    seen.indices[i] = at.indices[i];
-    seen.values[i] = share * at.values[i];
+  const ends = order === 'first' ? 2 : 1;
+  seen.count = 0;
+  for (let end = 0; end < ends; end++) {
+    const values = seen.values.subarray(seen.count);
+    const count = grid.basis.evaluateInto(
+      positions,
+      (row + end) * grid.dimensions,
+      seen.indices.subarray(seen.count),
+      values,
+    );
+    for (let i = 0; i < count; i++) values[i] /= ends;
+    seen.count += count;
   }
-  seen.count = at.count;
-  if (order === 'second') return;
-  const values = seen.values.subarray(at.count);
-  const count = grid.basis.evaluateInto(
-    positions,
-    (row + 1) * grid.dimensions,
-    seen.indices.subarray(at.count),
-    values,
-  );
-  for (let i = 0; i < count; i++) values[i] *= share;
-  seen.count += count;
 }
