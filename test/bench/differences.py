@@ -206,6 +206,7 @@ def main():
                 "total": round(end - start, 2),
                 "positions": len(table),
                 "peak": resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024,
+                "processor": time.process_time(),
                 "localizationError": np.sqrt(np.maximum(variance, 0)).tolist(),
                 "friction": [float(friction[centre].mean()), float(friction[centre].std())],
                 "noise_": [float(noises[centre].mean()), float(noises[centre].std())],

@@ -112,4 +112,8 @@ for (const given of [bumpCase(0.1), stirCase(0)]) {
     (user / 1e6).toFixed(1),
   ]);
 }
-printTable('Likelihood fits, uncertainty included', ['case', 'positions', 'seconds', 'processor seconds'], fits);
+printTable(
+  'Likelihood fits, uncertainty included',
+  ['case', 'positions', 'seconds', 'processor seconds'],
+  fits,
+);

@@ -9,6 +9,7 @@ import { surveyTracks } from '../../dist/src/momenta/surveyTracks.js';
 const [, , stage, path] = process.argv;
 const open = () => createReadStream(path, { highWaterMark: 1 << 20 });
 let start = performance.now();
+let before = process.cpuUsage();
 let rows = 0;
 if (stage === 'parse') {
   await new Promise((done, failed) => {
@@ -23,8 +24,11 @@ if (stage === 'parse') {
   rows = counts.rows;
   if (stage === 'survey') {
     start = performance.now();
+    before = process.cpuUsage();
     surveyTracks(tracks);
   }
 }
 const seconds = (performance.now() - start) / 1000;
-console.log(JSON.stringify({ rows, seconds, megabytes: process.resourceUsage().maxRSS / 1024 }));
+const { user, system } = process.cpuUsage(before);
+const processor = (user + system) / 1e6;
+console.log(JSON.stringify({ rows, seconds, processor, megabytes: process.resourceUsage().maxRSS / 1024 }));
