@@ -19,7 +19,7 @@ export function tabulateSmoothedMomenta(tracks: TrackSet, fit: FitResult, mass: 
   const d = tracks.dimensions;
   const n = tracks.times.length;
   const errors = fit.localizationError.map(({ value }) => value);
-  const { velocities, velocityVariances } = smoothPath(tracks, fit.model, errors);
+  const { velocities, velocityVariances } = smoothPath(tracks, fit.model, errors, fit.study.exposure);
   const names = new Array<string>(n);
   for (let track = 0; track < countTracks(tracks); track++)
     names.fill(tracks.trackNames[track], tracks.trackOffsets[track], tracks.trackOffsets[track + 1]);

@@ -11,19 +11,17 @@ import { describeVisited } from '../../tracks/visitedRegion.js';
 import { LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan } from '../Estimate.js';
 import { blockEffects } from './blockEffects.js';
+import { createPathPass, isJoint } from './createPathPass.js';
 import { expectInformation } from './expectedInformation.js';
-import { createFirstOrderPass } from './firstOrderPass.js';
 import { gatherPlaces } from './gatherPlaces.js';
-import { createJointPass } from './joint/jointPass.js';
 import { createSpectralInformation } from './joint/spectralInformation.js';
 import { type FieldSlot, layOutLikelihood, type LikelihoodLayout, orderByPlace } from './layout.js';
 import { createAxisInformation } from './localInformation.js';
 import { withLogLinks } from './positiveLinks.js';
-import type { PassSetting, PathPass } from './PathPass.js';
+import type { PassSetting } from './PathPass.js';
 import { type Pull, type ScoringSolution, solveScores } from './scoring.js';
 import { measureFlow } from './measureFlow.js';
 import { measureMotion } from './measureMotion.js';
-import { createSecondOrderPass } from './secondOrderPass.js';
 import { decomposePenalty, factorOfSmoothing, type SpectralPenalty } from './smoothingFactor.js';
 import { findStart } from './startValues.js';
 
@@ -50,9 +48,8 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
     knownError: plan.localizationError,
   };
   const floors = measureFloors(tracks);
-  const joint = plan.exposure > 0 || [plan.friction.form, plan.noise.form].includes('matrix');
-  const pass = createPass(tracks, layout, setting, joint ? plan.exposure : null);
-  const local = joint
+  const pass = createPathPass(tracks, layout, setting, plan.exposure);
+  const local = isJoint(layout, plan.exposure)
     ? createSpectralInformation(layout, plan.exposure, tracks.samplingInterval)
     : createAxisInformation(layout);
   const flow = plan.order === 'second' ? measureFlow(tracks, describeVisited(tracks)) : null;
@@ -97,18 +94,6 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
     },
     warnings: solution.converged ? [] : [UNCONVERGED],
   };
-}
-
-/** @param exposure  of the joint pass, which filters all states together; null for the plain pass of the order */
-function createPass(
-  tracks: TrackSet,
-  layout: LikelihoodLayout,
-  setting: PassSetting,
-  exposure: number | null,
-): PathPass {
-  if (exposure !== null) return createJointPass(tracks, layout, setting, exposure);
-  const create = layout.model.order === 'second' ? createSecondOrderPass : createFirstOrderPass;
-  return create(tracks, layout, setting);
 }
 
 const UNCONVERGED: Warning = {

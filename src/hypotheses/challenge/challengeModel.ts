@@ -74,19 +74,12 @@ export function challengeModel(
 /** What the innovations leave out of the fit's model. */
 function warnOfSimplifications(fit: FitResult): Warning[] {
   const warnings: Warning[] = [];
-  const { frictionForm, noiseForm, exposure } = fit.study;
+  const { frictionForm, noiseForm } = fit.study;
   if (noiseForm === 'matrix' || (frictionForm === 'matrix' && fit.model.order === 'second')) {
     warnings.push({
       code: 'challenged-along-axes',
       message:
         'the checks look along each axis; what the off-diagonal entries of a matrix bring about may be taken for memory',
-    });
-  }
-  if (exposure > 0) {
-    warnings.push({
-      code: 'exposure-not-challenged',
-      message:
-        'the checks take positions for snapshots; blur over the exposure may be taken for memory over one frame',
     });
   }
   return warnings;

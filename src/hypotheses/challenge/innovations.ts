@@ -9,9 +9,8 @@
 
 import type { FitResult } from '../../documents/FitDocument.js';
 import type { Estimate, EstimationPlan } from '../../estimation/Estimate.js';
-import { createFirstOrderPass } from '../../estimation/likelihood/firstOrderPass.js';
+import { createPathPass } from '../../estimation/likelihood/createPathPass.js';
 import { layOutLikelihood, type LikelihoodLayout } from '../../estimation/likelihood/layout.js';
-import { createSecondOrderPass } from '../../estimation/likelihood/secondOrderPass.js';
 import { estimateLikelihood } from '../../estimation/likelihood/estimateLikelihood.js';
 import { modelFields } from '../../fields/modelParameters.js';
 import { createBasis } from '../../fields/createBasis.js';
@@ -52,7 +51,6 @@ export function measureInnovations(fit: FitResult, tracks: TrackSet, onProgress?
   const n = countPositions(usable);
   const plan: EstimationPlan = {
     ...flexible.plan,
-    exposure: 0,
     friction: withoutMatrix(flexible.plan.friction),
     noise: withoutMatrix(flexible.plan.noise),
     onProgress: partOf(onProgress, 0, ESTIMATE_SHARE),
@@ -61,12 +59,12 @@ export function measureInnovations(fit: FitResult, tracks: TrackSet, onProgress?
   const errorEstimated = plan.localizationError === null && usable.localizationErrors === null;
   const zero = { force: plan.force.basis === null, friction: plan.friction.basis === null };
   const layout = layOutLikelihood(estimate.model, zero, errorEstimated);
-  const createPass = order === 'second' ? createSecondOrderPass : createFirstOrderPass;
-  const pass = createPass(usable, layout, {
+  const setting = {
     blockOfPosition: plan.blocks.ofPosition,
     blocks: plan.blocks.count,
     knownError: plan.localizationError,
-  });
+  };
+  const pass = createPathPass(usable, layout, setting, plan.exposure);
   const run = (parameters: Float64Array): { values: Float64Array; variances: Float64Array } => {
     const values = new Float64Array(n * usable.dimensions).fill(Number.NaN);
     const variances = new Float64Array(n * usable.dimensions).fill(Number.NaN);
