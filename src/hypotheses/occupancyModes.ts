@@ -3,8 +3,8 @@
  * coefficient is compared with a statement about it.
  *
  * The modes φ_i minimise ∫ ρ^(1 − 2/d) |∇φ|² dq under mean squared value 1, one after another, each orthogonal to the
- * ones before; means are over where the tracks have been, and ρ is the density of positions. The first is 1. Gradients
- * thus count by the typical distance between positions, ρ^(−1/d): in one dimension the modes are the cosines of the share
+ * ones before; means are over where the tracks have been, lengths along each axis in widths of the visited box, and ρ is
+ * the density of positions. The first is 1. Gradients thus count by the typical distance between positions, ρ^(−1/d): in one dimension the modes are the cosines of the share
  * of positions to the left, bounded however rarely the edges are visited, so that no mode hangs on a few stray points.
  *
  * Symbols: `m` nodes, `d` dimensions, `k` basis functions, `I` modes.
@@ -55,7 +55,9 @@ export function findOccupancyModes(
   const gradient = Matrix.zeros(k, k);
   for (let axis = 0; axis < d; axis++) {
     const slopes = evaluateDesign(basis, points, axis);
-    for (let i = 0; i < slopes.length; i++) slopes[i] *= roots[Math.floor(i / k)];
+    // In widths of the region: across a narrow one coefficients bend as well as along it.
+    const width = visited.high[axis] - visited.low[axis];
+    for (let i = 0; i < slopes.length; i++) slopes[i] *= width * roots[Math.floor(i / k)];
     gradient.add(averageProducts(slopes, slopes, k));
   }
   const ridge = (RIDGE * gram.trace()) / k;
