@@ -25,9 +25,8 @@ const FILES = [
 const VERDICTS: Readonly<Record<(typeof DATA_SETS)[number], Readonly<Record<string, boolean>>>> = {
   'felt-table': { 'uniform-friction': true, 'conservative-force': true }, // a felt strip, and a stirring force
   'settling-beads': { 'uniform-noise': true, 'zero-force': true }, // hindered near the floor, under gravity
-  // Stripes, and a force across them that has a potential. That friction varies there is told by its bands, but not by
-  // the test of uniformity, which looks along the long axis first (DEVELOPERS, known limits).
-  'stripe-cells': { 'conservative-force': false },
+  // Stripes of friction, and a force across them that has a potential.
+  'stripe-cells': { 'uniform-friction': true, 'conservative-force': false },
 };
 
 describe.each(DATA_SETS)('demo %s', (name) => {
