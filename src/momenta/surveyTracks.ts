@@ -6,6 +6,7 @@
 import { fitStraightLine } from '../numerics/linear/plainRegression.js';
 import type { ReportShare } from '../numerics/ReportShare.js';
 import { countPositions, type TrackSet } from '../tracks/TrackSet.js';
+import { meanErrorVariances } from '../tracks/meanErrorVariances.js';
 import { describeVisited, measureVisitedShare } from '../tracks/visitedRegion.js';
 import { estimateCommonDrift } from './commonDrift.js';
 import { countVisits } from './countVisits.js';
@@ -132,16 +133,14 @@ function listKnownErrors(
   tracks: TrackSet,
   given: number | 'auto',
 ): { source: Survey['localizationErrorSource']; variances: (number | null)[] } {
-  const { dimensions, localizationErrors } = tracks;
+  const { dimensions } = tracks;
   if (given !== 'auto') {
     return { source: 'given', variances: new Array<number>(dimensions).fill(given * given) };
   }
-  if (localizationErrors === null) {
-    return { source: 'estimated', variances: new Array<null>(dimensions).fill(null) };
-  }
-  const sums = new Array<number>(dimensions).fill(0);
-  for (let i = 0; i < localizationErrors.length; i++) sums[i % dimensions] += localizationErrors[i] ** 2;
-  return { source: 'table', variances: sums.map((sum) => sum / Math.max(countPositions(tracks), 1)) };
+  const variances = meanErrorVariances(tracks);
+  return variances
+    ? { source: 'table', variances: Array.from(variances) }
+    : { source: 'estimated', variances: new Array<null>(dimensions).fill(null) };
 }
 
 interface AxisFacts {

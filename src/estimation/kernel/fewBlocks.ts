@@ -1,28 +1,15 @@
 /**
- * What the effect of a block has to be multiplied by where few blocks carry an estimate. There the residuals of a block
- * are small because the estimate follows that block, and the standard deviation over so few blocks is itself uncertain:
- * intervals as for many blocks would be too narrow.
- *
- * With H_b the leverage of block b at a place (the weight of its rows in the estimate; ΣH_b = 1), effects grow by
- * 1/(1 − H_b), which is what leaving the block out would show, and by the ratio of Student's quantiles for the freedom
- * 1/ΣH_b² − 1 of the place and B − 1 of the whole. Where B blocks share the weight equally both are 1 up to 1/B.
- *
- * Source  Bell & McCaffrey, Bias reduction in standard errors for linear regression with multi-stage samples, Survey
- *         Methodology 28 (2002) 169; Imbens & Kolesár, Robust standard errors in small samples, Rev. Econ. Stat. 98 (2016)
- *         701. Here the weights are those of a plain regression on as many rows.
+ * How much each block says at each knot: its leverage is the weight of its rows in the estimate there, as in a plain
+ * regression on as many rows. What follows from it: see `blockShares`.
  */
 
-import { studentQuantile } from '../../numerics/special/student.js';
+import { judgeShares, leverageFactor } from '../blockShares.js';
 import type { BinnedMoments } from './BinnedMoments.js';
 import { createFieldSmoother, type FieldSmoother } from './fieldSmoother.js';
 import type { KernelGrid } from './grid.js';
 import type { LocalField } from './localFields.js';
 import { ROUGH_TOLERANCE, solveFields } from './solveFields.js';
 import type { KnotWindows } from './windows.js';
-
-const TAIL = 0.975; // the quantile at which the intervals are exact; the ratio changes little around it
-const LARGEST_LEVERAGE = 0.95;
-const LEAST_FREEDOM = 2; // below, the law of t has no variance and says little more than that nothing is known
 
 /** How much the blocks say at each knot. */
 export interface BlockShares {
@@ -56,19 +43,15 @@ export function measureShares(
   const leverages = blockCounts.map(
     (counts) => solveFields(moments, [smoother], counts, ROUGH_TOLERANCE).values[0],
   );
-  const usual = studentQuantile(TAIL, Math.max(1, blocks - 1));
   const leverageFactors = new Float64Array(blocks * size);
   const freedom = new Float64Array(size);
   const widening = new Float64Array(size);
   for (let knot = 0; knot < size; knot++) {
-    let squares = 0;
-    leverages.forEach((leverage, block) => {
-      squares += leverage[knot] ** 2;
-      const own = Math.max(0, Math.min(LARGEST_LEVERAGE, leverage[knot]));
-      leverageFactors[block * size + knot] = 1 / (1 - own);
-    });
-    freedom[knot] = Math.max(LEAST_FREEDOM, 1 / squares - 1);
-    widening[knot] = Math.max(1, studentQuantile(TAIL, freedom[knot]) / usual);
+    const shares = leverages.map((leverage) => leverage[knot]);
+    const judged = judgeShares(shares);
+    freedom[knot] = judged.freedom;
+    widening[knot] = judged.widening;
+    shares.forEach((share, block) => (leverageFactors[block * size + knot] = leverageFactor(share)));
   }
   return { leverageFactors, freedom, widening, designDeviations: measureDesign(moments, smoother) };
 }

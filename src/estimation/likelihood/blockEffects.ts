@@ -1,24 +1,15 @@
 /**
- * First-order effects of blocks on the parameters, as the bootstrap takes them.
- *
- * Where few blocks carry a function, their scores at the estimate are small because the estimate follows them, and the
- * spread of so few is itself uncertain. With H_b the share of block b in the information about a parameter, its effect
- * grows by 1/(1 − H_b), what leaving it out would show, and all effects by the ratio of Student's quantiles for the
- * freedom 1/ΣH_b² − 1 that is left there and B − 1 of the whole. Where all blocks are everywhere both are one to 1/B.
- *
- * Source  Bell & McCaffrey, Survey Methodology 28 (2002) 169; Imbens & Kolesár, Rev. Econ. Stat. 98 (2016) 701.
+ * First-order effects of blocks on the parameters, as the bootstrap takes them: larger where few blocks carry a parameter
+ * (see `blockShares`). The share of a block is that in the information of the parameter's own field, as its functions
+ * weigh on the parameter.
  */
 
 import { Matrix } from 'ml-matrix';
-import { studentQuantile } from '../../numerics/special/student.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
+import { judgeShares, leverageFactor } from '../blockShares.js';
 import type { LikelihoodLayout } from './layout.js';
 import type { PassSetting } from './PathPass.js';
 import type { ScoringSolution } from './scoring.js';
-
-const TAIL = 0.975; // the quantile at which intervals are exact; the ratio changes little around it
-const LARGEST_SHARE = 0.95;
-const LEAST_FREEDOM = 2;
 
 /** (I + S)⁻¹ s_b for every block, made larger where few of them carry a parameter; shape (B, p). */
 export function blockEffects(
@@ -34,15 +25,11 @@ export function blockEffects(
       .mmul(Matrix.from1DArray(p, p, inverse))
       .to1DArray(),
   );
-  const usual = studentQuantile(TAIL, Math.max(1, blocks - 1));
   const shares = new Float64Array(blocks);
   const enlarge = (parameter: number): void => {
-    let squares = 0;
-    for (const share of shares) squares += share * share;
-    const freedom = Math.max(LEAST_FREEDOM, 1 / squares - 1);
-    const widening = Math.max(1, studentQuantile(TAIL, freedom) / usual);
+    const { widening } = judgeShares(shares);
     for (let block = 0; block < blocks; block++)
-      effects[block * p + parameter] *= widening / (1 - Math.min(LARGEST_SHARE, shares[block]));
+      effects[block * p + parameter] *= widening * leverageFactor(shares[block]);
   };
 
   const visits = layout.bases.map((_, b) => shareVisits(tracks, layout, b, blockOfPosition, blocks));

@@ -6,6 +6,7 @@
 
 import type { Warning } from '../../errors.js';
 import { withParameters } from '../../fields/modelParameters.js';
+import { meanErrorVariances } from '../../tracks/meanErrorVariances.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import { describeVisited } from '../../tracks/visitedRegion.js';
 import { LIGHT_SMOOTHING, templateModel } from '../differences/estimateDifferences.js';
@@ -197,9 +198,10 @@ function describeErrors(
   floors: Float64Array,
 ): Estimate['localizationError'] {
   const d = layout.dimensions;
+  const table = meanErrorVariances(tracks);
   return Array.from({ length: d }, (_, axis) => {
     if (layout.errorOffset < 0)
-      return { value: plan.localizationError?.[axis] ?? rootMeanSquare(tracks, axis), standardError: 0 };
+      return { value: plan.localizationError?.[axis] ?? Math.sqrt(table?.[axis] ?? 0), standardError: 0 };
     const i = layout.errorOffset + axis;
     const variance = Math.exp(parameters[i]);
     const value = variance > 2 * floors[axis] ? Math.sqrt(variance) : 0;
@@ -207,11 +209,4 @@ function describeErrors(
     // Near zero the square root flattens: the error of s is then what makes s² one standard error.
     return { value, standardError: varianceError / (value + Math.sqrt(value * value + varianceError)) };
   });
-}
-
-function rootMeanSquare({ localizationErrors, dimensions, times }: TrackSet, axis: number): number {
-  if (!localizationErrors) return 0;
-  let sum = 0;
-  for (let i = axis; i < localizationErrors.length; i += dimensions) sum += localizationErrors[i] ** 2;
-  return Math.sqrt(sum / Math.max(times.length, 1));
 }

@@ -9,6 +9,7 @@ import { DataError, NumericalError } from '../../errors.js';
 import type { CoefficientField, ModelEvaluator } from '../../fields/CoefficientField.js';
 import { createBasis } from '../../fields/createBasis.js';
 import { createModelEvaluator } from '../../fields/evaluateModel.js';
+import { meanErrorVariances } from '../../tracks/meanErrorVariances.js';
 import { countPositions, type TrackSet } from '../../tracks/TrackSet.js';
 import { estimateDifferences } from '../differences/estimateDifferences.js';
 import type { Estimate, EstimationPlan, FieldPlan } from '../Estimate.js';
@@ -96,10 +97,13 @@ function findConstants(tracks: TrackSet, plan: EstimationPlan): Constants {
   const errorVariance = new Float64Array(d);
   const kinds: readonly ModelKind[] =
     plan.order === 'second' ? ['second-free', 'second-trapped'] : ['first-free', 'first-trapped'];
+  const table = meanErrorVariances(tracks);
   let moving = false;
   for (let axis = 0; axis < d; axis++) {
-    const given = plan.localizationError ? plan.localizationError[axis] ** 2 : meanSquareError(tracks, axis);
-    const fits = kinds.flatMap((kind) => fitDisplacementModel(covariances, axis, kind, given) ?? []);
+    const given = plan.localizationError ? plan.localizationError[axis] ** 2 : (table?.[axis] ?? null);
+    const fits = kinds.flatMap(
+      (kind) => fitDisplacementModel(covariances, axis, kind, given, plan.exposure) ?? [],
+    );
     fits.sort((a, b) => b.logLikelihood - a.logLikelihood);
     const variance = Math.max(covariances.covariances[axis][0], 0) || 0;
     if (variance > 0) moving = true;
@@ -127,14 +131,6 @@ function findConstants(tracks: TrackSet, plan: EstimationPlan): Constants {
   const typical = Math.max(...noise);
   for (let axis = 0; axis < d; axis++) if (!(noise[axis] > 0)) noise[axis] = 1e-6 * typical;
   return { friction, noise, errorVariance };
-}
-
-/** Mean of the table's own error variances along an axis, or null where it has none. */
-function meanSquareError({ localizationErrors, dimensions, times }: TrackSet, axis: number): number | null {
-  if (!localizationErrors) return null;
-  let sum = 0;
-  for (let i = axis; i < localizationErrors.length; i += dimensions) sum += localizationErrors[i] ** 2;
-  return sum / Math.max(times.length, 1);
 }
 
 /** Coordinates of at most `MOST_PLACES` recorded positions, evenly through the recording. */
