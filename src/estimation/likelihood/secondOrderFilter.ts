@@ -62,8 +62,11 @@ export function filterTrack(
     const h = interval / substeps;
     growTape(tape, node + substeps, row - start);
     tape.firstNode[row - start] = node;
+    // Arrays are looked up once a row: they change when the tape grows.
+    const { state: states, force, slope, friction, noise, transition } = tape;
+    const hasSlope = row > start + 1; // not yet with the diffuse velocity of a start, which would swamp it
     for (let sub = 0; sub < substeps; sub++, node++) {
-      const lastFriction = tape.friction[(node > 0 ? node - 1 : 0) * d];
+      const lastFriction = friction[(node > 0 ? node - 1 : 0) * d];
       const half = h / (2 + lastFriction * h * 0.5); // (1 − e^{−Γh/2})/Γ to second order
       for (let axis = 0; axis < d; axis++) place[axis] = filtered[axis * 5] + filtered[axis * 5 + 1] * half;
       readCoefficients(state, parameters, node);
@@ -71,32 +74,36 @@ export function filterTrack(
       for (let axis = 0; axis < d; axis++) {
         const at = node * d + axis;
         const base = axis * 5;
-        for (let i = 0; i < 5; i++) tape.state[at * 5 + i] = filtered[base + i];
-        tape.centre[at] = place[axis];
-        const noise = tape.noise[at];
-        // Not yet with the diffuse velocity of a start, which would swamp them.
-        if (row > start + 1 && tape.frictionSlope[at] !== 0) addFrictionSlope(tape, at, h, filtered, base);
-        const force = tape.force[at];
-        const { transition } = tape;
+        if (hasSlope && tape.frictionSlope[at] !== 0) addFrictionSlope(tape, at, h, filtered, base);
         const slot = at * TRANSITION_SIZE;
-        transitionInto(tape.friction[at], tape.slope[at], h, transition, slot);
-        const aqq = transition[slot];
-        const aqv = transition[slot + 1];
-        const avq = transition[slot + 2];
-        const avv = transition[slot + 3];
-        const u = filtered[base] - place[axis];
+        transitionInto(friction[at], slope[at], h, transition, slot);
+        const q = filtered[base];
         const v = filtered[base + 1];
         const pqq = filtered[base + 2];
         const pqv = filtered[base + 3];
         const pvv = filtered[base + 4];
-        filtered[base] = place[axis] + aqq * u + aqv * v + force * transition[slot + 4];
-        filtered[base + 1] = avq * u + avv * v + force * transition[slot + 5];
+        const record = at * 5;
+        states[record] = q;
+        states[record + 1] = v;
+        states[record + 2] = pqq;
+        states[record + 3] = pqv;
+        states[record + 4] = pvv;
+        const middle = place[axis];
+        const f = force[at];
+        const n = noise[at];
+        const aqq = transition[slot];
+        const aqv = transition[slot + 1];
+        const avq = transition[slot + 2];
+        const avv = transition[slot + 3];
+        const u = q - middle;
+        filtered[base] = middle + aqq * u + aqv * v + f * transition[slot + 4];
+        filtered[base + 1] = avq * u + avv * v + f * transition[slot + 5];
         filtered[base + 2] =
-          aqq * aqq * pqq + 2 * aqq * aqv * pqv + aqv * aqv * pvv + noise * transition[slot + 6];
+          aqq * aqq * pqq + 2 * aqq * aqv * pqv + aqv * aqv * pvv + n * transition[slot + 6];
         filtered[base + 3] =
-          aqq * avq * pqq + (aqq * avv + aqv * avq) * pqv + aqv * avv * pvv + noise * transition[slot + 7];
+          aqq * avq * pqq + (aqq * avv + aqv * avq) * pqv + aqv * avv * pvv + n * transition[slot + 7];
         filtered[base + 4] =
-          avq * avq * pqq + 2 * avq * avv * pqv + avv * avv * pvv + noise * transition[slot + 8];
+          avq * avq * pqq + 2 * avq * avv * pqv + avv * avv * pvv + n * transition[slot + 8];
       }
     }
     steepness = measureSteepness(tape, node - 1, d);

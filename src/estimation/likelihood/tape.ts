@@ -18,8 +18,6 @@ export interface Tape {
   step: Float64Array;
   /** Per node and axis: mean and covariance of the filter before the step (q, v, qq, qv, vv). */
   state: Float64Array;
-  /** Per node and axis: where the coefficients were read, length. */
-  centre: Float64Array;
   force: Float64Array;
   /** Minus the derivative of the force along its own axis, 1/time². */
   slope: Float64Array;
@@ -55,7 +53,6 @@ export function createTape(layout: LikelihoodLayout): Tape {
     supports,
     step: empty,
     state: empty,
-    centre: empty,
     force: empty,
     slope: empty,
     friction: empty,
@@ -84,7 +81,7 @@ export function growTape(tape: Tape, node: number, row: number): void {
     tape.step = extend(tape.step, nodes);
     tape.state = extend(tape.state, nodes * d * 5);
     tape.transition = extend(tape.transition, nodes * d * TRANSITION_SIZE);
-    for (const name of ['centre', 'force', 'slope', 'friction', 'frictionSlope', 'noise'] as const)
+    for (const name of ['force', 'slope', 'friction', 'frictionSlope', 'noise'] as const)
       tape[name] = extend(tape[name], nodes * d);
     tape.supports.forEach((support, b) => {
       const indices = new Int32Array(nodes * support);
