@@ -1,6 +1,6 @@
 /** A model's coefficients as functions of place, without allocation per call. */
 
-import { symmetricEigenInto } from '../numerics/linear/smallMatrix.js';
+import { createSymmetricExponential } from '../numerics/linear/symmetricExponential.js';
 import type { CoefficientField, Model, ModelEvaluator } from './CoefficientField.js';
 import { createBasis } from './createBasis.js';
 
@@ -67,8 +67,9 @@ function createMatrixWriter(field: CoefficientField, d: number): ComponentWriter
   const symmetric = field.name === 'noise' || field.name === 'diffusion';
   const values = new Float64Array(d);
   const vectors = new Float64Array(d * d);
-  const work = new Float64Array(d * d);
   const half = new Float64Array(d * d);
+  const exponential = new Float64Array(d * d);
+  const { decompose } = createSymmetricExponential(d);
   return (places, offset, out) => {
     write(places, offset, components);
     let component = 0;
@@ -84,13 +85,7 @@ function createMatrixWriter(field: CoefficientField, d: number): ComponentWriter
       for (let j = 0; j < d; j++) half[i * d + j] = (out[i * d + j] + out[j * d + i]) / 2;
     }
     for (let i = 0; i < d * d; i++) out[i] -= half[i];
-    symmetricEigenInto(half, d, values, vectors, work);
-    for (let i = 0; i < d; i++) {
-      for (let j = 0; j < d; j++) {
-        let sum = 0;
-        for (let l = 0; l < d; l++) sum += vectors[i * d + l] * Math.exp(values[l]) * vectors[j * d + l];
-        out[i * d + j] += sum;
-      }
-    }
+    decompose(half, values, vectors, exponential);
+    for (let i = 0; i < d * d; i++) out[i] += exponential[i];
   };
 }

@@ -9,13 +9,13 @@
  * Source  as for `secondOrderPass`; transition: Uhlenbeck & Ornstein, Phys. Rev. 36 (1930) 823.
  */
 
-import { countTracks, type TrackSet } from '../../tracks/TrackSet.js';
+import type { TrackSet } from '../../tracks/TrackSet.js';
 import { createStepAverage, type StepAverage } from './averageOverStep.js';
-import { readErrorVariances } from './errorVariances.js';
 import type { LikelihoodLayout } from './layout.js';
 import { createMatrixField } from './matrixFields.js';
 import { measureCells } from './measureCells.js';
 import type { PassSetting, PathObserver, PathPass } from './PathPass.js';
+import { passOverTracks } from './passOverTracks.js';
 import { type CoefficientReader, createReader, readCoefficients } from './readCoefficients.js';
 import { spreadScore } from './spreadScore.js';
 import { growTape, UPDATE_SIZE } from './tape.js';
@@ -46,21 +46,12 @@ export function createFirstOrderPass(
     drift: new Float64Array(d),
     diffusion: new Float64Array(d * d),
   };
-  return {
-    run(parameters, scores, observer) {
-      scores?.fill(0);
-      readErrorVariances(layout, setting, parameters, state.errorVariance);
-      let logLikelihood = 0;
-      for (let track = 0; track < countTracks(tracks); track++) {
-        const start = tracks.trackOffsets[track];
-        const end = tracks.trackOffsets[track + 1];
-        if (end - start < 2) continue;
-        logLikelihood += filterTrack(state, parameters, start, end, observer);
-        if (scores || observer?.places) smoothTrack(state, start, end, scores, observer);
-      }
-      return logLikelihood;
-    },
-  };
+  return passOverTracks(tracks, layout, setting, {
+    fewest: 2,
+    errorVariance: state.errorVariance,
+    filter: (parameters, start, end, observer) => filterTrack(state, parameters, start, end, observer),
+    smooth: (_, start, end, scores, observer) => smoothTrack(state, start, end, scores, observer),
+  });
 }
 
 interface PassState extends CoefficientReader {

@@ -15,10 +15,10 @@
  *         Bernoulli 1 (1995) 17.
  */
 
-import { countTracks, type TrackSet } from '../../tracks/TrackSet.js';
+import type { TrackSet } from '../../tracks/TrackSet.js';
 import type { LikelihoodLayout } from './layout.js';
 import type { PassSetting, PathPass } from './PathPass.js';
-import { readErrorVariances } from './errorVariances.js';
+import { passOverTracks } from './passOverTracks.js';
 import { smoothTrack } from './secondOrderAdjoint.js';
 import { filterTrack } from './secondOrderFilter.js';
 import type { PassState } from './secondOrderState.js';
@@ -47,20 +47,10 @@ export function createSecondOrderPass(
     adjoint: new Float64Array(5 * d),
     errorVariance: new Float64Array(d),
   };
-  return {
-    run(parameters, scores, observer) {
-      scores?.fill(0);
-      readErrorVariances(layout, setting, parameters, state.errorVariance);
-      let logLikelihood = 0;
-      for (let track = 0; track < countTracks(tracks); track++) {
-        const start = tracks.trackOffsets[track];
-        const end = tracks.trackOffsets[track + 1];
-        if (end - start < 3) continue;
-        logLikelihood += filterTrack(state, parameters, start, end, observer);
-        if (scores || observer?.velocities || observer?.places)
-          smoothTrack(state, start, end, scores, observer);
-      }
-      return logLikelihood;
-    },
-  };
+  return passOverTracks(tracks, layout, setting, {
+    fewest: 3,
+    errorVariance: state.errorVariance,
+    filter: (parameters, start, end, observer) => filterTrack(state, parameters, start, end, observer),
+    smooth: (_, start, end, scores, observer) => smoothTrack(state, start, end, scores, observer),
+  });
 }

@@ -9,6 +9,8 @@
  *         Proc. 8th PICA Conf. (1973) 63; Erisman & Tinney, Commun. ACM 18 (1975) 177.
  */
 
+import { innerProduct } from './denseMatrix.js';
+
 export interface PositiveFactor {
   /** The solution for a right-hand side, length n. */
   solve(right: Float64Array): Float64Array;
@@ -97,7 +99,7 @@ function factorInPlace(lower: Float64Array, first: Int32Array, n: number): boole
   for (let i = 0; i < n; i++) {
     for (let j = first[i]; j <= i; j++) {
       const from = Math.max(first[i], first[j]);
-      const value = lower[i * n + j] - dot(lower, i * n + from, lower, j * n + from, j - from);
+      const value = lower[i * n + j] - innerProduct(lower, i * n + from, lower, j * n + from, j - from);
       if (i !== j) lower[i * n + j] = value / lower[j * n + j];
       else if (value > SINGULAR) lower[i * n + i] = Math.sqrt(value);
       else return false;
@@ -116,7 +118,7 @@ function solveFrom(
 ): void {
   for (let i = start; i < n; i++) {
     const from = Math.max(first[i], start);
-    out[i] = (out[i] - dot(lower, i * n + from, out, from, i - from)) / lower[i * n + i];
+    out[i] = (out[i] - innerProduct(lower, i * n + from, out, from, i - from)) / lower[i * n + i];
   }
   for (let i = n - 1; i >= start; i--) {
     const value = out[i] / lower[i * n + i];
@@ -151,21 +153,4 @@ function invertInside(lower: Float64Array, first: Int32Array, n: number): Float6
     inner[j * n + j] = own;
   }
   return inner;
-}
-
-/** Inner product of two stretches, four sums at a time. */
-function dot(a: Float64Array, aFrom: number, b: Float64Array, bFrom: number, length: number): number {
-  let s0 = 0;
-  let s1 = 0;
-  let s2 = 0;
-  let s3 = 0;
-  const whole = length - (length % 4);
-  for (let i = 0; i < whole; i += 4) {
-    s0 += a[aFrom + i] * b[bFrom + i];
-    s1 += a[aFrom + i + 1] * b[bFrom + i + 1];
-    s2 += a[aFrom + i + 2] * b[bFrom + i + 2];
-    s3 += a[aFrom + i + 3] * b[bFrom + i + 3];
-  }
-  for (let i = whole; i < length; i++) s0 += a[aFrom + i] * b[bFrom + i];
-  return s0 + s1 + (s2 + s3);
 }

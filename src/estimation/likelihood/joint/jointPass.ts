@@ -11,10 +11,10 @@
  *         21 (2000) 281.
  */
 
-import { countTracks, type TrackSet } from '../../../tracks/TrackSet.js';
-import { readErrorVariances } from '../errorVariances.js';
+import type { TrackSet } from '../../../tracks/TrackSet.js';
 import type { LikelihoodLayout } from '../layout.js';
 import type { PassSetting, PathPass } from '../PathPass.js';
+import { passOverTracks } from '../passOverTracks.js';
 import { smoothJointly } from './jointAdjoint.js';
 import { filterJointly } from './jointFilter.js';
 import { createJointState } from './jointState.js';
@@ -31,21 +31,11 @@ export function createJointPass(
   exposure: number,
 ): PathPass {
   const state = createJointState(tracks, layout, setting, exposure);
-  const fewest = state.second ? 3 : 2;
-  return {
-    run(parameters, scores, observer) {
-      scores?.fill(0);
-      readErrorVariances(layout, setting, parameters, state.errorVariance);
-      let logLikelihood = 0;
-      for (let track = 0; track < countTracks(tracks); track++) {
-        const start = tracks.trackOffsets[track];
-        const end = tracks.trackOffsets[track + 1];
-        if (end - start < fewest) continue;
-        logLikelihood += filterJointly(state, parameters, start, end, observer);
-        if (scores || observer?.velocities || observer?.places)
-          smoothJointly(state, parameters, start, end, scores, observer);
-      }
-      return logLikelihood;
-    },
-  };
+  return passOverTracks(tracks, layout, setting, {
+    fewest: state.second ? 3 : 2,
+    errorVariance: state.errorVariance,
+    filter: (parameters, start, end, observer) => filterJointly(state, parameters, start, end, observer),
+    smooth: (parameters, start, end, scores, observer) =>
+      smoothJointly(state, parameters, start, end, scores, observer),
+  });
 }
