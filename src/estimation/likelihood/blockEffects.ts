@@ -11,6 +11,8 @@ import type { LikelihoodLayout } from './layout.js';
 import type { PassSetting } from './PathPass.js';
 import type { ScoringSolution } from './scoring.js';
 
+const LARGEST = 1.5; // standard deviation by the model up to which effects are enlarged
+
 /** (I + S)⁻¹ s_b for every block, made larger where few of them carry a parameter; shape (B, p). */
 export function blockEffects(
   tracks: TrackSet,
@@ -27,9 +29,15 @@ export function blockEffects(
   );
   const shares = new Float64Array(blocks);
   const enlarge = (parameter: number): void => {
+    const before = sizeOf(effects, parameter, p);
     const { widening } = judgeShares(shares);
     for (let block = 0; block < blocks; block++)
       effects[block * p + parameter] *= widening * leverageFactor(shares[block]);
+    // Where hardly any block has been, factors say nothing: what the model makes of it is the measure.
+    const after = sizeOf(effects, parameter, p);
+    const most = Math.max(before, LARGEST * Math.sqrt(inverse[parameter * p + parameter]));
+    if (after <= most) return;
+    for (let i = parameter; i < effects.length; i += p) effects[i] *= most / after;
   };
 
   const visits = layout.bases.map((_, b) => shareVisits(tracks, layout, b, blockOfPosition, blocks));
@@ -48,6 +56,13 @@ export function blockEffects(
   for (const block of blockOfPosition) shares[block] += 1 / blockOfPosition.length;
   for (let i = layout.errorOffset; i < p; i++) enlarge(i);
   return effects;
+}
+
+/** Standard deviation of a parameter over blocks. */
+function sizeOf(effects: Float64Array, parameter: number, p: number): number {
+  let squares = 0;
+  for (let i = parameter; i < effects.length; i += p) squares += effects[i] * effects[i];
+  return Math.sqrt(squares);
 }
 
 /** Share of each block in the visits to each function, shape (B, k). */
