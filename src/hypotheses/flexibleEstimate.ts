@@ -5,7 +5,7 @@
  * is brought down to the same moderate one: its details could not be told from those averages anyway.
  *
  * By likelihood, which makes the most of the data, whatever the fit's own estimator; by differences where the likelihood
- * does not reach (matrix forms, exposure).
+ * takes long (matrix forms, exposure).
  */
 
 import type { FitResult } from '../documents/FitDocument.js';
@@ -61,12 +61,12 @@ export function estimateFlexibly(
   onProgress?: ReportShare,
 ): FlexibleEstimate {
   const planned = planFlexibly(fit, tracks, flexible, frictionForm);
-  const estimate = isCovered(planned.plan) ? estimateLikelihood : estimateDifferences;
+  const estimate = isQuick(planned.plan) ? estimateLikelihood : estimateDifferences;
   return { ...planned, estimate: estimate(planned.tracks, { ...planned.plan, onProgress }) };
 }
 
-/** Whether the likelihood takes the plan. */
-function isCovered({ friction, noise, exposure }: EstimationPlan): boolean {
+/** Whether the likelihood filters the plan axis by axis, which is quick. */
+function isQuick({ friction, noise, exposure }: EstimationPlan): boolean {
   return friction.form !== 'matrix' && noise.form !== 'matrix' && exposure === 0;
 }
 

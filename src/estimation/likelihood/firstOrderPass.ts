@@ -10,6 +10,7 @@
  */
 
 import type { TrackSet } from '../../tracks/TrackSet.js';
+import { pointErrorsOf } from './errorVariances.js';
 import { createStepAverage, type StepAverage } from './averageOverStep.js';
 import type { LikelihoodLayout } from './layout.js';
 import { createMatrixField } from './matrixFields.js';
@@ -81,8 +82,7 @@ function filterTrack(
 ): number {
   const { tracks, layout, setting, tape, mean, variance, place, errorVariance, cellWidths } = state;
   const { positions, times } = tracks;
-  const pointErrors =
-    layout.errorOffset < 0 && setting.knownError === null ? tracks.localizationErrors : null;
+  const pointErrors = pointErrorsOf(tracks, layout, setting);
   const d = layout.dimensions;
   let logLikelihood = 0;
   let node = 0;

@@ -1,5 +1,6 @@
 /** The forward half of the second-order likelihood: the Kalman filter over one track, written to the tape. */
 
+import { pointErrorsOf } from './errorVariances.js';
 import type { PathObserver } from './PathPass.js';
 import { readCoefficients } from './readCoefficients.js';
 import type { PassState } from './secondOrderState.js';
@@ -24,8 +25,8 @@ export function filterTrack(
   observer: PathObserver | undefined,
 ): number {
   const { tracks, layout, tape, diffuse, cellWidths, place, filtered, errorVariance } = state;
-  const { positions, times, localizationErrors } = tracks;
-  const pointErrors = layout.errorOffset < 0 && state.setting.knownError === null ? localizationErrors : null;
+  const { positions, times } = tracks;
+  const pointErrors = pointErrorsOf(tracks, layout, state.setting);
   const d = layout.dimensions;
   const innovations = observer?.innovations;
   const variances = observer?.innovationVariances;

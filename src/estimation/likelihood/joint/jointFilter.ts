@@ -1,5 +1,6 @@
 /** The forward half of the joint likelihood: the Kalman filter over one track. */
 
+import { pointErrorsOf } from '../errorVariances.js';
 import { countSubsteps } from '../firstOrderPass.js';
 import type { PathObserver } from '../PathPass.js';
 import { LONGEST_PATH, measureSteepness } from '../secondOrderFilter.js';
@@ -51,8 +52,7 @@ export function filterJointly(
 function beginTrack(state: JointState, start: number): void {
   const { tracks, layout, setting, groups, origin, exposure } = state;
   const d = layout.dimensions;
-  const pointErrors =
-    layout.errorOffset < 0 && setting.knownError === null ? tracks.localizationErrors : null;
+  const pointErrors = pointErrorsOf(tracks, layout, setting);
   for (let axis = 0; axis < d; axis++) {
     origin[axis] = tracks.positions[start * d + axis];
     state.tape.startErrorVariance[axis] = pointErrors
@@ -82,8 +82,6 @@ function advance(
   const { tape, second, layout } = state;
   const d = layout.dimensions;
   let node = firstNode;
-  growState(state, node, 0);
-  growTape(tape, node, 0);
   if (window > 0) for (const group of state.groups) openShutter(group);
   let substeps = 1;
   if (second && node > 0) {
@@ -166,8 +164,7 @@ function takeIn(
 ): number {
   const { tracks, layout, setting, groups, origin, exposure, errorVariance } = state;
   const d = layout.dimensions;
-  const pointErrors =
-    layout.errorOffset < 0 && setting.knownError === null ? tracks.localizationErrors : null;
+  const pointErrors = pointErrorsOf(tracks, layout, setting);
   const starts = row === start && exposure === 0; // the state was set to this position
   let logLikelihood = 0;
   for (const group of groups) {
