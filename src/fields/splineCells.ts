@@ -14,7 +14,8 @@ export type SumEvaluator = (place: Float64Array, out: Float64Array, outOffset: n
 /** More numbers than this would not stay in the cache; the basis is then evaluated directly. */
 const MAX_CELL_COEFFICIENTS = 2_000_000;
 
-const NODES = [0, 1 / 3, 2 / 3, 1];
+/** Places of a cell whose values determine a cubic. */
+export const NODES = [0, 1 / 3, 2 / 3, 1];
 /** Coefficients of 1, t, t², t³ from the values at the four nodes (inverse Vandermonde matrix, exact). */
 const FROM_NODES = [
   [1, 0, 0, 0],
@@ -127,8 +128,8 @@ export function tabulateSplineCells(
   return { cells, widths, table };
 }
 
-/** Turns values at the nodes into polynomial coefficients, axis by axis, in place. */
-function interpolate(values: Float64Array, d: number): void {
+/** Turns values at the nodes, shape (4 per axis), into coefficients of powers of t, axis by axis, in place. */
+export function interpolate(values: Float64Array, d: number): void {
   const column = new Float64Array(4);
   for (let axis = 0; axis < d; axis++) {
     const stride = 4 ** (d - 1 - axis);
@@ -144,6 +145,57 @@ function interpolate(values: Float64Array, d: number): void {
   }
 }
 
+/** Finds the cell of a place, and where in the cell it is. */
+export interface CellLocator {
+  /** Length 3: place inside the cell found last, in [0, 1] per axis. */
+  readonly local: Float64Array;
+  /** Length 3: whether the place found last was moved to an edge of the box. */
+  readonly outside: Uint8Array;
+  /** Number of the cell; the first axis is the slowest. */
+  find(place: Float64Array): number;
+}
+
+export function createCellLocator(
+  spec: SplineSpec,
+  cells: readonly number[],
+  widths: readonly number[],
+): CellLocator {
+  const d = cells.length;
+  const scale = Float64Array.from(widths, (width) => 1 / width);
+  const low = Float64Array.from(spec.low);
+  const counts = Int32Array.from(cells);
+  const wraps = Uint8Array.from(spec.periods, (period) => (period > 0 ? 1 : 0));
+  const local = new Float64Array(3);
+  const outside = new Uint8Array(3);
+  return {
+    local,
+    outside,
+    find(place) {
+      let cell = 0;
+      for (let axis = 0; axis < d; axis++) {
+        const count = counts[axis];
+        let u = (place[axis] - low[axis]) * scale[axis];
+        let moved = 0;
+        if (wraps[axis] === 1) {
+          if (u < 0 || u >= count) u -= Math.floor(u / count) * count;
+        } else if (u < 0) {
+          u = 0;
+          moved = 1;
+        } else if (u > count) {
+          u = count;
+          moved = 1;
+        }
+        let index = u | 0;
+        if (index >= count) index = count - 1;
+        local[axis] = u - index;
+        outside[axis] = moved;
+        cell = cell * count + index;
+      }
+      return cell;
+    },
+  };
+}
+
 function createEvaluator(
   d: number,
   sums: number,
@@ -152,28 +204,7 @@ function createEvaluator(
   widths: readonly number[],
   table: Float64Array,
 ): SumEvaluator {
-  const scale = Float64Array.from(widths, (width) => 1 / width);
-  const low = Float64Array.from(spec.low);
-  const counts = Int32Array.from(cells);
-  const wraps = Uint8Array.from(spec.periods, (period) => (period > 0 ? 1 : 0));
-  const local = new Float64Array(3);
-  /** Cell number of a place; leaves the place inside the cell in `local`. */
-  const locate = (place: Float64Array): number => {
-    let cell = 0;
-    for (let axis = 0; axis < d; axis++) {
-      const count = counts[axis];
-      let u = (place[axis] - low[axis]) * scale[axis];
-      if (wraps[axis] === 1) {
-        if (u < 0 || u >= count) u -= Math.floor(u / count) * count;
-      } else if (u < 0) u = 0;
-      else if (u > count) u = count;
-      let index = u | 0;
-      if (index >= count) index = count - 1;
-      local[axis] = u - index;
-      cell = cell * count + index;
-    }
-    return cell;
-  };
+  const { local, find: locate } = createCellLocator(spec, cells, widths);
 
   if (d === 1) {
     return (place, out, outOffset) => {

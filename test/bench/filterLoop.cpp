@@ -49,7 +49,7 @@ static inline void readSplines(double place, Node &node) {
 
 static inline void transition(double x, double k, double h, double *out) {
   double size = std::max(2 * x, std::sqrt(std::fabs(k)) * 1.5);
-  int terms = size < 0.05 ? 6 : size < 0.3 ? 9 : 14;
+  int terms = size < 0.09 ? 6 : size < 0.23 ? 8 : size < 0.5 ? 10 : size < 0.82 ? 12 : 14;
   double r = 0, s = 1, v = 0, c = 0, w = 0, R = 0, S = 1, C = 0, V = 0, W = 0, I = 0;
   for (int j = 0; j < terms; j++) {
     const double q = 1.0 / (j + 1);

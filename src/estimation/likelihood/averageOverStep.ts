@@ -20,13 +20,7 @@ export interface StepAverage {
    *
    * @param spreads  length d: δ, length
    */
-  apply(
-    reader: CoefficientReader,
-    parameters: Float64Array,
-    spreads: Float64Array,
-    force: Float64Array,
-    noise: Float64Array,
-  ): void;
+  apply(reader: CoefficientReader, spreads: Float64Array, force: Float64Array, noise: Float64Array): void;
 }
 
 /** @param read  writes the diffusion matrix, shape (d, d), of the weighted sums of its components */
@@ -47,12 +41,12 @@ export function createStepAverage(
   const forceChange = new Float64Array(d);
   const change = new Float64Array(d * d);
   return {
-    apply(reader, parameters, spreads, force, noise) {
+    apply(reader, spreads, force, noise) {
       forceChange.fill(0);
       change.fill(0);
       for (let axis = 0; axis < d; axis++) {
         for (const sign of [-1, 1]) {
-          probe(reader, parameters, axis, sign * reach * spreads[axis], shiftedForce, sums);
+          probe(reader, axis, sign * reach * spreads[axis], shiftedForce, sums);
           read(sums, shifted);
           for (let i = 0; i < d; i++) forceChange[i] += weight * (shiftedForce[i] - force[i]);
           for (let i = 0; i < d * d; i++) change[i] += weight * (shifted[i] - noise[i]);

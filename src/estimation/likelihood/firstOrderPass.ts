@@ -17,9 +17,14 @@ import { createMatrixField } from './matrixFields.js';
 import { measureCells } from './measureCells.js';
 import type { PassSetting, PathObserver, PathPass } from './PathPass.js';
 import { passOverTracks } from './passOverTracks.js';
-import { type CoefficientReader, createReader, readCoefficients } from './readCoefficients.js';
-import { spreadScore } from './spreadScore.js';
-import { growTape, UPDATE_SIZE } from './tape.js';
+import { type CoefficientReader, createReader, prepareReader, readCoefficients } from './readCoefficients.js';
+import { spreadScores } from './spreadScore.js';
+import { FORCE, growTape, NOISE, OWN, RECORD_SIZE, SLOPE, type Tape, UPDATE_SIZE } from './tape.js';
+
+const DECAY = OWN;
+/** Displacement per unit of drift, variance per unit of diffusion. */
+const PER_DRIFT = OWN + 1;
+const PER_DIFFUSION = OWN + 2;
 
 const LONGEST_RELAXATION = 0.5; // |κ| h of one substep
 const LONGEST_PATH = 0.5; // cells of the finest basis a substep may drift or diffuse
@@ -50,7 +55,8 @@ export function createFirstOrderPass(
   return passOverTracks(tracks, layout, setting, {
     fewest: 2,
     errorVariance: state.errorVariance,
-    filter: (parameters, start, end, observer) => filterTrack(state, parameters, start, end, observer),
+    prepare: (parameters) => prepareReader(state, parameters),
+    filter: (_, start, end, observer) => filterTrack(state, start, end, observer),
     smooth: (_, start, end, scores, observer) => smoothTrack(state, start, end, scores, observer),
   });
 }
@@ -75,7 +81,6 @@ interface PassState extends CoefficientReader {
 
 function filterTrack(
   state: PassState,
-  parameters: Float64Array,
   start: number,
   end: number,
   observer: PathObserver | undefined,
@@ -101,28 +106,28 @@ function filterTrack(
     growTape(tape, node, row - start);
     tape.firstNode[row - start] = node;
     place.set(mean);
-    readCoefficients(state, parameters, node);
+    readCoefficients(state, node);
     const substeps = countSubsteps(tape, node, cellWidths, interval);
     const h = interval / substeps;
     for (let sub = 0; sub < substeps; sub++, node++) {
       growTape(tape, node, row - start);
       if (sub > 0) {
         place.set(mean);
-        readCoefficients(state, parameters, node);
+        readCoefficients(state, node);
       }
-      tape.step[node] = h;
-      if (state.average) averageNode(state, state.average, parameters, node, h);
+      if (state.average) averageNode(state, state.average, node, h);
       for (let axis = 0; axis < d; axis++) {
-        const at = node * d + axis;
-        const x = tape.slope[at] * h;
-        tape.state[at * 5] = mean[axis];
-        tape.state[at * 5 + 1] = variance[axis];
+        const { records } = tape;
+        const at = (node * d + axis) * RECORD_SIZE;
+        const x = records[at + SLOPE] * h;
         const decay = Math.exp(-x);
-        tape.state[at * 5 + 2] = decay;
-        tape.state[at * 5 + 3] = h * lossRate(x); // displacement per unit of drift
-        tape.state[at * 5 + 4] = 2 * h * lossRate(2 * x); // variance per unit of diffusion
-        mean[axis] += tape.force[at] * tape.state[at * 5 + 3];
-        variance[axis] = decay * decay * variance[axis] + tape.noise[at] * tape.state[at * 5 + 4];
+        const perDrift = h * lossRate(x);
+        const perDiffusion = 2 * h * lossRate(2 * x);
+        records[at + DECAY] = decay;
+        records[at + PER_DRIFT] = perDrift;
+        records[at + PER_DIFFUSION] = perDiffusion;
+        mean[axis] += records[at + FORCE] * perDrift;
+        variance[axis] = decay * decay * variance[axis] + records[at + NOISE] * perDiffusion;
       }
     }
     for (let axis = 0; axis < d; axis++) {
@@ -147,25 +152,21 @@ function filterTrack(
 }
 
 /** Takes drift and diffusion of a node for their means over the step. */
-function averageNode(
-  state: PassState,
-  average: StepAverage,
-  parameters: Float64Array,
-  node: number,
-  h: number,
-): void {
+function averageNode(state: PassState, average: StepAverage, node: number, h: number): void {
   const { tape, variance, spreads, drift, diffusion } = state;
   const d = variance.length;
-  const at = node * d;
+  const { records } = tape;
   for (let axis = 0; axis < d; axis++) {
-    spreads[axis] = Math.sqrt(variance[axis] + tape.noise[at + axis] * h);
-    drift[axis] = tape.force[at + axis];
-    diffusion[axis * d + axis] = tape.noise[at + axis];
+    const at = (node * d + axis) * RECORD_SIZE;
+    spreads[axis] = Math.sqrt(variance[axis] + records[at + NOISE] * h);
+    drift[axis] = records[at + FORCE];
+    diffusion[axis * d + axis] = records[at + NOISE];
   }
-  average.apply(state, parameters, spreads, drift, diffusion);
+  average.apply(state, spreads, drift, diffusion);
   for (let axis = 0; axis < d; axis++) {
-    tape.force[at + axis] = drift[axis];
-    tape.noise[at + axis] = diffusion[axis * d + axis];
+    const at = (node * d + axis) * RECORD_SIZE;
+    records[at + FORCE] = drift[axis];
+    records[at + NOISE] = diffusion[axis * d + axis];
   }
 }
 
@@ -177,21 +178,21 @@ function lossRate(x: number): number {
 
 /** Steps to divide an interval into, from what was read at its first node. */
 export function countSubsteps(
-  tape: PassState['tape'],
+  { records }: Tape,
   node: number,
   cellWidths: Float64Array,
   interval: number,
 ): number {
   let most = 1;
   for (let axis = 0; axis < cellWidths.length; axis++) {
-    const at = node * cellWidths.length + axis;
-    const path = (Math.abs(tape.force[at]) * interval) / cellWidths[axis];
-    const spread = Math.sqrt(2 * tape.noise[at] * interval) / cellWidths[axis];
+    const at = (node * cellWidths.length + axis) * RECORD_SIZE;
+    const path = (Math.abs(records[at + FORCE]) * interval) / cellWidths[axis];
+    const spread = Math.sqrt(2 * records[at + NOISE] * interval) / cellWidths[axis];
     most = Math.max(
       most,
       path / LONGEST_PATH,
       (spread / LONGEST_PATH) ** 2,
-      (Math.abs(tape.slope[at]) * interval) / LONGEST_RELAXATION,
+      (Math.abs(records[at + SLOPE]) * interval) / LONGEST_RELAXATION,
     );
   }
   return Math.min(MOST_SUBSTEPS, Math.ceil(most - 1e-9));
@@ -240,16 +241,17 @@ function smoothTrack(
     }
     for (let node = tape.firstNode[row - start + 1] - 1; node >= tape.firstNode[row - start]; node--) {
       for (let axis = 0; axis < d; axis++) {
-        const at = node * d + axis;
-        const decay = tape.state[at * 5 + 2];
-        tape.forceScore[axis] = adjointMean[axis] * tape.state[at * 5 + 3];
-        tape.noiseScore[axis] = adjointVariance[axis] * tape.state[at * 5 + 4] * tape.noise[at];
+        const { records } = tape;
+        const at = (node * d + axis) * RECORD_SIZE;
+        const decay = records[at + DECAY];
+        const { force, noise } = state.targets;
+        force.values[force.first + axis * force.step] += adjointMean[axis] * records[at + PER_DRIFT];
+        noise.values[noise.first + axis * noise.step] +=
+          adjointVariance[axis] * records[at + PER_DIFFUSION] * records[at + NOISE];
         adjointMean[axis] *= decay;
         adjointVariance[axis] *= decay * decay;
       }
-      if (!scores) continue;
-      spreadScore(layout, tape, node, layout.force, tape.forceScore, scores, block);
-      spreadScore(layout, tape, node, layout.noise, tape.noiseScore, scores, block);
+      if (scores) spreadScores(state, node, scores, block);
     }
   }
   for (let axis = 0; axis < d; axis++) {

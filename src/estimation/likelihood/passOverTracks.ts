@@ -9,6 +9,8 @@ export interface TrackPass {
   readonly fewest: number;
   /** Length d, filled before every run: localization error variances that hold for all positions alike. */
   readonly errorVariance: Float64Array;
+  /** Goes before the first track of every run. */
+  prepare(parameters: Float64Array): void;
   /** Log-likelihood of the track. */
   filter(parameters: Float64Array, start: number, end: number, observer: PathObserver | undefined): number;
   smooth(
@@ -25,12 +27,13 @@ export function passOverTracks(
   tracks: TrackSet,
   layout: LikelihoodLayout,
   setting: PassSetting,
-  { fewest, errorVariance, filter, smooth }: TrackPass,
+  { fewest, errorVariance, prepare, filter, smooth }: TrackPass,
 ): PathPass {
   return {
     run(parameters, scores, observer) {
       scores?.fill(0);
       readErrorVariances(layout, setting, parameters, errorVariance);
+      prepare(parameters);
       let logLikelihood = 0;
       for (let track = 0; track < countTracks(tracks); track++) {
         const start = tracks.trackOffsets[track];

@@ -1,7 +1,22 @@
-/** The coefficients at a place, written to the tape together with the basis functions they came from. */
+/** The coefficients at a place, written to the tape; and on the way back the functions they came from. */
 
+import { createSumReader, type SumReader, type SumSpec } from '../../fields/sumReader.js';
 import type { FieldSlot, LikelihoodLayout } from './layout.js';
-import { createTape, type Tape } from './tape.js';
+import { createTape, FORCE, FRICTION, FRICTION_SLOPE, NOISE, RECORD_SIZE, SLOPE, type Tape } from './tape.js';
+
+/** A field as its basis reads it: component c is sum `first` + c. */
+export interface FieldReading {
+  readonly slot: FieldSlot;
+  readonly reader: SumReader;
+  readonly first: number;
+}
+
+/** Where scores of a field along axis a are added: entry `first` + a · `step`. */
+export interface ScoreTarget {
+  readonly values: Float64Array;
+  readonly first: number;
+  readonly step: number;
+}
 
 /** What reading coefficients works on. */
 export interface CoefficientReader {
@@ -9,118 +24,129 @@ export interface CoefficientReader {
   readonly tape: Tape;
   /** Length d: where to read, length. */
   readonly place: Float64Array;
-  readonly derivativeValues: Float64Array;
-  readonly derivativeIndices: Int32Array;
-}
-
-export function createReader(layout: LikelihoodLayout): CoefficientReader {
-  const support = Math.max(1, ...layout.bases.map((basis) => basis.support));
-  return {
-    layout,
-    tape: createTape(layout),
-    place: new Float64Array(layout.dimensions),
-    derivativeValues: new Float64Array(support),
-    derivativeIndices: new Int32Array(support),
+  /** One per distinct basis in use. */
+  readonly readers: readonly SumReader[];
+  /** Null for fields that are zero by the plan. */
+  readonly force: FieldReading | null;
+  readonly friction: FieldReading | null;
+  readonly noise: FieldReading;
+  readonly targets: {
+    readonly force: ScoreTarget;
+    readonly friction: ScoreTarget;
+    readonly noise: ScoreTarget;
   };
 }
 
-/** Evaluates every field at `place` into the tape: force and its own slope, friction, noise, and the basis values. */
-export function readCoefficients(state: CoefficientReader, parameters: Float64Array, node: number): void {
-  const { layout, tape } = state;
+/** @param allSlopes  whether the slopes of force and friction are wanted along all axes, or each along its own */
+export function createReader(layout: LikelihoodLayout, allSlopes = false): CoefficientReader {
   const d = layout.dimensions;
-  readForce(state, parameters, node);
-  const { friction, noise } = layout;
-  const at = node * d;
-  if (friction && friction.basis >= 0) readPositive(state, parameters, friction, tape.friction, at);
-  readPositive(state, parameters, noise, tape.noise, at);
-  for (let axis = 0; axis < d; axis++) readSlopes(state, parameters, at, axis);
-}
-
-/** Evaluates the bases at `place` into the tape, and the force. */
-export function readForce(state: CoefficientReader, parameters: Float64Array, node: number): void {
-  const { layout, tape, place } = state;
-  const d = layout.dimensions;
-  for (let b = 0; b < layout.bases.length; b++) {
-    const count = layout.bases[b].evaluateInto(place, 0, tape.scratchIndices[b], tape.scratchValues[b]);
-    const { support } = layout.bases[b];
-    if (count < support) tape.scratchValues[b].fill(0, count);
-    const base = node * support;
-    const indices = tape.indices[b];
-    const values = tape.values[b];
-    for (let i = 0; i < support; i++) {
-      indices[base + i] = tape.scratchIndices[b][i];
-      values[base + i] = tape.scratchValues[b][i];
+  const axes = Array.from({ length: d }, (_, axis) => axis);
+  const sums: SumSpec[][] = layout.bases.map(() => []);
+  const firstOf = (slot: FieldSlot | null, bends: boolean): number => {
+    if (!slot || slot.basis < 0) return 0;
+    const own = sums[slot.basis];
+    const first = own.length;
+    for (let component = 0; component < slot.components; component++) {
+      const everywhere = allSlopes || slot.components !== d;
+      own.push({
+        offset: slot.offset + component * slot.functionCount,
+        slopeAxes: bends ? (everywhere ? axes : [component]) : [],
+      });
     }
-  }
-  const { force } = layout;
-  const at = node * d;
-  if (force.basis >= 0) {
-    const { support } = layout.bases[force.basis];
-    const indices = tape.scratchIndices[force.basis];
-    const values = tape.scratchValues[force.basis];
-    for (let axis = 0; axis < d; axis++) {
-      const offset = force.offset + axis * force.functionCount;
-      let sum = 0;
-      for (let i = 0; i < support; i++) sum += parameters[offset + indices[i]] * values[i];
-      tape.force[at + axis] = sum;
-    }
-  }
-}
-
-/** Writes the weighted sums of all components of a field at a node, before their link. */
-export function sumComponents(
-  { layout, tape }: CoefficientReader,
-  parameters: Float64Array,
-  slot: FieldSlot,
-  node: number,
-  out: Float64Array,
-): void {
-  if (slot.basis < 0) return;
-  const { support } = layout.bases[slot.basis];
-  weighComponents(
-    parameters,
-    slot,
-    tape.indices[slot.basis],
-    tape.values[slot.basis],
-    node * support,
-    support,
-    out,
+    return first;
+  };
+  const firsts = [firstOf(layout.force, true), firstOf(layout.friction, true), firstOf(layout.noise, false)];
+  const readers = layout.bases.map((basis, b) =>
+    sums[b].length > 0 ? createSumReader(basis, sums[b]) : null,
   );
+  const reading = (slot: FieldSlot | null, first: number): FieldReading | null => {
+    const reader = slot && slot.basis >= 0 ? readers[slot.basis] : null;
+    return slot && reader && { slot, reader, first };
+  };
+  const force = reading(layout.force, firsts[0]);
+  const friction = reading(layout.friction, firsts[1]);
+  const noise = reading(layout.noise, firsts[2]) as FieldReading; // noise is always fitted
+  const target = (field: FieldReading | null): ScoreTarget =>
+    field
+      ? { values: field.reader.scores, first: field.first, step: field.slot.components === 1 ? 0 : 1 }
+      : { values: new Float64Array(d), first: 0, step: 1 }; // read by nobody
+  return {
+    layout,
+    tape: createTape(layout),
+    place: new Float64Array(d),
+    readers: readers.filter((reader) => reader !== null),
+    force,
+    friction,
+    noise,
+    targets: { force: target(force), friction: target(friction), noise: target(noise) },
+  };
+}
+
+/** Takes new parameters; goes before all reading. */
+export function prepareReader({ readers }: CoefficientReader, parameters: Float64Array): void {
+  for (const reader of readers) reader.prepare(parameters);
+}
+
+/** Evaluates every field at `place`: force and its own slope, friction, noise; onto the records of a node. */
+export function readCoefficients(state: CoefficientReader, node: number): void {
+  const { tape, force, friction, noise } = state;
+  const { records, dimensions: d } = tape;
+  readNode(state, node);
+  let gamma = 0;
+  let spread = 0;
+  for (let axis = 0; axis < d; axis++) {
+    const at = (node * d + axis) * RECORD_SIZE;
+    records[at + FORCE] = force === null ? 0 : force.reader.values[force.first + axis];
+    records[at + SLOPE] = force === null ? 0 : -force.reader.slopes[(force.first + axis) * d + axis];
+    if (friction !== null) {
+      const { reader, slot } = friction;
+      const sum = friction.first + (slot.components === 1 ? 0 : axis);
+      if (axis === 0 || slot.components > 1) gamma = Math.exp(reader.values[sum]);
+      records[at + FRICTION] = gamma;
+      records[at + FRICTION_SLOPE] = gamma * reader.slopes[sum * d + axis];
+    }
+    if (axis === 0 || noise.slot.components > 1) spread = Math.exp(noise.reader.values[noise.first + axis]);
+    records[at + NOISE] = spread;
+  }
+}
+
+/** Reads all bases at `place` and keeps what is needed to recall it. */
+export function readNode({ readers, place }: CoefficientReader, node: number): void {
+  for (let i = 0; i < readers.length; i++) {
+    readers[i].read(place);
+    readers[i].keep(node);
+  }
+}
+
+/** Copies the weighted sums of all components of a field, read last, before their link. */
+export function copySums(field: FieldReading | null, out: Float64Array): void {
+  if (!field) return;
+  const { slot, reader, first } = field;
+  for (let component = 0; component < slot.components; component++)
+    out[component] = reader.values[first + component];
+}
+
+/** Copies their derivatives along an axis. */
+export function copySlopes(field: FieldReading, axis: number, dimensions: number, out: Float64Array): void {
+  const { slot, reader, first } = field;
+  for (let component = 0; component < slot.components; component++)
+    out[component] = reader.slopes[(first + component) * dimensions + axis];
 }
 
 /** Writes force and weighted sums of the noise's components at `place` moved along an axis. */
 export function probe(
-  { layout, place, derivativeIndices, derivativeValues }: CoefficientReader,
-  parameters: Float64Array,
+  { place, readers, force, noise }: CoefficientReader,
   axis: number,
   shift: number,
-  force: Float64Array,
+  forceOut: Float64Array,
   noiseSums: Float64Array,
 ): void {
   const centre = place[axis];
   place[axis] = centre + shift;
-  const shared = layout.force.basis === layout.noise.basis;
-  let count = layout.bases[layout.noise.basis].evaluateInto(place, 0, derivativeIndices, derivativeValues);
-  weighComponents(parameters, layout.noise, derivativeIndices, derivativeValues, 0, count, noiseSums);
-  if (layout.force.basis >= 0) {
-    if (!shared)
-      count = layout.bases[layout.force.basis].evaluateInto(place, 0, derivativeIndices, derivativeValues);
-    weighComponents(parameters, layout.force, derivativeIndices, derivativeValues, 0, count, force);
-  }
+  for (let i = 0; i < readers.length; i++) readers[i].readValues(place);
+  copySums(force, forceOut);
+  copySums(noise, noiseSums);
   place[axis] = centre;
-}
-
-/** Writes the derivatives of the weighted sums along an axis, at `place`. */
-export function sumSlopes(
-  { layout, place, derivativeIndices, derivativeValues }: CoefficientReader,
-  parameters: Float64Array,
-  slot: FieldSlot,
-  axis: number,
-  out: Float64Array,
-): void {
-  const basis = layout.bases[slot.basis];
-  const count = basis.differentiateInto(place, 0, axis, derivativeIndices, derivativeValues);
-  weighComponents(parameters, slot, derivativeIndices, derivativeValues, 0, count, out);
 }
 
 /** Writes the weighted sum of each component, from `count` basis functions that start at `from`. */
@@ -138,58 +164,5 @@ export function weighComponents(
     let sum = 0;
     for (let i = from; i < from + count; i++) sum += parameters[offset + indices[i]] * values[i];
     out[component] = sum;
-  }
-}
-
-/** Derivatives of force (with a minus) and friction along their own axis. */
-function readSlopes(state: CoefficientReader, parameters: Float64Array, at: number, axis: number): void {
-  const { layout, tape, place, derivativeIndices, derivativeValues } = state;
-  const { force, friction } = layout;
-  let differentiated = -1;
-  let count = 0;
-  if (force.basis >= 0 && layout.bases[force.basis].spec.kind !== 'constant') {
-    count = layout.bases[force.basis].differentiateInto(place, 0, axis, derivativeIndices, derivativeValues);
-    differentiated = force.basis;
-    const offset = force.offset + axis * force.functionCount;
-    let sum = 0;
-    for (let i = 0; i < count; i++) sum -= parameters[offset + derivativeIndices[i]] * derivativeValues[i];
-    tape.slope[at + axis] = sum;
-  }
-  if (!friction || friction.basis < 0 || layout.bases[friction.basis].spec.kind === 'constant') return;
-  if (friction.basis !== differentiated)
-    count = layout.bases[friction.basis].differentiateInto(
-      place,
-      0,
-      axis,
-      derivativeIndices,
-      derivativeValues,
-    );
-  const component = friction.components === layout.dimensions ? axis : 0;
-  const offset = friction.offset + component * friction.functionCount;
-  let sum = 0;
-  for (let i = 0; i < count; i++) sum += parameters[offset + derivativeIndices[i]] * derivativeValues[i];
-  tape.frictionSlope[at + axis] = sum * tape.friction[at + axis];
-}
-
-/** exp of a weighted sum, per axis or the same on all. */
-function readPositive(
-  state: CoefficientReader,
-  parameters: Float64Array,
-  slot: LikelihoodLayout['noise'],
-  out: Float64Array,
-  at: number,
-): void {
-  const { layout, tape } = state;
-  const indices = tape.scratchIndices[slot.basis];
-  const values = tape.scratchValues[slot.basis];
-  const { support } = layout.bases[slot.basis];
-  const d = layout.dimensions;
-  for (let component = 0; component < slot.components; component++) {
-    const offset = slot.offset + component * slot.functionCount;
-    let sum = 0;
-    for (let i = 0; i < support; i++) sum += parameters[offset + indices[i]] * values[i];
-    const value = Math.exp(sum);
-    if (slot.components === d) out[at + component] = value;
-    else for (let axis = 0; axis < d; axis++) out[at + axis] = value;
   }
 }

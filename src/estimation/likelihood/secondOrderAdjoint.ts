@@ -2,9 +2,11 @@
 
 import type { PathObserver } from './PathPass.js';
 import type { PassState } from './secondOrderState.js';
-import { spreadScore } from './spreadScore.js';
-import { UPDATE_SIZE } from './tape.js';
-import { TRANSITION_SIZE, transitionSlopesInto } from './transition.js';
+import { spreadScores } from './spreadScore.js';
+import { FORCE, FRICTION, NOISE, OWN, RECORD_SIZE, STEP, UPDATE_SIZE } from './tape.js';
+import { transitionSlopesInto } from './transition.js';
+
+const TRANSITION = OWN + 3;
 
 /** The adjoint of the filter, from the last position of a track back to the first. */
 export function smoothTrack(
@@ -14,7 +16,7 @@ export function smoothTrack(
   scores: Float64Array | null,
   observer: PathObserver | undefined,
 ): void {
-  const { tracks, layout, setting, tape, adjoint, slopes, errorVariance } = state;
+  const { tracks, layout, setting, tape, adjoint, errorVariance } = state;
   const d = layout.dimensions;
   adjoint.fill(0);
   for (let row = end - 1; row > start; row--) {
@@ -52,10 +54,7 @@ export function smoothTrack(
       adjoint[base] = pulled + counted * scaled;
       if (observer) observeState(state, row, axis, slot, observer);
     }
-    const first = tape.firstNode[row - start];
-    for (let node = tape.firstNode[row - start + 1] - 1; node >= first; node--) {
-      stepBack(state, node, scores, block, slopes);
-    }
+    stepBack(state, tape.firstNode[row - start], tape.firstNode[row - start + 1] - 1, scores, block);
   }
   if (scores && layout.errorOffset >= 0) {
     const block = setting.blockOfPosition[start] * layout.size;
@@ -77,64 +76,68 @@ export function smoothTrack(
   }
 }
 
-/** Carries the adjoint back over one step and adds the step's share to the score of its block. */
+/**
+ * Carries the adjoint back over the steps `first` to `last` and adds their share to the scores of a block. Arrays are
+ * looked up once, for this is the innermost loop.
+ */
 function stepBack(
-  { layout, tape, adjoint }: PassState,
-  node: number,
+  state: PassState,
+  first: number,
+  last: number,
   scores: Float64Array | null,
   block: number,
-  slopes: Float64Array,
 ): void {
-  const { transition } = tape;
-  const d = layout.dimensions;
-  const h = tape.step[node];
-  for (let axis = 0; axis < d; axis++) {
-    const at = node * d + axis;
-    const base = axis * 5;
-    const friction = tape.friction[at];
-    const noise = tape.noise[at];
-    const force = tape.force[at];
-    const slot = at * TRANSITION_SIZE;
-    const aqq = transition[slot];
-    const aqv = transition[slot + 1];
-    const avq = transition[slot + 2];
-    const avv = transition[slot + 3];
-    const gq = adjoint[base];
-    const gv = adjoint[base + 1];
-    const bqq = adjoint[base + 2];
-    const bqv = adjoint[base + 3];
-    const bvv = adjoint[base + 4];
-    if (scores) {
-      transitionSlopesInto(friction, h, slopes);
-      const v = tape.state[at * 5 + 1];
-      const pqv = tape.state[at * 5 + 3];
-      const pvv = tape.state[at * 5 + 4];
-      const crossQ = aqq * pqv + aqv * pvv; // (A P)_qv and (A P)_vv
-      const crossV = avq * pqv + avv * pvv;
-      tape.forceScore[axis] = gq * transition[slot + 4] + gv * transition[slot + 5];
-      tape.frictionScore[axis] =
-        friction *
-        ((gq * v + 2 * (bqq * crossQ + bqv * crossV)) * slopes[0] +
-          (gv * v + 2 * (bqv * crossQ + bvv * crossV)) * slopes[1] +
-          force * (gq * slopes[2] + gv * slopes[0]) +
-          noise * (bqq * slopes[3] + 2 * bqv * slopes[4] + bvv * slopes[5]));
-      tape.noiseScore[axis] =
-        noise * (bqq * transition[slot + 6] + 2 * bqv * transition[slot + 7] + bvv * transition[slot + 8]);
+  const { tape, adjoint, slopes, targets } = state;
+  const { records } = tape;
+  const { values: forceScores, first: firstForce, step: forceStep } = targets.force;
+  const { values: frictionScores, first: firstFriction, step: frictionStep } = targets.friction;
+  const { values: noiseScores, first: firstNoise, step: noiseStep } = targets.noise;
+  const d = tape.dimensions;
+  for (let node = last; node >= first; node--) {
+    for (let axis = 0; axis < d; axis++) {
+      const at = (node * d + axis) * RECORD_SIZE;
+      const base = axis * 5;
+      const slot = at + TRANSITION;
+      const aqq = records[slot];
+      const aqv = records[slot + 1];
+      const avq = records[slot + 2];
+      const avv = records[slot + 3];
+      const gq = adjoint[base];
+      const gv = adjoint[base + 1];
+      const bqq = adjoint[base + 2];
+      const bqv = adjoint[base + 3];
+      const bvv = adjoint[base + 4];
+      if (scores !== null) {
+        const friction = records[at + FRICTION];
+        const noise = records[at + NOISE];
+        transitionSlopesInto(friction, records[at + STEP], slopes);
+        const v = records[at + OWN];
+        const pqv = records[at + OWN + 1];
+        const pvv = records[at + OWN + 2];
+        const crossQ = aqq * pqv + aqv * pvv; // (A P)_qv and (A P)_vv
+        const crossV = avq * pqv + avv * pvv;
+        forceScores[firstForce + axis * forceStep] += gq * records[slot + 4] + gv * records[slot + 5];
+        frictionScores[firstFriction + axis * frictionStep] +=
+          friction *
+          ((gq * v + 2 * (bqq * crossQ + bqv * crossV)) * slopes[0] +
+            (gv * v + 2 * (bqv * crossQ + bvv * crossV)) * slopes[1] +
+            records[at + FORCE] * (gq * slopes[2] + gv * slopes[0]) +
+            noise * (bqq * slopes[3] + 2 * bqv * slopes[4] + bvv * slopes[5]));
+        noiseScores[firstNoise + axis * noiseStep] +=
+          noise * (bqq * records[slot + 6] + 2 * bqv * records[slot + 7] + bvv * records[slot + 8]);
+      }
+      adjoint[base] = aqq * gq + avq * gv;
+      adjoint[base + 1] = aqv * gq + avv * gv;
+      const lqq = bqq * aqq + bqv * avq;
+      const lqv = bqq * aqv + bqv * avv;
+      const lvq = bqv * aqq + bvv * avq;
+      const lvv = bqv * aqv + bvv * avv;
+      adjoint[base + 2] = aqq * lqq + avq * lvq;
+      adjoint[base + 3] = aqq * lqv + avq * lvv;
+      adjoint[base + 4] = aqv * lqv + avv * lvv;
     }
-    adjoint[base] = aqq * gq + avq * gv;
-    adjoint[base + 1] = aqv * gq + avv * gv;
-    const lqq = bqq * aqq + bqv * avq;
-    const lqv = bqq * aqv + bqv * avv;
-    const lvq = bqv * aqq + bvv * avq;
-    const lvv = bqv * aqv + bvv * avv;
-    adjoint[base + 2] = aqq * lqq + avq * lvq;
-    adjoint[base + 3] = aqq * lqv + avq * lvv;
-    adjoint[base + 4] = aqv * lqv + avv * lvv;
+    if (scores !== null) spreadScores(state, node, scores, block);
   }
-  if (!scores) return;
-  spreadScore(layout, tape, node, layout.force, tape.forceScore, scores, block);
-  if (layout.friction) spreadScore(layout, tape, node, layout.friction, tape.frictionScore, scores, block);
-  spreadScore(layout, tape, node, layout.noise, tape.noiseScore, scores, block);
 }
 
 /** Smoothed state at a row: prediction plus prediction covariance times the adjoint. */

@@ -4,8 +4,22 @@ import { pointErrorsOf } from './errorVariances.js';
 import type { PathObserver } from './PathPass.js';
 import { readCoefficients } from './readCoefficients.js';
 import type { PassState } from './secondOrderState.js';
-import { growTape, type Tape, UPDATE_SIZE } from './tape.js';
-import { TRANSITION_SIZE, transitionInto } from './transition.js';
+import {
+  FORCE,
+  FRICTION,
+  FRICTION_SLOPE,
+  growTape,
+  NOISE,
+  OWN,
+  RECORD_SIZE,
+  SLOPE,
+  STEP,
+  type Tape,
+  UPDATE_SIZE,
+} from './tape.js';
+import { transitionInto } from './transition.js';
+
+const TRANSITION = OWN + 3;
 
 const LONGEST_X = 0.5; // Γh of one substep: coefficients are frozen and force slopes summed as series over it
 const LONGEST_PHASE = 0.5; // √|K| h of one substep
@@ -19,7 +33,6 @@ export const MOST_SUBSTEPS = 64;
  */
 export function filterTrack(
   state: PassState,
-  parameters: Float64Array,
   start: number,
   end: number,
   observer: PathObserver | undefined,
@@ -46,8 +59,8 @@ export function filterTrack(
   // What the last step read decides how finely the next is divided: known before its position is.
   growTape(tape, 0, 0);
   for (let axis = 0; axis < d; axis++) place[axis] = filtered[axis * 5];
-  readCoefficients(state, parameters, 0);
-  let steepness = measureSteepness(tape, 0, d);
+  readCoefficients(state, 0);
+  let steepness = measureSteepness(tape, 0);
 
   for (let row = start + 1; row < end; row++) {
     const interval = times[row] - times[row - 1];
@@ -64,50 +77,45 @@ export function filterTrack(
     growTape(tape, node + substeps, row - start);
     tape.firstNode[row - start] = node;
     // Arrays are looked up once a row: they change when the tape grows.
-    const { state: states, force, slope, friction, noise, transition } = tape;
+    const { records } = tape;
     const hasSlope = row > start + 1; // not yet with the diffuse velocity of a start, which would swamp it
     for (let sub = 0; sub < substeps; sub++, node++) {
-      const lastFriction = friction[(node > 0 ? node - 1 : 0) * d];
+      const lastFriction = records[(node > 0 ? node - 1 : 0) * d * RECORD_SIZE + FRICTION];
       const half = h / (2 + lastFriction * h * 0.5); // (1 − e^{−Γh/2})/Γ to second order
       for (let axis = 0; axis < d; axis++) place[axis] = filtered[axis * 5] + filtered[axis * 5 + 1] * half;
-      readCoefficients(state, parameters, node);
-      tape.step[node] = h;
+      readCoefficients(state, node);
       for (let axis = 0; axis < d; axis++) {
-        const at = node * d + axis;
+        const at = (node * d + axis) * RECORD_SIZE;
         const base = axis * 5;
-        if (hasSlope && tape.frictionSlope[at] !== 0) addFrictionSlope(tape, at, h, filtered, base);
-        const slot = at * TRANSITION_SIZE;
-        transitionInto(friction[at], slope[at], h, transition, slot);
+        if (hasSlope && records[at + FRICTION_SLOPE] !== 0) addFrictionSlope(records, at, h, filtered, base);
+        const slot = at + TRANSITION;
+        transitionInto(records[at + FRICTION], records[at + SLOPE], h, records, slot);
         const q = filtered[base];
         const v = filtered[base + 1];
         const pqq = filtered[base + 2];
         const pqv = filtered[base + 3];
         const pvv = filtered[base + 4];
-        const record = at * 5;
-        states[record] = q;
-        states[record + 1] = v;
-        states[record + 2] = pqq;
-        states[record + 3] = pqv;
-        states[record + 4] = pvv;
+        records[at + STEP] = h;
+        records[at + OWN] = v;
+        records[at + OWN + 1] = pqv;
+        records[at + OWN + 2] = pvv;
         const middle = place[axis];
-        const f = force[at];
-        const n = noise[at];
-        const aqq = transition[slot];
-        const aqv = transition[slot + 1];
-        const avq = transition[slot + 2];
-        const avv = transition[slot + 3];
+        const f = records[at + FORCE];
+        const n = records[at + NOISE];
+        const aqq = records[slot];
+        const aqv = records[slot + 1];
+        const avq = records[slot + 2];
+        const avv = records[slot + 3];
         const u = q - middle;
-        filtered[base] = middle + aqq * u + aqv * v + f * transition[slot + 4];
-        filtered[base + 1] = avq * u + avv * v + f * transition[slot + 5];
-        filtered[base + 2] =
-          aqq * aqq * pqq + 2 * aqq * aqv * pqv + aqv * aqv * pvv + n * transition[slot + 6];
+        filtered[base] = middle + aqq * u + aqv * v + f * records[slot + 4];
+        filtered[base + 1] = avq * u + avv * v + f * records[slot + 5];
+        filtered[base + 2] = aqq * aqq * pqq + 2 * aqq * aqv * pqv + aqv * aqv * pvv + n * records[slot + 6];
         filtered[base + 3] =
-          aqq * avq * pqq + (aqq * avv + aqv * avq) * pqv + aqv * avv * pvv + n * transition[slot + 7];
-        filtered[base + 4] =
-          avq * avq * pqq + 2 * avq * avv * pqv + avv * avv * pvv + n * transition[slot + 8];
+          aqq * avq * pqq + (aqq * avv + aqv * avq) * pqv + aqv * avv * pvv + n * records[slot + 7];
+        filtered[base + 4] = avq * avq * pqq + 2 * avq * avv * pqv + avv * avv * pvv + n * records[slot + 8];
       }
     }
-    steepness = measureSteepness(tape, node - 1, d);
+    steepness = measureSteepness(tape, node - 1);
     const counted = row > start + 1;
     for (let axis = 0; axis < d; axis++) {
       const at = row * d + axis;
@@ -144,25 +152,32 @@ export function filterTrack(
  * −Γ(m)v̄ − Γ′ Cov(q, v), and its derivative along q is −Γ′v̄. The covariance is the mean over the step, to first
  * order in Γh.
  */
-function addFrictionSlope(tape: Tape, at: number, h: number, filtered: Float64Array, base: number): void {
-  const x = tape.friction[at] * h;
+function addFrictionSlope(
+  records: Float64Array,
+  at: number,
+  h: number,
+  filtered: Float64Array,
+  base: number,
+): void {
+  const slope = records[at + FRICTION_SLOPE];
+  const x = records[at + FRICTION] * h;
   const covariance =
     filtered[base + 3] * (1 - x / 2) +
     ((filtered[base + 4] * h) / 2) * (1 - x) +
-    ((tape.noise[at] * h * h) / 6) * (1 - 0.75 * x);
-  tape.force[at] -= tape.frictionSlope[at] * covariance;
-  tape.slope[at] += tape.frictionSlope[at] * filtered[base + 1];
+    ((records[at + NOISE] * h * h) / 6) * (1 - 0.75 * x);
+  records[at + FORCE] -= slope * covariance;
+  records[at + SLOPE] += slope * filtered[base + 1];
 }
 
 /** Steps per time that Γh and √|K| h ask for at a node. */
-export function measureSteepness(tape: Tape, node: number, d: number): number {
+export function measureSteepness({ records, dimensions: d }: Tape, node: number): number {
   let steepness = 0;
   for (let axis = 0; axis < d; axis++) {
-    const at = node * d + axis;
+    const at = (node * d + axis) * RECORD_SIZE;
     steepness = Math.max(
       steepness,
-      tape.friction[at] / LONGEST_X,
-      Math.sqrt(Math.abs(tape.slope[at])) / LONGEST_PHASE,
+      records[at + FRICTION] / LONGEST_X,
+      Math.sqrt(Math.abs(records[at + SLOPE])) / LONGEST_PHASE,
     );
   }
   return Math.min(steepness, 1e300);

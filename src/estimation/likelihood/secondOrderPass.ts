@@ -23,7 +23,7 @@ import { smoothTrack } from './secondOrderAdjoint.js';
 import { filterTrack } from './secondOrderFilter.js';
 import type { PassState } from './secondOrderState.js';
 import { SLOPE_SIZE } from './transition.js';
-import { createReader } from './readCoefficients.js';
+import { createReader, prepareReader } from './readCoefficients.js';
 import { measureCells } from './measureCells.js';
 import { measureMotion } from './measureMotion.js';
 
@@ -50,7 +50,8 @@ export function createSecondOrderPass(
   return passOverTracks(tracks, layout, setting, {
     fewest: 3,
     errorVariance: state.errorVariance,
-    filter: (parameters, start, end, observer) => filterTrack(state, parameters, start, end, observer),
+    prepare: (parameters) => prepareReader(state, parameters),
+    filter: (_, start, end, observer) => filterTrack(state, start, end, observer),
     smooth: (_, start, end, scores, observer) => smoothTrack(state, start, end, scores, observer),
   });
 }

@@ -121,8 +121,8 @@ function createAxis(count: number, low: number, high: number, period: number, hi
   };
 }
 
-/** The degree + 1 uniform B-splines that live on a cell, at t in [0, 1]. */
-function fillWeights(degree: number, t: number, weights: Float64Array): void {
+/** Writes the degree + 1 uniform B-splines that live on a cell, at t in [0, 1]. */
+export function fillWeights(degree: number, t: number, weights: Float64Array): void {
   const r = 1 - t;
   if (degree === 3) {
     weights[0] = (r * r * r) / 6;

@@ -1,8 +1,8 @@
 /** The backward half of the joint likelihood: the adjoint of the filter, which gives scores and smoothed states. */
 
 import type { PathObserver } from '../PathPass.js';
-import { sumComponents } from '../readCoefficients.js';
-import { spreadComponents, spreadScore } from '../spreadScore.js';
+import { type FieldReading, weighComponents } from '../readCoefficients.js';
+import { spreadScores } from '../spreadScore.js';
 import type { JointGroup, JointState } from './jointState.js';
 import { writeSystem } from './jointSystem.js';
 
@@ -95,7 +95,9 @@ function stepBack(
   scores: Float64Array | null,
   block: number,
 ): void {
-  const { layout, tape, groups, second, friction, noise, frictionSlopes, noiseSlopes, matrix, sums } = state;
+  const { layout, groups, second, frictionSlopes, noiseSlopes, matrix, sums } = state;
+  const { force } = state.targets;
+  const { frictionMatrix: friction, noiseMatrix: noise } = state;
   const d = layout.dimensions;
   frictionSlopes.fill(0);
   noiseSlopes.fill(0);
@@ -106,7 +108,7 @@ function stepBack(
     writeSystem(state, group, node);
     group.flow.retreat(
       system,
-      tape.step[node],
+      state.steps[node],
       state.rates[node],
       mean,
       covariance,
@@ -119,7 +121,7 @@ function stepBack(
     const g = axes.length;
     const scale = second ? 1 : 2;
     for (let i = 0; i < g; i++) {
-      tape.forceScore[axes[i]] = slopes.offset[system.driven + i];
+      force.values[force.first + axes[i]] += slopes.offset[system.driven + i];
       for (let j = 0; j < g; j++) {
         if (second) frictionSlopes[axes[i] * d + axes[j]] = -slopes.entries[i * g + j];
         noiseSlopes[axes[i] * d + axes[j]] = scale * slopes.noise[i * g + j];
@@ -127,17 +129,29 @@ function stepBack(
     }
   }
   if (!scores) return;
-  spreadScore(layout, tape, node, layout.force, tape.forceScore, scores, block);
   // The spectral decompositions of the node again.
-  sumComponents(state, parameters, noise.slot, node, sums);
+  for (const reader of state.readers) reader.recall(node);
+  weighRecalled(parameters, state.noise, sums);
   noise.read(sums, matrix);
   noise.score(noiseSlopes, sums);
-  spreadComponents(layout, tape, node, noise.slot, sums, scores, block);
-  if (!friction) return;
-  sumComponents(state, parameters, friction.slot, node, sums);
-  friction.read(sums, matrix);
-  friction.score(frictionSlopes, sums);
-  spreadComponents(layout, tape, node, friction.slot, sums, scores, block);
+  addComponentScores(state.noise, sums);
+  if (friction && state.friction) {
+    weighRecalled(parameters, state.friction, sums);
+    friction.read(sums, matrix);
+    friction.score(frictionSlopes, sums);
+    addComponentScores(state.friction, sums);
+  }
+  spreadScores(state, node, scores, block);
+}
+
+function addComponentScores({ slot, reader, first }: FieldReading, components: Float64Array): void {
+  for (let component = 0; component < slot.components; component++)
+    reader.scores[first + component] += components[component];
+}
+
+/** The weighted sums of a field's components at the node recalled. */
+function weighRecalled(parameters: Float64Array, { slot, reader }: FieldReading, out: Float64Array): void {
+  weighComponents(parameters, slot, reader.indices, reader.weights, 0, reader.indices.length, out);
 }
 
 function closeShutter({ size, blur, meanSlope, covarianceSlope }: JointGroup): void {

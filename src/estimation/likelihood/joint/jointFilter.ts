@@ -4,7 +4,7 @@ import { pointErrorsOf } from '../errorVariances.js';
 import { countSubsteps } from '../firstOrderPass.js';
 import type { PathObserver } from '../PathPass.js';
 import { LONGEST_PATH, measureSteepness } from '../secondOrderFilter.js';
-import { growTape } from '../tape.js';
+import { FRICTION, growTape, RECORD_SIZE, SLOPE } from '../tape.js';
 import { growState, type JointGroup, type JointState } from './jointState.js';
 import { averageNode, readNode, writeSystem } from './jointSystem.js';
 
@@ -18,7 +18,6 @@ const SHUT = 1e-9; // of an interval: the shutter opens at once
  */
 export function filterJointly(
   state: JointState,
-  parameters: Float64Array,
   start: number,
   end: number,
   observer: PathObserver | undefined,
@@ -34,13 +33,12 @@ export function filterJointly(
     tape.firstNode[row - start] = node;
     const settled = row > start + Number(second);
     if (row === start) {
-      if (exposure > 0) node = advance(state, parameters, node, exposure, exposure, false);
+      if (exposure > 0) node = advance(state, node, exposure, exposure, false);
     } else {
       const interval = times[row] - times[row - 1];
       const open = Math.min(exposure, interval);
-      if (interval - open > SHUT * interval)
-        node = advance(state, parameters, node, interval - open, 0, settled);
-      if (open > 0) node = advance(state, parameters, node, open, open, settled);
+      if (interval - open > SHUT * interval) node = advance(state, node, interval - open, 0, settled);
+      if (open > 0) node = advance(state, node, open, open, settled);
     }
     logLikelihood += takeIn(state, start, row, settled, observer);
   }
@@ -73,19 +71,17 @@ function beginTrack(state: JointState, start: number): void {
 /** Moves all groups over a stretch of time; returns the next free node. */
 function advance(
   state: JointState,
-  parameters: Float64Array,
   firstNode: number,
   duration: number,
   window: number,
   settled: boolean,
 ): number {
-  const { tape, second, layout } = state;
-  const d = layout.dimensions;
+  const { tape, second } = state;
   let node = firstNode;
   if (window > 0) for (const group of state.groups) openShutter(group);
   let substeps = 1;
   if (second && node > 0) {
-    const pace = Math.max(measureSteepness(tape, node - 1, d), settled ? measurePace(state) : 0);
+    const pace = Math.max(measureSteepness(tape, node - 1), settled ? measurePace(state) : 0);
     substeps = Math.min(MOST_SUBSTEPS, Math.max(1, Math.ceil(duration * pace - 1e-9)));
   }
   for (let sub = 0; sub < substeps; sub++, node++) {
@@ -93,13 +89,13 @@ function advance(
     growTape(tape, node, 0);
     let step = duration / substeps;
     findPlace(state, node, second ? step : 0);
-    readNode(state, parameters, node, settled ? step : 0);
+    readNode(state, node, settled ? step : 0);
     if (!second && sub === 0) {
       substeps = countSubsteps(tape, node, state.cellWidths, duration);
       step = duration / substeps;
     }
-    if (!second) averageNode(state, parameters, node, step);
-    tape.step[node] = step;
+    if (!second) averageNode(state, node, step);
+    state.steps[node] = step;
     state.windows[node] = window;
     state.opens[node] = sub === 0 && window > 0 ? 1 : 0;
     state.rates[node] = measureRate(state, node) * step;
@@ -135,7 +131,7 @@ function measurePace({ groups, cellWidths }: JointState): number {
 /** Where to read the coefficients: half a step on at second order, where the filter is at first. */
 function findPlace(state: JointState, node: number, step: number): void {
   const { groups, place, origin, tape, layout } = state;
-  const lastFriction = tape.friction[(node > 0 ? node - 1 : 0) * layout.dimensions];
+  const lastFriction = tape.records[(node > 0 ? node - 1 : 0) * layout.dimensions * RECORD_SIZE + FRICTION];
   const half = step / (2 + lastFriction * step * 0.5); // (1 − e^{−Γh/2})/Γ to second order
   for (const { axes, velocity, mean } of groups) {
     axes.forEach((axis, i) => {
@@ -147,9 +143,11 @@ function findPlace(state: JointState, node: number, step: number): void {
 /** The largest rate of the step's system. */
 function measureRate({ tape, layout, second }: JointState, node: number): number {
   let rate = 0;
-  for (let at = node * layout.dimensions; at < (node + 1) * layout.dimensions; at++) {
-    if (second) rate = Math.max(rate, 2 * tape.friction[at], 1.5 * Math.sqrt(tape.slope[at]));
-    else rate = Math.max(rate, 2 * tape.slope[at]);
+  const { records } = tape;
+  for (let axis = 0; axis < layout.dimensions; axis++) {
+    const at = (node * layout.dimensions + axis) * RECORD_SIZE;
+    if (second) rate = Math.max(rate, 2 * records[at + FRICTION], 1.5 * Math.sqrt(records[at + SLOPE]));
+    else rate = Math.max(rate, 2 * records[at + SLOPE]);
   }
   return rate;
 }

@@ -17,6 +17,7 @@ import type { PassSetting, PathPass } from '../PathPass.js';
 import { passOverTracks } from '../passOverTracks.js';
 import { smoothJointly } from './jointAdjoint.js';
 import { filterJointly } from './jointFilter.js';
+import { prepareReader } from '../readCoefficients.js';
 import { createJointState } from './jointState.js';
 
 /**
@@ -34,7 +35,8 @@ export function createJointPass(
   return passOverTracks(tracks, layout, setting, {
     fewest: state.second ? 3 : 2,
     errorVariance: state.errorVariance,
-    filter: (parameters, start, end, observer) => filterJointly(state, parameters, start, end, observer),
+    prepare: (parameters) => prepareReader(state, parameters),
+    filter: (_, start, end, observer) => filterJointly(state, start, end, observer),
     smooth: (parameters, start, end, scores, observer) =>
       smoothJointly(state, parameters, start, end, scores, observer),
   });

@@ -49,8 +49,8 @@ export interface JointState extends CoefficientReader {
   readonly setting: PassSetting;
   readonly second: boolean;
   readonly groups: readonly JointGroup[];
-  readonly friction: MatrixField | null;
-  readonly noise: MatrixField;
+  readonly frictionMatrix: MatrixField | null;
+  readonly noiseMatrix: MatrixField;
   readonly cellWidths: Float64Array;
   readonly errorVariance: Float64Array;
   /** Length d: variances that say nothing of where a track starts (length²) and how fast (length²/time²). */
@@ -72,6 +72,8 @@ export interface JointState extends CoefficientReader {
   windows: Float64Array;
   opens: Uint8Array;
   rates: Float64Array;
+  /** Per node: length of the step, time. */
+  steps: Float64Array;
   /** Scratch: a matrix, slopes along the entries of friction and noise, one number per component or axis. */
   readonly matrix: Float64Array;
   readonly frictionSlopes: Float64Array;
@@ -95,15 +97,15 @@ export function createJointState(
   const empty = new Float64Array(0);
   const { steps, velocities } = measureMotion(tracks);
   return {
-    ...createReader(layout),
+    ...createReader(layout, true),
     tracks,
     setting,
     second,
     groups: (mixed ? [axes] : axes.map((axis) => [axis])).map((own) =>
       createGroup(own, second, exposure > 0),
     ),
-    friction: layout.friction ? createMatrixField(layout.friction, d) : null,
-    noise: createMatrixField(layout.noise, d),
+    frictionMatrix: layout.friction ? createMatrixField(layout.friction, d) : null,
+    noiseMatrix: createMatrixField(layout.noise, d),
     cellWidths: measureCells(layout),
     errorVariance: new Float64Array(d),
     diffusePlace: steps.map((value) => DIFFUSE * value),
@@ -119,6 +121,7 @@ export function createJointState(
     windows: empty,
     opens: new Uint8Array(0),
     rates: empty,
+    steps: empty,
     matrix: new Float64Array(d * d),
     frictionSlopes: new Float64Array(d * d),
     noiseSlopes: new Float64Array(d * d),
@@ -164,6 +167,7 @@ export function growState(state: JointState, node: number, row: number): void {
     state.nodeForces = extend(state.nodeForces, nodes * d);
     state.windows = extend(state.windows, nodes);
     state.rates = extend(state.rates, nodes);
+    state.steps = extend(state.steps, nodes);
     const opens = new Uint8Array(nodes);
     opens.set(state.opens);
     state.opens = opens;

@@ -1,6 +1,7 @@
 /** The linear system of one step: coefficients read at a node, and the same again for the way back. */
 
-import { readForce, sumComponents, sumSlopes } from '../readCoefficients.js';
+import { copySlopes, copySums, readNode as readBases } from '../readCoefficients.js';
+import { FORCE, FRICTION, NOISE, RECORD_SIZE, SLOPE } from '../tape.js';
 import type { JointGroup, JointState } from './jointState.js';
 
 /**
@@ -8,28 +9,35 @@ import type { JointGroup, JointState } from './jointState.js';
  *
  * @param step  length of the step; the mean of −Γ(q)v over an uncertain path is corrected over it (0: is not)
  */
-export function readNode(state: JointState, parameters: Float64Array, node: number, step: number): void {
-  const { layout, tape, second, place, origin, friction, noise, matrix, sums } = state;
+export function readNode(state: JointState, node: number, step: number): void {
+  const { layout, tape, second, place, origin, matrix, sums, forceSlopes: forces } = state;
+  const { frictionMatrix: friction, noiseMatrix: noise } = state;
+  const { records } = tape;
   const d = layout.dimensions;
   const square = node * d * d;
-  readForce(state, parameters, node);
-  for (let axis = 0; axis < d; axis++) state.nodeForces[node * d + axis] = tape.force[node * d + axis];
-  sumComponents(state, parameters, noise.slot, node, sums);
+  readBases(state, node);
+  copySums(state.force, forces);
+  for (let axis = 0; axis < d; axis++) {
+    records[(node * d + axis) * RECORD_SIZE + FORCE] = forces[axis];
+    state.nodeForces[node * d + axis] = forces[axis];
+  }
+  copySums(state.noise, sums);
   noise.read(sums, matrix);
   state.nodeNoises.set(matrix, square);
   if (friction) {
-    sumComponents(state, parameters, friction.slot, node, sums);
+    copySums(state.friction, sums);
     friction.read(sums, matrix);
     state.nodeFrictions.set(matrix, square);
   }
   state.nodeStiffnesses.fill(0, square, square + d * d);
   for (const group of state.groups) {
-    for (const axis of group.axes) readStiffness(state, parameters, node, group, axis);
-    if (friction && second && step > 0) correctFriction(state, parameters, node, group, step);
+    for (const axis of group.axes) readStiffness(state, node, group, axis);
+    if (friction && second && step > 0) correctFriction(state, node, group, step);
   }
   for (let axis = 0; axis < d; axis++) {
     // Diagonal of the noise, sums of magnitudes of the others: what the length of steps goes by.
-    tape.noise[node * d + axis] = state.nodeNoises[square + axis * d + axis];
+    const record = (node * d + axis) * RECORD_SIZE;
+    records[record + NOISE] = state.nodeNoises[square + axis * d + axis];
     let rate = 0;
     let stiffness = 0;
     for (let other = 0; other < d; other++) {
@@ -38,43 +46,38 @@ export function readNode(state: JointState, parameters: Float64Array, node: numb
       state.nodeForces[node * d + axis] +=
         state.nodeStiffnesses[square + axis * d + other] * (place[other] - origin[other]);
     }
-    tape.friction[node * d + axis] = second ? rate : 0;
-    tape.slope[node * d + axis] = stiffness;
+    records[record + FRICTION] = second ? rate : 0;
+    records[record + SLOPE] = stiffness;
   }
 }
 
 /** First order: takes drift and diffusion of a node for their means over the step. */
-export function averageNode(state: JointState, parameters: Float64Array, node: number, step: number): void {
+export function averageNode(state: JointState, node: number, step: number): void {
   const { average, layout, groups, spreads, matrix, forceSlopes: drift } = state;
+  const { records } = state.tape;
   if (!average) return;
   const d = layout.dimensions;
   for (const { axes, size, covariance } of groups) {
     axes.forEach((axis, i) => {
-      spreads[axis] = Math.sqrt(covariance[i * size + i] + state.tape.noise[node * d + axis] * step);
+      spreads[axis] = Math.sqrt(
+        covariance[i * size + i] + state.nodeNoises[node * d * d + axis * (d + 1)] * step,
+      );
     });
   }
   for (let i = 0; i < d * d; i++) matrix[i] = state.nodeNoises[node * d * d + i];
-  for (let axis = 0; axis < d; axis++) drift[axis] = state.tape.force[node * d + axis];
-  average.apply(state, parameters, spreads, drift, matrix);
+  for (let axis = 0; axis < d; axis++) drift[axis] = records[(node * d + axis) * RECORD_SIZE + FORCE];
+  average.apply(state, spreads, drift, matrix);
   state.nodeNoises.set(matrix, node * d * d);
   for (let axis = 0; axis < d; axis++)
-    state.nodeForces[node * d + axis] += drift[axis] - state.tape.force[node * d + axis];
+    state.nodeForces[node * d + axis] += drift[axis] - records[(node * d + axis) * RECORD_SIZE + FORCE];
 }
 
 /** Minus the derivative of the group's forces along an axis. */
-function readStiffness(
-  state: JointState,
-  parameters: Float64Array,
-  node: number,
-  group: JointGroup,
-  along: number,
-): void {
-  const { layout } = state;
-  const { force } = layout;
-  if (force.basis < 0 || layout.bases[force.basis].spec.kind === 'constant') return;
-  const d = layout.dimensions;
-  const slopes = state.forceSlopes;
-  sumSlopes(state, parameters, force, along, slopes);
+function readStiffness(state: JointState, node: number, group: JointGroup, along: number): void {
+  const { force, forceSlopes: slopes } = state;
+  if (!force) return;
+  const d = state.layout.dimensions;
+  copySlopes(force, along, d, slopes);
   for (const axis of group.axes) state.nodeStiffnesses[node * d * d + axis * d + along] = -slopes[axis];
 }
 
@@ -82,16 +85,9 @@ function readStiffness(
  * What a friction that varies over the uncertain path adds: the mean of −Γ(q)v is −Γ(m)v̄ − Σ_l ∂_lΓ Cov(q_l, v), and its
  * derivative along q_l is −∂_lΓ v̄. The covariance is the mean over the step, to first order in Γh.
  */
-function correctFriction(
-  state: JointState,
-  parameters: Float64Array,
-  node: number,
-  group: JointGroup,
-  step: number,
-): void {
-  const { layout, friction, matrix, sums } = state;
-  if (!friction || friction.slot.basis < 0) return;
-  if (layout.bases[friction.slot.basis].spec.kind === 'constant') return;
+function correctFriction(state: JointState, node: number, group: JointGroup, step: number): void {
+  const { layout, friction: reading, frictionMatrix: friction, matrix, sums } = state;
+  if (!friction || !reading || layout.bases[reading.slot.basis].spec.kind === 'constant') return;
   const d = layout.dimensions;
   const square = node * d * d;
   const { axes, size, velocity, mean, covariance } = group;
@@ -99,7 +95,7 @@ function correctFriction(
   let x = 0;
   for (const axis of axes) x += (state.nodeFrictions[square + axis * d + axis] * step) / g;
   for (let l = 0; l < g; l++) {
-    sumSlopes(state, parameters, friction.slot, axes[l], sums);
+    copySlopes(reading, axes[l], d, sums);
     friction.differentiate(sums, matrix);
     for (let i = 0; i < g; i++) {
       for (let j = 0; j < g; j++) {
