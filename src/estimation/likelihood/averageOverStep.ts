@@ -45,7 +45,7 @@ export function createStepAverage(
       forceChange.fill(0);
       change.fill(0);
       for (let axis = 0; axis < d; axis++) {
-        for (const sign of [-1, 1]) {
+        for (let sign = -1; sign <= 1; sign += 2) {
           probe(reader, axis, sign * reach * spreads[axis], shiftedForce, sums);
           read(sums, shifted);
           for (let i = 0; i < d; i++) forceChange[i] += weight * (shiftedForce[i] - force[i]);

@@ -4,7 +4,7 @@
  * weigh on the parameter.
  */
 
-import { Matrix } from 'ml-matrix';
+import { multiply } from '../../numerics/linear/denseMatrix.js';
 import type { TrackSet } from '../../tracks/TrackSet.js';
 import { judgeShares, leverageFactor } from '../blockShares.js';
 import type { LikelihoodLayout } from './layout.js';
@@ -13,20 +13,21 @@ import type { ScoringSolution } from './scoring.js';
 
 const LARGEST = 1.5; // standard deviation by the model up to which effects are enlarged
 
-/** (I + S)⁻¹ s_b for every block, made larger where few of them carry a parameter; shape (B, p). */
+/**
+ * R s_b for every block, made larger where few of them carry a parameter; shape (B, p).
+ *
+ * @param response  R, shape (p, p): (I + S)⁻¹ or better
+ */
 export function blockEffects(
   tracks: TrackSet,
   layout: LikelihoodLayout,
   { blockOfPosition, blocks }: PassSetting,
   solution: ScoringSolution,
+  response: Float64Array,
 ): Float64Array {
   const p = layout.size;
   const { scores, inverse } = solution;
-  const effects = Float64Array.from(
-    Matrix.from1DArray(blocks, p, scores)
-      .mmul(Matrix.from1DArray(p, p, inverse))
-      .to1DArray(),
-  );
+  const effects = multiply(scores, response, blocks, p, p);
   const shares = new Float64Array(blocks);
   const enlarge = (parameter: number): void => {
     const before = sizeOf(effects, parameter, p);

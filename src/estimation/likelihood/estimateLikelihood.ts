@@ -19,10 +19,12 @@ import { createSpectralInformation } from './joint/spectralInformation.js';
 import { type FieldSlot, layOutLikelihood, type LikelihoodLayout, orderByPlace } from './layout.js';
 import { createAxisInformation } from './localInformation.js';
 import { withLogLinks } from './positiveLinks.js';
-import type { PassSetting } from './PathPass.js';
+import type { PassSetting, PathPass } from './PathPass.js';
+import { respondTo } from './response.js';
 import { type Pull, type ScoringSolution, solveScores } from './scoring.js';
 import { measureFlow } from './measureFlow.js';
 import { measureMotion } from './measureMotion.js';
+import { measureSensitivity, planSensitivity } from './sensitivity.js';
 import { decomposePenalty, factorOfSmoothing, type SpectralPenalty } from './smoothingFactor.js';
 import { findStart } from './startValues.js';
 
@@ -30,6 +32,7 @@ const FLOOR = 1e-7; // smallest localization error variance, relative to the mea
 const LONGEST_STEP = 2; // of the logarithm of an error variance: near zero its information is no guide
 const PULL = 0.2; // precision of a logarithm: one standard deviation is a factor of nine
 const HELD = 1e12; // information that leaves no step worth speaking of
+const MOST_STEPS = 2e7; // position and axis times passes that the sensitivity of the score may take
 const WIDEST = 40; // |log| of positive coefficients and variances stays below; nothing recorded spans e^40
 
 /**
@@ -77,11 +80,12 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
     plan.start?.strengths.length === groups.length ? plan.start.strengths : [],
   );
   const { parameters } = solution;
+  const response = measureResponse(tracks, layout, pass, plan.blocks.count, solution);
   return {
     model: withParameters(model, parameters.subarray(0, layout.modelSize)),
     parameters,
-    influences: blockEffects(tracks, layout, setting, solution),
-    smoothingFactor: factorOfSmoothing(solution, groups),
+    influences: blockEffects(tracks, layout, setting, solution, response),
+    smoothingFactor: factorOfSmoothing(solution, groups, response),
     toModelParameters: (raw) => raw.slice(0, layout.modelSize),
     localizationError: describeErrors(tracks, plan, layout, solution, floors),
     diagnostics: {
@@ -102,6 +106,19 @@ const UNCONVERGED: Warning = {
   message:
     'the likelihood had not settled when the iterations ran out; take the result with care, use fewer functions, or compare with --estimator differences',
 };
+
+/** How the estimate answers to the score: measured where that takes a few seconds at most. */
+function measureResponse(
+  tracks: TrackSet,
+  layout: LikelihoodLayout,
+  pass: PathPass,
+  blocks: number,
+  solution: ScoringSolution,
+): Float64Array {
+  const plan = planSensitivity(layout);
+  if (plan.groups.length * tracks.positions.length > MOST_STEPS) return solution.inverse;
+  return respondTo(measureSensitivity(pass, plan, solution, blocks), solution);
+}
 
 /** Smallest localization error variance per axis: far below anything that would show. */
 function measureFloors(tracks: TrackSet): Float64Array {

@@ -27,7 +27,8 @@ const PER_DRIFT = OWN + 1;
 const PER_DIFFUSION = OWN + 2;
 
 const LONGEST_RELAXATION = 0.5; // |κ| h of one substep
-const LONGEST_PATH = 0.5; // cells of the finest basis a substep may drift or diffuse
+const LONGEST_PATH = 0.5; // cells of the finest basis a substep may drift
+const WIDEST_SPREAD = 1; // cells it may diffuse: coefficients are averaged over the spread
 const MOST_SUBSTEPS = 64;
 
 /** Prepares the pass; it keeps scratch space of its own. */
@@ -191,7 +192,7 @@ export function countSubsteps(
     most = Math.max(
       most,
       path / LONGEST_PATH,
-      (spread / LONGEST_PATH) ** 2,
+      (spread / WIDEST_SPREAD) ** 2,
       (Math.abs(records[at + SLOPE]) * interval) / LONGEST_RELAXATION,
     );
   }

@@ -40,10 +40,15 @@ export function decomposePenalty(roughness: Float64Array, k: number): PenaltySpe
   };
 }
 
-/** The factor, shape (p, columns); null where nothing is penalised with a strength from the data. */
+/**
+ * The factor, shape (p, columns); null where nothing is penalised with a strength from the data.
+ *
+ * @param inverse  shape (p, p), symmetric: (I + S)⁻¹ or better
+ */
 export function factorOfSmoothing(
-  { inverse, strengths, parameters }: ScoringSolution,
+  { strengths, parameters }: ScoringSolution,
   groups: readonly SpectralPenalty[],
+  inverse: Float64Array,
 ): Estimate['smoothingFactor'] {
   const p = parameters.length;
   const columns: Float64Array[] = [];
