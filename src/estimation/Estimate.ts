@@ -35,6 +35,8 @@ export interface EstimationPlan {
   /** Where an iterative estimator may start, where a good place is known: coefficients in the order of
    * `modelParameters`, and roughness strengths as its diagnostics give them. It changes the way, not the answer. */
   readonly start?: { readonly coefficients: ArrayLike<number>; readonly strengths: readonly number[] };
+  /** Whether only the estimate counts, and not how sure it is: effects of blocks may then be rough. Default: no. */
+  readonly pointOnly?: boolean;
   /** Is told how far an iterative estimator has come. */
   readonly onProgress?: ReportShare;
 }

@@ -50,6 +50,12 @@ export interface ComparedLaw {
   readonly criterion: number;
 }
 
+/**
+ * Where a p-value comes from: theory; theory, for contrasts less their bias in recordings simulated under the statement;
+ * or its rank among recordings simulated under the statement.
+ */
+export type TestMethod = 'theory' | 'corrected' | 'simulation';
+
 export interface TestResult {
   readonly hypothesis: HypothesisName;
   /** What the law is about and the law itself, with the hypothesis `law`. */
@@ -61,7 +67,7 @@ export interface TestResult {
   readonly degrees: readonly [between: number, within: number];
   readonly p: number;
   /** `theory`: Hotelling's law; `simulation`: recordings simulated under the statement. */
-  readonly method: 'theory' | 'simulation';
+  readonly method: TestMethod;
   readonly confidence: number;
   readonly rejected: boolean;
   readonly parameters: Readonly<Record<string, TestedParameter>>;

@@ -7,12 +7,12 @@ import type { Verdict } from './judgeStatement.js';
 import type { PlannedRequest } from './planTest.js';
 import { profileIntervals } from './profileIntervals.js';
 import { tabulatePlaces } from './tabulatePlaces.js';
-import type { TestedParameter, TestResult } from './TestResult.js';
+import type { TestedParameter, TestMethod, TestResult } from './TestResult.js';
 
 /** A verdict with the p-value that counts, and how it was come by. */
 export interface JudgedVerdict extends Verdict {
   readonly p: number;
-  readonly method: 'theory' | 'simulation';
+  readonly method: TestMethod;
 }
 
 type Request = PlannedRequest & { readonly confidence: number };
@@ -95,6 +95,12 @@ function describeStatistic(verdict: JudgedVerdict, confidence: number, statement
   };
 }
 
+const METHOD_WORDS: Readonly<Record<TestMethod, string>> = {
+  theory: '',
+  corrected: ', less the bias of recordings simulated under the statement',
+  simulation: ', p from recordings simulated under the statement',
+};
+
 function sayVerdict(
   statement: string,
   { strongest, method, problem }: JudgedVerdict,
@@ -102,7 +108,7 @@ function sayVerdict(
 ): string {
   const { f, between, within } = strongest;
   const numbers = `F(${between}, ${within}) = ${f.toPrecision(3)} over ${problem.contrasts.blocks} stretches of the recording`;
-  const simulated = method === 'simulation' ? ', p from recordings simulated under the statement' : '';
+  const simulated = METHOD_WORDS[method];
   return rejected
     ? `the data contradict that ${statement} (${numbers}${simulated})`
     : `the data are compatible with the statement that ${statement}, which does not prove it (${numbers}${simulated})`;

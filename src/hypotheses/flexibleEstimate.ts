@@ -16,7 +16,6 @@ import { estimateLikelihood } from '../estimation/likelihood/estimateLikelihood.
 import { planEstimation } from '../estimation/planEstimation.js';
 import type { BasisSpec } from '../fields/Basis.js';
 import type { FieldForm } from '../fields/CoefficientField.js';
-import type { ReportShare } from '../numerics/ReportShare.js';
 import { quantileSorted } from '../numerics/statistics/quantile.js';
 import { countPositions, type TrackSet } from '../tracks/TrackSet.js';
 import { checkTrackLengths } from '../tracks/usableTracks.js';
@@ -58,11 +57,11 @@ export function estimateFlexibly(
   tracks: TrackSet,
   flexible: readonly PlannedField[],
   frictionForm?: FieldForm,
-  onProgress?: ReportShare,
+  settings: Pick<EstimationPlan, 'onProgress' | 'pointOnly'> = {},
 ): FlexibleEstimate {
   const planned = planFlexibly(fit, tracks, flexible, frictionForm);
   const estimate = isQuick(planned.plan) ? estimateLikelihood : estimateDifferences;
-  return { ...planned, estimate: estimate(planned.tracks, { ...planned.plan, onProgress }) };
+  return { ...planned, estimate: estimate(planned.tracks, { ...planned.plan, ...settings }) };
 }
 
 /** Whether the likelihood filters the plan axis by axis, which is quick. */

@@ -5,7 +5,7 @@
  * Source  Davison & Hinkley, Bootstrap Methods and their Application (1997), ch. 4.
  */
 
-import { DataError, NumericalError } from '../errors.js';
+import { tryTo } from './correctBias.js';
 
 /**
  * @param found  smallest p-value of the recording
@@ -20,12 +20,10 @@ export function simulateP(
   let asSmall = 1;
   let usable = 1;
   for (let index = 0; index < simulations; index++) {
-    try {
-      if (simulate(index) <= found) asSmall++;
+    const p = tryTo(() => simulate(index));
+    if (p !== null) {
       usable++;
-    } catch (error) {
-      // A simulated recording that no estimate can be made from says nothing.
-      if (!(error instanceof DataError || error instanceof NumericalError)) throw error;
+      if (p <= found) asSmall++;
     }
     onProgress?.(index + 1, simulations);
   }

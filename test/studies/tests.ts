@@ -6,6 +6,7 @@
  * PART: null, power, wall, class, departures; default all. 10 000 positions each unless the table says otherwise.
  */
 
+import { createRecorder } from '../../src/checks/createRecorder.js';
 import { loadFormulaReader } from '../../src/fields/formula.js';
 import { challengeModel } from '../../src/hypotheses/challenge/challengeModel.js';
 import { CHECKS } from '../../src/hypotheses/challenge/ChallengeResult.js';
@@ -141,7 +142,8 @@ function testCell(
 ): TestResult {
   const tracks = cell.simulate(seed);
   const fit = bareFit(tracks, { order: cell.order, relaxationTime: cell.relaxationTime });
-  return testHypothesis(fit, tracks, { hypothesis, field, laws, confidence: 0.95, seed });
+  const simulate = createRecorder(fit, tracks);
+  return testHypothesis(fit, tracks, { hypothesis, field, laws, confidence: 0.95, seed, simulate });
 }
 
 /** Rows as they come, for those who wait. */

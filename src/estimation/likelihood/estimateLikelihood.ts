@@ -80,7 +80,9 @@ export function estimateLikelihood(tracks: TrackSet, plan: EstimationPlan): Esti
     plan.start?.strengths.length === groups.length ? plan.start.strengths : [],
   );
   const { parameters } = solution;
-  const response = measureResponse(tracks, layout, pass, plan.blocks.count, solution);
+  const response = plan.pointOnly
+    ? solution.inverse
+    : measureResponse(tracks, layout, pass, plan.blocks.count, solution);
   return {
     model: withParameters(model, parameters.subarray(0, layout.modelSize)),
     parameters,
