@@ -35,6 +35,11 @@ export interface FlexibleEstimate extends FlexiblePlan {
   readonly estimate: Estimate;
 }
 
+/** How to estimate; `smooth`: as smooth as the data allow, for a model to simulate rather than to test. */
+export type FlexibleSettings = Pick<EstimationPlan, 'onProgress' | 'pointOnly'> & {
+  readonly smooth?: boolean;
+};
+
 type SplineSpec = Extract<BasisSpec, { kind: 'spline' }>;
 
 const SPLINES = [14, 5, 4] as const; // per axis, by dimensions: room for the modes that are looked at, and some more
@@ -57,11 +62,22 @@ export function estimateFlexibly(
   tracks: TrackSet,
   flexible: readonly PlannedField[],
   frictionForm?: FieldForm,
-  settings: Pick<EstimationPlan, 'onProgress' | 'pointOnly'> = {},
+  { smooth = false, ...settings }: FlexibleSettings = {},
 ): FlexibleEstimate {
   const planned = planFlexibly(fit, tracks, flexible, frictionForm);
-  const estimate = isQuick(planned.plan) ? estimateLikelihood : estimateDifferences;
-  return { ...planned, estimate: estimate(planned.tracks, { ...planned.plan, ...settings }) };
+  const { force, friction, noise } = planned.plan;
+  const plan = {
+    ...planned.plan,
+    ...settings,
+    ...(smooth ? { force: smoothed(force), friction: smoothed(friction), noise: smoothed(noise) } : {}),
+  };
+  const estimate = isQuick(plan) ? estimateLikelihood : estimateDifferences;
+  return { ...planned, estimate: estimate(planned.tracks, plan) };
+}
+
+/** With a strength of smoothing from the data. */
+function smoothed(field: FieldPlan): FieldPlan {
+  return { ...field, smoothing: 'penalized' };
 }
 
 /** Whether the likelihood filters the plan axis by axis, which is quick. */

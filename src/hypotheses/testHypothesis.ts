@@ -5,10 +5,11 @@
 
 import type { FitResult } from '../documents/FitDocument.js';
 import { UsageError } from '../errors.js';
+import type { Estimate } from '../estimation/Estimate.js';
 import type { Model } from '../fields/CoefficientField.js';
 import { partOf, type ReportShare } from '../numerics/ReportShare.js';
 import type { TrackSet } from '../tracks/TrackSet.js';
-import { measureContrasts } from './contrasts.js';
+import { type Contrasts, measureContrasts } from './contrasts.js';
 import { correctBias } from './correctBias.js';
 import { describeLaws, describeVerdict, type JudgedVerdict } from './describeVerdicts.js';
 import { estimateFlexibly, type FlexibleEstimate, pickOccupancyNodes } from './flexibleEstimate.js';
@@ -124,25 +125,15 @@ function settle(
   const theory: JudgedVerdict = { ...verdict, p: computeP(verdict, seed), method: 'theory' };
   const isClose = theory.p < CLEARLY_TRUE && theory.p > CLEARLY_FALSE;
   if (simulate === undefined || !(isSmall || isClose)) return theory;
-  const { model, localizationError } = flexible.estimate;
-  const imposed = statement.impose(model, verdict.fit.parameters, nodes);
-  const errors = localizationError.map(({ value }) => value);
   if (!isSmall) {
-    const corrected = correctBias(
-      verdict.problem,
-      imposed,
-      (index) => {
-        const again = simulate(imposed, errors, index);
-        return estimateFlexibly(fit, again, plan.fields, plan.frictionForm, { pointOnly: true }).estimate
-          .model;
-      },
-      BIAS_SIMULATIONS,
-      request.onProgress,
-    );
+    const corrected = takeOffBias(verdict, fit, request, plan, flexible);
     if (corrected === null) return theory;
     const again = judgeStatement(statement, corrected, nodes, modes);
     return { ...again, p: computeP(again, seed), method: 'corrected' };
   }
+  const { model, localizationError } = flexible.estimate;
+  const imposed = statement.impose(model, verdict.fit.parameters, nodes);
+  const errors = localizationError.map(({ value }) => value);
   const p = simulateP(
     verdict.strongest.p,
     (index) => runTrial(fit, simulate(imposed, errors, index), plan).verdicts[which].strongest.p,
@@ -150,4 +141,30 @@ function settle(
     request.onProgress,
   );
   return { ...verdict, p, method: 'simulation' };
+}
+
+/**
+ * Contrasts less the bias of recordings simulated under the statement. What else is simulated is a smooth estimate: the
+ * chance waves of the flexible one would be flattened, friction and noise not alike.
+ */
+function takeOffBias(
+  { problem, fit: { parameters } }: Verdict,
+  fit: FitResult,
+  { simulate, onProgress }: TestRequest,
+  plan: TestPlan,
+  { tracks }: FlexibleEstimate,
+): Contrasts | null {
+  if (simulate === undefined) return null;
+  const estimate = (recording: TrackSet, smooth: boolean): Estimate =>
+    estimateFlexibly(fit, recording, plan.fields, plan.frictionForm, { pointOnly: true, smooth }).estimate;
+  const { model, localizationError } = estimate(tracks, true);
+  const imposed = problem.statement.impose(model, parameters, problem.nodes);
+  const errors = localizationError.map(({ value }) => value);
+  return correctBias(
+    problem,
+    imposed,
+    (index) => estimate(simulate(imposed, errors, index), false).model,
+    BIAS_SIMULATIONS,
+    onProgress,
+  );
 }
