@@ -5,7 +5,7 @@
 import { refineFit } from './checks/refineFit.js';
 import type { FitDocument, FitResult } from './documents/FitDocument.js';
 import type { Study } from './documents/Study.js';
-import type { Warning } from './errors.js';
+import { DataError, type Warning } from './errors.js';
 import { chooseEstimator } from './estimation/choose.js';
 import type { Estimate } from './estimation/Estimate.js';
 import { planEstimation } from './estimation/planEstimation.js';
@@ -17,6 +17,7 @@ import { countPositions, countTracks, type TrackSet } from './tracks/TrackSet.js
 import { sampleTracks } from './tracks/sampleTracks.js';
 import { describeVisited, visitedCentres } from './tracks/visitedRegion.js';
 import { drawReplicates } from './uncertainty/bootstrap.js';
+import { refitReplicates } from './uncertainty/refitBootstrap.js';
 import { warnOfSigns } from './uncertainty/signs.js';
 import { measureSpread, pointwiseMultiplier, simultaneousMultiplier } from './uncertainty/spread.js';
 
@@ -35,6 +36,9 @@ const BAND_REPLICATES = 1000;
 
 /** Of the time, with `refine`: the fit itself, before it is simulated and fitted again. */
 const FIT_SHARE = 0.1;
+
+/** Share of the recordings drawn that must be possible to fit, with full refits. */
+const FEWEST_REPLICATES = 0.8;
 
 /** Digits kept of stored replicates; their own scatter is some per cent. */
 const REPLICATE_DIGITS = 7;
@@ -77,7 +81,14 @@ export async function fitTracks(
   const estimate = chooseEstimator(study.estimator)(usable, { ...plan, onProgress: tellEstimating });
 
   progress(0.85, 'resampling');
-  const drawn = drawReplicates(estimate, Math.max(study.replicates, BAND_REPLICATES), study.seed);
+  const drawn =
+    study.bootstrap === 'refit'
+      ? await refitReplicates(usable, plan, study.estimator, estimate, study.replicates, study.seed, {
+          mapTasks: context.mapTasks,
+          onProgress: partOf((way) => progress(way, 'resampling'), 0.85, 0.9),
+        })
+      : drawReplicates(estimate, Math.max(study.replicates, BAND_REPLICATES), study.seed);
+  if (drawn.length < FEWEST_REPLICATES * study.replicates) throw tooFewRefits(drawn.length, study.replicates);
   const replicates = drawn.slice(0, study.replicates);
 
   progress(0.9, 'drawing bands');
@@ -110,7 +121,7 @@ export async function fitTracks(
     model: estimate.model as FitDocument['model'],
     localizationError: estimate.localizationError.map((axis) => intervalOfError(axis, multiplier)),
     uncertainty: {
-      method: `one-step bootstrap over ${plan.blocks.count} ${plan.blocks.kind === 'tracks' ? 'tracks or groups of tracks' : 'stretches of tracks'}, smoothing bias included`,
+      method: `${study.bootstrap === 'refit' ? 'full-refit' : 'one-step'} bootstrap over ${plan.blocks.count} ${plan.blocks.kind === 'tracks' ? 'tracks or groups of tracks' : 'stretches of tracks'}, smoothing bias included`,
       blocks: plan.blocks.count,
       confidence: study.confidence,
       multiplier,
@@ -132,6 +143,13 @@ export async function fitTracks(
     onProgress: (done, total) =>
       context.onProgress?.(FIT_SHARE + (1 - FIT_SHARE) * (done / total), 1, 'refining'),
   });
+}
+
+function tooFewRefits(found: number, wanted: number): DataError {
+  return new DataError(
+    `only ${found} of ${wanted} recordings drawn from this one could be fitted, so that refits say nothing of its uncertainty; use --bootstrap one-step, or simpler shapes`,
+    { found, wanted },
+  );
 }
 
 function intervalOfError(

@@ -71,6 +71,7 @@ export const COMMANDS: readonly CommandSpec[] = [
       'frictionForm',
       'noiseForm',
       'replicates',
+      'bootstrap',
       'confidence',
       'localizationError',
       'exposure',

@@ -10,6 +10,7 @@ const ORDERS = ['auto', 'first', 'second'];
 const ESTIMATORS = ['likelihood', 'differences', 'kernel'];
 const SHAPES = ['zero', 'constant', 'linear', 'polynomial:', 'spline', 'spline:', 'waves:'];
 const FORMS = ['scalar', 'axes', 'matrix'];
+const BOOTSTRAPS = ['one-step', 'refit'];
 
 /** The model and its estimate. */
 export const MODEL_OPTIONS = {
@@ -100,6 +101,16 @@ export const MODEL_OPTIONS = {
     extremes: 'from 20 (rough intervals) to 100000 (a large fit file)',
     parse: numberValue({ whole: true, from: 20, to: 100_000 }),
     study: 'replicates',
+  },
+  bootstrap: {
+    flags: '--bootstrap <WAY>',
+    meaning:
+      'replicates from first-order effects of blocks (one-step), or by fitting each drawn recording anew (refit)',
+    default: 'one-step',
+    extremes: 'refit takes as many fits as replicates',
+    choices: BOOTSTRAPS,
+    parse: choiceValue(BOOTSTRAPS),
+    study: 'bootstrap',
   },
   confidence: {
     flags: '--confidence <LEVEL>',

@@ -30,6 +30,12 @@ export const studySchema = z
       .default('scalar')
       .describe('form of the noise (second order) or the diffusion (first order)'),
     replicates: z.int().min(20).max(100_000).default(200).describe('bootstrap replicates'),
+    bootstrap: z
+      .enum(['one-step', 'refit'])
+      .default('one-step')
+      .describe(
+        'replicates from first-order effects of blocks, or from refits of recordings drawn block by block',
+      ),
     confidence: z.number().gt(0.5).lt(1).default(0.95).describe('confidence level of every interval'),
     localizationError: z
       .union([z.literal('auto'), z.number().min(0)])

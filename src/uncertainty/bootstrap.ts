@@ -9,7 +9,7 @@
  */
 
 import type { Estimate } from '../estimation/Estimate.js';
-import { randomStream } from '../numerics/random/RandomStream.js';
+import { type RandomStream, randomStream } from '../numerics/random/RandomStream.js';
 
 /**
  * Draws coefficient vectors from the uncertainty of an estimate.
@@ -21,7 +21,7 @@ import { randomStream } from '../numerics/random/RandomStream.js';
  * Cost  O(replicates · (B p + correction)).
  */
 export function drawReplicates(estimate: Estimate, replicates: number, seed: number): Float64Array[] {
-  const { parameters, influences, smoothingFactor } = estimate;
+  const { parameters, influences } = estimate;
   const p = parameters.length;
   const blocks = influences.length / p;
   const inflate = Math.sqrt(blocks / Math.max(1, blocks - 1)); // resampled means vary by (B − 1)/B too little
@@ -36,15 +36,26 @@ export function drawReplicates(estimate: Estimate, replicates: number, seed: num
       const base = block * p;
       for (let i = 0; i < p; i++) raw[i] += weight * influences[base + i];
     }
-    if (smoothingFactor) {
-      const { values, columns } = smoothingFactor;
-      const normals = Float64Array.from({ length: columns }, () => stream.normal());
-      for (let i = 0; i < p; i++) {
-        let bias = 0;
-        for (let c = 0; c < columns; c++) bias += values[i * columns + c] * normals[c];
-        raw[i] += bias;
-      }
-    }
+    addSmoothingBias(estimate, stream, raw);
     return estimate.toModelParameters(raw);
   });
+}
+
+/** What a draw of the smoothing bias adds to the coefficients, in the order of `modelParameters`. */
+export function drawSmoothingBias(estimate: Estimate, stream: RandomStream): Float64Array {
+  const raw = estimate.parameters.slice();
+  addSmoothingBias(estimate, stream, raw);
+  const centre = estimate.toModelParameters(estimate.parameters);
+  return estimate.toModelParameters(raw).map((value, i) => value - centre[i]);
+}
+
+function addSmoothingBias({ smoothingFactor }: Estimate, stream: RandomStream, raw: Float64Array): void {
+  if (!smoothingFactor) return;
+  const { values, columns } = smoothingFactor;
+  const normals = Float64Array.from({ length: columns }, () => stream.normal());
+  for (let i = 0; i < raw.length; i++) {
+    let bias = 0;
+    for (let c = 0; c < columns; c++) bias += values[i * columns + c] * normals[c];
+    raw[i] += bias;
+  }
 }

@@ -11,6 +11,7 @@ const LOADERS: Readonly<Record<string, () => Promise<AnyTask>>> = {
   'describe-replicate': async () =>
     (await import('../checks/describeReplicateTask.js')).describeReplicateTask as AnyTask,
   'judge-fit': async () => (await import('./judgeFitTask.js')).judgeFitTask as AnyTask,
+  'refit-drawn': async () => (await import('../uncertainty/refitBootstrap.js')).refitDrawnTask as AnyTask,
   'refit-replicate': async () => (await import('../checks/refineFit.js')).refitReplicateTask as AnyTask,
   'simulate-tracks': async () =>
     (await import('../simulation/simulateScenario.js')).simulateTracksTask as AnyTask,
