@@ -8,6 +8,7 @@
  *         J. Am. Stat. Assoc. 83 (1988) 1134.
  */
 
+import { addMultiple, innerProduct } from '../numerics/linear/denseMatrix.js';
 import type { Estimate } from '../estimation/Estimate.js';
 import { type RandomStream, randomStream } from '../numerics/random/RandomStream.js';
 
@@ -32,9 +33,7 @@ export function drawReplicates(estimate: Estimate, replicates: number, seed: num
     const raw = parameters.slice();
     for (let block = 0; block < blocks; block++) {
       const weight = inflate * weights[block];
-      if (weight === 0) continue;
-      const base = block * p;
-      for (let i = 0; i < p; i++) raw[i] += weight * influences[base + i];
+      addMultiple(raw, 0, weight, influences, block * p, p);
     }
     addSmoothingBias(estimate, stream, raw);
     return estimate.toModelParameters(raw);
@@ -53,9 +52,5 @@ function addSmoothingBias({ smoothingFactor }: Estimate, stream: RandomStream, r
   if (!smoothingFactor) return;
   const { values, columns } = smoothingFactor;
   const normals = Float64Array.from({ length: columns }, () => stream.normal());
-  for (let i = 0; i < raw.length; i++) {
-    let bias = 0;
-    for (let c = 0; c < columns; c++) bias += values[i * columns + c] * normals[c];
-    raw[i] += bias;
-  }
+  for (let i = 0; i < raw.length; i++) raw[i] += innerProduct(values, i * columns, normals, 0, columns);
 }
