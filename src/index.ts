@@ -70,6 +70,7 @@ export {
   HYPOTHESES,
   type HypothesisName,
   type TestedLevel,
+  type TestMethod,
   type TestedParameter,
   type TestResult,
 } from './hypotheses/TestResult.js';
