@@ -44,3 +44,13 @@ export interface Warning {
   readonly code: string;
   readonly message: string;
 }
+
+/** What work gives, or null where its data cannot carry it: for recordings drawn or simulated, one of which may fail. */
+export function unlessUnusable<Result>(work: () => Result): Result | null {
+  try {
+    return work();
+  } catch (error) {
+    if (error instanceof DataError || error instanceof NumericalError) return null;
+    throw error;
+  }
+}

@@ -1,7 +1,7 @@
 /** The estimator of a fit, to be used again on simulated recordings of the same design. */
 
 import type { FitOfAnyOrigin } from '../documents/FitDocument.js';
-import { DataError, NumericalError } from '../errors.js';
+import { unlessUnusable } from '../errors.js';
 import { chooseEstimator } from '../estimation/choose.js';
 import { planEstimation } from '../estimation/planEstimation.js';
 import { modelParameters } from '../fields/modelParameters.js';
@@ -24,14 +24,10 @@ export function createRefit(fit: FitOfAnyOrigin): (tracks: TrackSet) => Promise<
     coefficients: modelParameters(fit.model),
     strengths: Array.isArray(roughnessStrengths) ? roughnessStrengths.map(Number) : [],
   };
-  return async (tracks) => {
-    try {
+  return async (tracks) =>
+    unlessUnusable(() => {
       const usable = checkTrackLengths(tracks, order).tracks;
       const plan = planEstimation(usable, fit.study, order, memory, fit.visited);
-      return modelParameters(estimate(usable, { ...plan, start }).model);
-    } catch (error) {
-      if (error instanceof DataError || error instanceof NumericalError) return null;
-      throw error;
-    }
-  };
+      return modelParameters(estimate(usable, { ...plan, start, pointOnly: true }).model);
+    });
 }

@@ -70,6 +70,7 @@ function createPlainReader(basis: Basis, sums: readonly SumSpec[]): SumReader {
   };
   const readValues = (place: Float64Array): void => {
     const count = basis.evaluateInto(place, 0, ownIndices, ownValues);
+    if (count < support) ownValues.fill(0, count);
     for (let sum = 0; sum < sums.length; sum++) values[sum] = sumUp(sums[sum].offset, count);
   };
   const bends = basis.spec.kind !== 'constant';

@@ -8,7 +8,7 @@
  * Source  indirect inference: Gouriéroux, Monfort & Renault, J. Appl. Econometrics 8 (1993) S85.
  */
 
-import { DataError, NumericalError } from '../errors.js';
+import { unlessUnusable } from '../errors.js';
 import type { Model } from '../fields/CoefficientField.js';
 import { averageOverModes, type Contrasts } from './contrasts.js';
 import type { StatementProblem } from './fitStatement.js';
@@ -34,7 +34,7 @@ export function correctBias(
   const bias = new Float64Array(truth.length);
   let usable = 0;
   for (let index = 0; index < simulations; index++) {
-    const found = tryTo(() => read(estimate(index)));
+    const found = unlessUnusable(() => read(estimate(index)));
     onProgress?.(index + 1, simulations);
     if (found === null || !found.every(Number.isFinite)) continue;
     usable++;
@@ -46,14 +46,4 @@ export function correctBias(
     values: contrasts.values.map((value, i) => value - bias[i] / usable),
     covariance: contrasts.covariance.map((value) => value * (1 + 1 / usable)),
   };
-}
-
-/** A simulated recording that no estimate can be made from says nothing. */
-export function tryTo<Result>(work: () => Result): Result | null {
-  try {
-    return work();
-  } catch (error) {
-    if (error instanceof DataError || error instanceof NumericalError) return null;
-    throw error;
-  }
 }

@@ -5,7 +5,7 @@
  * Source  Davison & Hinkley, Bootstrap Methods and their Application (1997), ch. 4.
  */
 
-import { tryTo } from './correctBias.js';
+import { unlessUnusable } from '../errors.js';
 
 /**
  * @param found  smallest p-value of the recording
@@ -20,7 +20,7 @@ export function simulateP(
   let asSmall = 1;
   let usable = 1;
   for (let index = 0; index < simulations; index++) {
-    const p = tryTo(() => simulate(index));
+    const p = unlessUnusable(() => simulate(index));
     if (p !== null) {
       usable++;
       if (p <= found) asSmall++;

@@ -121,31 +121,31 @@ function settle(
 ): JudgedVerdict {
   const { simulate, seed } = request;
   const { contrasts, statement, modes } = verdict.problem;
-  const isSmall = contrasts.blocks < FEW_BLOCKS;
-  const theory: JudgedVerdict = { ...verdict, p: computeP(verdict, seed), method: 'theory' };
-  const isClose = theory.p < CLEARLY_TRUE && theory.p > CLEARLY_FALSE;
-  if (simulate === undefined || !(isSmall || isClose)) return theory;
-  if (!isSmall) {
-    const corrected = takeOffBias(verdict, fit, request, plan, flexible);
-    if (corrected === null) return theory;
-    const again = judgeStatement(statement, corrected, nodes, modes);
-    return { ...again, p: computeP(again, seed), method: 'corrected' };
+  if (simulate !== undefined && contrasts.blocks < FEW_BLOCKS) {
+    const { model, localizationError } = flexible.estimate;
+    const imposed = statement.impose(model, verdict.fit.parameters, nodes);
+    const errors = localizationError.map(({ value }) => value);
+    const p = simulateP(
+      verdict.strongest.p,
+      (index) => runTrial(fit, simulate(imposed, errors, index), plan).verdicts[which].strongest.p,
+      request.simulations ?? SIMULATIONS,
+      request.onProgress,
+    );
+    return { ...verdict, p, method: 'simulation' };
   }
-  const { model, localizationError } = flexible.estimate;
-  const imposed = statement.impose(model, verdict.fit.parameters, nodes);
-  const errors = localizationError.map(({ value }) => value);
-  const p = simulateP(
-    verdict.strongest.p,
-    (index) => runTrial(fit, simulate(imposed, errors, index), plan).verdicts[which].strongest.p,
-    request.simulations ?? SIMULATIONS,
-    request.onProgress,
-  );
-  return { ...verdict, p, method: 'simulation' };
+  const p = computeP(verdict, seed);
+  const isClose = p < CLEARLY_TRUE && p > CLEARLY_FALSE;
+  const corrected = isClose ? takeOffBias(verdict, fit, request, plan, flexible) : null;
+  if (corrected === null) return { ...verdict, p, method: 'theory' };
+  const again = judgeStatement(statement, corrected, nodes, modes);
+  return { ...again, p: computeP(again, seed), method: 'corrected' };
 }
 
 /**
  * Contrasts less the bias of recordings simulated under the statement. What else is simulated is a smooth estimate: the
  * chance waves of the flexible one would be flattened, friction and noise not alike.
+ *
+ * @returns null where nothing can be simulated
  */
 function takeOffBias(
   { problem, fit: { parameters } }: Verdict,

@@ -6,7 +6,7 @@
  * Source  Efron, Bootstrap methods: another look at the jackknife, Ann. Statist. 7 (1979) 1.
  */
 
-import { DataError, NumericalError } from '../errors.js';
+import { unlessUnusable } from '../errors.js';
 import type { Blocks } from '../estimation/blocks.js';
 import { chooseEstimator } from '../estimation/choose.js';
 import type { Estimate, EstimationPlan } from '../estimation/Estimate.js';
@@ -34,17 +34,10 @@ export const refitDrawnTask: Task<SharedWork, number, Float64Array | null> = {
   name: 'refit-drawn',
   run({ tracks, plan, estimator, seed }, replicate) {
     const drawn = drawBlocks(tracks, plan.blocks, randomStream(seed, 'refit bootstrap', replicate));
-    try {
-      const again = chooseEstimator(estimator)(drawn.tracks, {
-        ...plan,
-        blocks: drawn.blocks,
-        pointOnly: true,
-      });
-      return modelParameters(again.model);
-    } catch (error) {
-      if (error instanceof DataError || error instanceof NumericalError) return null;
-      throw error;
-    }
+    return unlessUnusable(() => {
+      const point = { ...plan, blocks: drawn.blocks, pointOnly: true };
+      return modelParameters(chooseEstimator(estimator)(drawn.tracks, point).model);
+    });
   },
 };
 

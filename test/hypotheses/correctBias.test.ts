@@ -6,7 +6,7 @@ import { correctBias } from '../../src/hypotheses/correctBias.js';
 import type { OccupancyModes } from '../../src/hypotheses/occupancyModes.js';
 import { createUniformStatement } from '../../src/hypotheses/uniformStatement.js';
 
-/** A friction of one cubic polynomial of x per simulated recording, in logarithms. */
+/** A friction whose logarithm is a polynomial of degree 2. */
 function frictionOf(coefficients: readonly number[]): Model {
   const constant = { basis: { kind: 'constant' as const }, form: 'scalar' as const };
   return {

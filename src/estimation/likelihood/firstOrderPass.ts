@@ -17,8 +17,14 @@ import { createMatrixField } from './matrixFields.js';
 import { measureCells } from './measureCells.js';
 import type { PassSetting, PathObserver, PathPass } from './PathPass.js';
 import { passOverTracks } from './passOverTracks.js';
-import { type CoefficientReader, createReader, prepareReader, readCoefficients } from './readCoefficients.js';
-import { spreadScores } from './spreadScore.js';
+import {
+  type CoefficientReader,
+  createReader,
+  prepareReader,
+  readCoefficients,
+  recallNode,
+  spreadScores,
+} from './readCoefficients.js';
 import { FORCE, growTape, NOISE, OWN, RECORD_SIZE, SLOPE, type Tape, UPDATE_SIZE } from './tape.js';
 
 const DECAY = OWN;
@@ -208,6 +214,8 @@ function smoothTrack(
   observer: PathObserver | undefined,
 ): void {
   const { tracks, layout, setting, tape, adjointMean, adjointVariance, errorVariance } = state;
+  const { force, noise } = state.targets;
+  const { records } = tape;
   const d = layout.dimensions;
   adjointMean.fill(0);
   adjointVariance.fill(0);
@@ -242,17 +250,19 @@ function smoothTrack(
     }
     for (let node = tape.firstNode[row - start + 1] - 1; node >= tape.firstNode[row - start]; node--) {
       for (let axis = 0; axis < d; axis++) {
-        const { records } = tape;
         const at = (node * d + axis) * RECORD_SIZE;
         const decay = records[at + DECAY];
-        const { force, noise } = state.targets;
-        force.values[force.first + axis * force.step] += adjointMean[axis] * records[at + PER_DRIFT];
-        noise.values[noise.first + axis * noise.step] +=
-          adjointVariance[axis] * records[at + PER_DIFFUSION] * records[at + NOISE];
+        if (scores) {
+          force.values[force.first + axis * force.step] += adjointMean[axis] * records[at + PER_DRIFT];
+          noise.values[noise.first + axis * noise.step] +=
+            adjointVariance[axis] * records[at + PER_DIFFUSION] * records[at + NOISE];
+        }
         adjointMean[axis] *= decay;
         adjointVariance[axis] *= decay * decay;
       }
-      if (scores) spreadScores(state, node, scores, block);
+      if (!scores) continue;
+      recallNode(state, node);
+      spreadScores(state, scores, block);
     }
   }
   for (let axis = 0; axis < d; axis++) {

@@ -118,6 +118,16 @@ export function readNode({ readers, place }: CoefficientReader, node: number): v
   }
 }
 
+/** Brings back the functions that were not zero at a node; goes before spreading its scores. */
+export function recallNode({ readers }: CoefficientReader, node: number): void {
+  for (let i = 0; i < readers.length; i++) readers[i].recall(node);
+}
+
+/** Chains the scores of the node recalled to its functions; adds them to those of a block. */
+export function spreadScores({ readers }: CoefficientReader, scores: Float64Array, block: number): void {
+  for (let i = 0; i < readers.length; i++) readers[i].spread(scores, block);
+}
+
 /** Copies the weighted sums of all components of a field, read last, before their link. */
 export function copySums(field: FieldReading | null, out: Float64Array): void {
   if (!field) return;

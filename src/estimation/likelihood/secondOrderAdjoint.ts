@@ -2,11 +2,9 @@
 
 import type { PathObserver } from './PathPass.js';
 import type { PassState } from './secondOrderState.js';
-import { spreadScores } from './spreadScore.js';
-import { FORCE, FRICTION, NOISE, OWN, RECORD_SIZE, STEP, UPDATE_SIZE } from './tape.js';
+import { recallNode, spreadScores } from './readCoefficients.js';
+import { FORCE, FRICTION, NOISE, OWN, RECORD_SIZE, STEP, TRANSITION, UPDATE_SIZE } from './tape.js';
 import { transitionSlopesInto } from './transition.js';
-
-const TRANSITION = OWN + 3;
 
 /** The adjoint of the filter, from the last position of a track back to the first. */
 export function smoothTrack(
@@ -136,7 +134,9 @@ function stepBack(
       adjoint[base + 3] = aqq * lqv + avq * lvv;
       adjoint[base + 4] = aqv * lqv + avv * lvv;
     }
-    if (scores !== null) spreadScores(state, node, scores, block);
+    if (scores === null) continue;
+    recallNode(state, node);
+    spreadScores(state, scores, block);
   }
 }
 

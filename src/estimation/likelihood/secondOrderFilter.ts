@@ -14,12 +14,11 @@ import {
   RECORD_SIZE,
   SLOPE,
   STEP,
+  TRANSITION,
   type Tape,
   UPDATE_SIZE,
 } from './tape.js';
 import { transitionInto } from './transition.js';
-
-const TRANSITION = OWN + 3;
 
 const LONGEST_X = 0.5; // Γh of one substep: coefficients are frozen and force slopes summed as series over it
 const LONGEST_PHASE = 0.5; // √|K| h of one substep

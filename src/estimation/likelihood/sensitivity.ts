@@ -30,37 +30,45 @@ export interface SensitivityPlan {
 }
 
 export function planSensitivity(layout: LikelihoodLayout): SensitivityPlan {
-  const cells: (number[] | null)[] = new Array<number[] | null>(layout.size).fill(null);
   const slots = [layout.force, layout.friction, layout.noise].filter(
-    (slot) => slot !== null && slot.basis >= 0,
+    (slot): slot is FieldSlot => slot !== null && slot.basis >= 0,
   );
-  const [common] = slots as FieldSlot[];
-  const spec = layout.bases[common.basis].spec;
+  const { spec } = layout.bases[slots[0].basis];
   // Functions of different bases are not told apart by their numbers.
-  const isShared = spec.kind === 'spline' && slots.every((slot) => slot?.basis === common.basis);
+  const counts =
+    spec.kind === 'spline' && slots.every(({ basis }) => basis === slots[0].basis) ? spec.counts : [];
+  const periods = spec.kind === 'spline' ? spec.periods : [];
+  const cells = new Array<number[] | null>(layout.size).fill(null);
   const groups = new Map<string, number[]>();
-  for (let i = 0; i < layout.size; i++) groups.set(String(i), [i]);
-  const firstLogarithm = layout.force.offset + layout.force.components * layout.force.functionCount;
-  if (!isShared) return { groups: [...groups.values()], cells, wraps: [], firstLogarithm };
-  const d = layout.dimensions;
-  for (const slot of slots as FieldSlot[]) {
-    for (let component = 0; component < slot.components; component++) {
-      for (let f = 0; f < slot.functionCount; f++) {
-        const i = slot.offset + component * slot.functionCount + f;
-        const cell = new Array<number>(d);
-        for (let axis = d - 1, rest = f; axis >= 0; axis--) {
-          cell[axis] = rest % spec.counts[axis];
-          rest = Math.floor(rest / spec.counts[axis]);
-        }
-        cells[i] = cell;
-        const key = `${slot.offset + component}: ${cell.map((at, axis) => at % spacingOf(spec.counts[axis], spec.periods[axis])).join(' ')}`;
-        groups.delete(String(i));
-        groups.set(key, [...(groups.get(key) ?? []), i]);
-      }
+  const join = (i: number, key: string): void => void groups.set(key, [...(groups.get(key) ?? []), i]);
+  for (const { offset, components, functionCount } of counts.length > 0 ? slots : []) {
+    for (let i = 0; i < components * functionCount; i++) {
+      const cell = unravel(i % functionCount, counts);
+      const turn = cell.map((at, axis) => at % spacingOf(counts[axis], periods[axis]));
+      cells[offset + i] = cell;
+      join(offset + i, `${offset}, ${Math.floor(i / functionCount)}: ${turn.join(' ')}`);
     }
   }
-  const wraps = spec.counts.map((count, axis) => (spec.periods[axis] > 0 ? count : 0));
-  return { groups: [...groups.values()], cells, wraps, firstLogarithm };
+  cells.forEach((cell, i) => {
+    if (cell === null) join(i, `alone: ${i}`);
+  });
+  return {
+    groups: [...groups.values()],
+    cells,
+    wraps: counts.map((count, axis) => (periods[axis] > 0 ? count : 0)),
+    firstLogarithm: layout.force.offset + layout.force.components * layout.force.functionCount,
+  };
+}
+
+/** Number of a function along each axis, the last axis fastest. */
+function unravel(number: number, counts: readonly number[]): number[] {
+  const out = new Array<number>(counts.length);
+  let rest = number;
+  for (let axis = counts.length - 1; axis >= 0; axis--) {
+    out[axis] = rest % counts[axis];
+    rest = Math.floor(rest / counts[axis]);
+  }
+  return out;
 }
 
 /** On an axis that wraps the last and the first moved must be as far apart as the others. */

@@ -5,7 +5,7 @@
  */
 
 import { Matrix, solve } from 'ml-matrix';
-import { DataError, NumericalError } from '../../errors.js';
+import { DataError, unlessUnusable } from '../../errors.js';
 import type { CoefficientField, ModelEvaluator } from '../../fields/CoefficientField.js';
 import { createBasis } from '../../fields/createBasis.js';
 import { createModelEvaluator } from '../../fields/evaluateModel.js';
@@ -55,19 +55,16 @@ export function findStart(
 }
 
 function tryDifferences(tracks: TrackSet, plan: EstimationPlan, constants: Constants): Estimate | null {
-  try {
-    return estimateDifferences(tracks, {
+  // Runs too short for differences, or moments that tell nothing apart: the likelihood may still cope.
+  return unlessUnusable(() =>
+    estimateDifferences(tracks, {
       ...plan,
       localizationError: plan.localizationError ?? Array.from(constants.errorVariance, rootOf),
       force: coarsen(plan.force),
       friction: coarsen(plan.friction),
       noise: coarsen(plan.noise),
-    });
-  } catch (error) {
-    // Runs too short for differences, or moments that tell nothing apart: the likelihood may still cope.
-    if (error instanceof DataError || error instanceof NumericalError) return null;
-    throw error;
-  }
+    }),
+  );
 }
 
 /** The same field with no more functions than a start needs. */

@@ -21,7 +21,9 @@ export const NOISE = 4;
 export const STEP = 5;
 /** What a pass adds: at second order mean and covariances (v, qv, vv) of the filter before the step, then the transition. */
 export const OWN = 6;
-export const RECORD_SIZE = OWN + 3 + TRANSITION_SIZE;
+/** Second order: see `transitionInto`. */
+export const TRANSITION = OWN + 3;
+export const RECORD_SIZE = TRANSITION + TRANSITION_SIZE;
 
 export interface Tape {
   /** Nodes there is room for. */

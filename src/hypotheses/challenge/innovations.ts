@@ -53,6 +53,7 @@ export function measureInnovations(fit: FitResult, tracks: TrackSet, onProgress?
     ...flexible.plan,
     friction: withoutMatrix(flexible.plan.friction),
     noise: withoutMatrix(flexible.plan.noise),
+    pointOnly: true,
     onProgress: partOf(onProgress, 0, ESTIMATE_SHARE),
   };
   const estimate = estimateLikelihood(usable, plan);

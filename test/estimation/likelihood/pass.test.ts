@@ -128,3 +128,19 @@ describe('smoothed velocities', () => {
     expect(Math.abs(squares / n - 1)).toBeLessThan(4 * Math.sqrt(2 / (n / 5)));
   });
 });
+
+describe('a pass', () => {
+  it.each(['first', 'second'] as const)('leaves nothing behind from smoothing: order %s', (order) => {
+    const tracks = referenceTracks(false);
+    const path = { places: new Float64Array(countPositions(tracks)) };
+    const scoresOf = (smoothFirst: boolean): Float64Array => {
+      const { pass, layout } = prepare(tracks, order, CONSTANT);
+      const parameters = new Float64Array(layout.size).fill(-1);
+      const scores = new Float64Array(layout.size);
+      if (smoothFirst) pass.run(parameters, null, path);
+      pass.run(parameters, scores);
+      return scores;
+    };
+    expect(scoresOf(true)).toEqual(scoresOf(false));
+  });
+});

@@ -1,8 +1,7 @@
 /** The backward half of the joint likelihood: the adjoint of the filter, which gives scores and smoothed states. */
 
 import type { PathObserver } from '../PathPass.js';
-import { type FieldReading, weighComponents } from '../readCoefficients.js';
-import { spreadScores } from '../spreadScore.js';
+import { type FieldReading, recallNode, spreadScores, weighComponents } from '../readCoefficients.js';
 import type { JointGroup, JointState } from './jointState.js';
 import { writeSystem } from './jointSystem.js';
 
@@ -130,7 +129,7 @@ function stepBack(
   }
   if (!scores) return;
   // The spectral decompositions of the node again.
-  for (const reader of state.readers) reader.recall(node);
+  recallNode(state, node);
   weighRecalled(parameters, state.noise, sums);
   noise.read(sums, matrix);
   noise.score(noiseSlopes, sums);
@@ -141,7 +140,7 @@ function stepBack(
     friction.score(frictionSlopes, sums);
     addComponentScores(state.friction, sums);
   }
-  spreadScores(state, node, scores, block);
+  spreadScores(state, scores, block);
 }
 
 function addComponentScores({ slot, reader, first }: FieldReading, components: Float64Array): void {
